@@ -1,0 +1,203 @@
+"""A loop, its source and its states at closing: what every named result is a function of."""
+
+from __future__ import annotations
+
+from dataclasses import dataclass, field
+from functools import cached_property
+from typing import Any
+
+import numpy as np
+from numpy.typing import NDArray
+
+from rlc.errors import InputError
+from rlc.solver.driven import driven_from_rest
+from rlc.solver.equation import Equation, angular, equation_of, free_response, kernels
+from rlc.solver.loop import Loop
+from rlc.solver.peaks import Peak, Signal, constant_source_extrema, constant_source_peak
+from rlc.solver.search import sine_peak
+from rlc.solver.source import Source
+from rlc.solver.steady import SteadyState, steady_state
+
+Array = NDArray[np.float64]
+
+
+@dataclass(frozen=True)
+class Waveforms:
+    """The switch-on in time; all arrays share one shape, times on the last axis.
+
+    ``current`` [A] is the loop's; the voltages [V] are across the parts' terminals.
+    """
+
+    time: Array
+    source: Array
+    current: Array
+    resistor_voltage: Array
+    inductor_voltage: Array
+    capacitor_voltage: Array
+
+
+@dataclass(frozen=True)
+class Case:
+    """One switch-on, or a batch of them.
+
+    Parameters
+    ----------
+    loop : Loop
+        One loop or a batch; everything else broadcasts against it.
+    source : Source
+        What drives it from t = 0.
+    capacitor_voltage : array_like
+        Voltage behind the capacitor's series resistance at closing [V].
+    initial_current : array_like
+        Loop current at closing [A].
+    """
+
+    loop: Loop
+    source: Source
+    capacitor_voltage: Array = 0.0  # type: ignore[assignment]
+    initial_current: Array = 0.0  # type: ignore[assignment]
+    _peaks: dict[str, Peak] = field(default_factory=dict, repr=False, compare=False)
+
+    def __post_init__(self) -> None:
+        for name in ("capacitor_voltage", "initial_current"):
+            value = np.asarray(getattr(self, name), dtype=np.float64)
+            if not np.all(np.isfinite(value)):
+                raise InputError(name, getattr(self, name), "must be finite")
+            object.__setattr__(self, name, value)
+
+    @cached_property
+    def equation(self) -> Equation:
+        """The loop as the second-order equation."""
+        return equation_of(self.loop)
+
+    @cached_property
+    def steady(self) -> SteadyState:
+        """The steady state at the source's frequency."""
+        return self.steady_at(self.source.frequency)
+
+    def steady_at(self, frequency: Any) -> SteadyState:
+        """The steady state at a stated frequency [Hz]."""
+        return steady_state(self.loop, frequency, self.equation)
+
+    def signals(self, element: str) -> tuple[Signal, Signal]:
+        """An element's response from rest to exp(j omega t), and to the initial states alone."""
+        w = self.loop.weights(element)
+        a, b, c, d = self.equation.matrix
+        amplitude = self.source.amplitude
+        omega = angular(self.source.frequency)[0]
+        zero = np.zeros(self.loop.shape)
+        full = self.steady
+        with np.errstate(invalid="ignore"):
+            state, current = amplitude * full.dielectric, amplitude * full.current
+            steady = w.capacitor_voltage * state + w.current * current + w.source * amplitude
+            free = w.capacitor_voltage * state + w.current * current
+            # the free part's slope is w(A x0 + b v) - j omega w X: exactly zero where x' is
+            pushed = w.current * self.equation.source_rate * amplitude
+            rotating = Signal(steady, -free, pushed - 1j * omega * free)
+        v0, i0 = self.capacitor_voltage, self.initial_current
+        fixed = Signal(
+            zero,
+            w.capacitor_voltage * v0 + w.current * i0 + zero,
+            w.capacitor_voltage * (a * v0 + b * i0) + w.current * (c * v0 + d * i0) + zero,
+        )
+        return rotating, fixed
+
+    def constant_signal(self, element: str) -> Signal:
+        """The element's signal under a constant source, initial states included."""
+        rotating, fixed = self.signals(element)
+        return Signal(
+            np.real(rotating.steady),
+            np.real(rotating.value) + np.real(fixed.value),
+            np.real(rotating.slope) + np.real(fixed.slope),
+        )
+
+    def extrema(self, element: str) -> tuple[Array, Array]:
+        """Times and values of the candidates for a peak under a constant source."""
+        return constant_source_extrema(self.equation, self.constant_signal(element))
+
+    def peak(self, element: str) -> Peak:
+        """Largest magnitude of ``"current"`` or of an element's voltage over all time.
+
+        With the worst closing angle asked for, each element has its own.
+        """
+        if element not in self._peaks:
+            self._peaks[element] = self._find_peak(element)
+        return self._peaks[element]
+
+    def _find_peak(self, element: str) -> Peak:
+        if self.source.kind == "dc":
+            return constant_source_peak(self.equation, self.constant_signal(element))
+        shape = np.broadcast_shapes(
+            self.loop.shape,
+            np.shape(self.source.amplitude),
+            np.shape(self.source.frequency),
+            np.shape(self.capacitor_voltage),
+        )
+
+        def flat(value: Any) -> Any:
+            return np.broadcast_to(value, shape).reshape(-1)
+
+        rotating, fixed = self.signals(element)
+        angle = self.source.closing_angle
+        found = sine_peak(
+            equation_of(self.loop.map(flat)),
+            flat(angular(self.source.frequency)[0]),
+            Signal(*(flat(part) for part in rotating)),
+            Signal(*(flat(part) for part in fixed)),
+            None if angle is None else flat(angle),
+        )
+        return Peak(
+            found.value.reshape(shape),
+            found.time.reshape(shape),
+            found.gap.reshape(shape),
+            found.angle.reshape(shape),
+        )
+
+    def closing_angle_for(self, element: str) -> Array:
+        """The closing angle: as given, or the worst one for this element [rad]."""
+        if self.source.closing_angle is not None:
+            return self.source.closing_angle
+        return self.peak(element).angle
+
+    def waveforms(self, time: Any, closing_angle: Any = None) -> Waveforms:
+        """The switch-on at given times.
+
+        Parameters
+        ----------
+        time : array_like
+            Shape (n,), zero or more [s].
+        closing_angle : array_like, optional
+            Replaces the source's own; needed where that is the worst one [rad].
+        """
+        time = np.asarray(time, dtype=np.float64)
+        loop = self.loop.column()
+        eq = equation_of(loop)
+
+        def column(value: Any) -> Array:
+            return np.asarray(value, dtype=np.float64)[..., np.newaxis]
+
+        angle = self.source.closing_angle if closing_angle is None else closing_angle
+        if angle is None:
+            raise InputError("closing_angle", "worst", "waveforms need one closing angle")
+        amplitude, frequency = column(self.source.amplitude), column(self.source.frequency)
+        turn = np.exp(1j * column(angle))
+        driven_voltage, driven_current = driven_from_rest(eq, frequency, time)
+        free_voltage, free_current = free_response(
+            eq, kernels(eq, time), column(self.capacitor_voltage), column(self.initial_current)
+        )
+        state = amplitude * np.imag(turn * driven_voltage) + free_voltage
+        current = amplitude * np.imag(turn * driven_current) + free_current
+        source = amplitude * np.sin(angular(frequency)[0] * time + column(angle)) + 0 * current
+
+        def across(element: str) -> Any:
+            w = loop.weights(element)
+            return w.capacitor_voltage * state + w.current * current + w.source * source
+
+        return Waveforms(
+            np.broadcast_to(time, current.shape),
+            source,
+            current,
+            across("resistor"),
+            across("inductor"),
+            across("capacitor"),
+        )

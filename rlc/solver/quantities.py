@@ -1,0 +1,365 @@
+"""THE register: every result that has a name.
+
+Target names, table rows, JSON keys, help texts, error suggestions and the docs are all read
+from here. Conventions, once: amplitude means peak, rms is said; frequencies are in hertz;
+voltages of inductor and capacitor are across the part's terminals, winding and series
+resistance included; a negative ``current_phase`` lags the source; power is what the source's
+inner voltage delivers, its own resistance included.
+"""
+
+from __future__ import annotations
+
+from collections.abc import Callable
+from dataclasses import dataclass
+from typing import Any, Literal
+
+import numpy as np
+from numpy.typing import NDArray
+
+from rlc.errors import InputError
+from rlc.solver.case import Case
+from rlc.solver.loop import ELEMENTS
+from rlc.solver.steady import (
+    SteadyState,
+    capacitor_voltage_maximum,
+    half_power_frequencies,
+)
+from rlc.solver.transient import (
+    let_through,
+    logarithmic_decrement,
+    overshoot,
+    settling_time,
+    total_let_through,
+)
+
+Array = NDArray[np.float64]
+At = float | None
+Across = str | None
+
+_AC = "OpenStax, University Physics vol. 2, sections 15.2 to 15.5"
+_FREE = "OpenStax, University Physics vol. 2, section 14.6"
+_STEP = "step response of the damped second-order equation; any text on linear systems"
+_SEARCH = "steady state plus free motion; branch and bound over time, proved to 1e-9"
+
+SETTLING_BAND = 0.02
+
+
+@dataclass(frozen=True)
+class Quantity:
+    """One named result.
+
+    Attributes
+    ----------
+    name, symbol, kind : str
+        Key, formula symbol, and the kind of unit (see :mod:`rlc.front.units`).
+    group : {"loop", "steady", "switch-on"}
+        What it needs: the parts, the source, or the closing as well.
+    convention, definition, formula, source : str
+        Peak or rms and signs; words; formula; where it is published.
+    compute : callable
+        From a Case, ``at`` and ``across`` to an array with the batch's shape, in SI units.
+        Not a number where the quantity does not exist, infinite where it is unbounded.
+    at : str or None
+        Kind of the optional ``at``: "frequency", "time" or "ratio".
+    across : bool
+        Whether the quantity names an element.
+    """
+
+    name: str
+    symbol: str
+    kind: str
+    group: Literal["loop", "steady", "switch-on"]
+    convention: str
+    definition: str
+    formula: str
+    source: str
+    compute: Callable[[Case, At, Across], Any]
+    at: str | None = None
+    across: bool = False
+
+    def __call__(self, case: Case, at: At = None, across: Across = None) -> Array:
+        """Evaluate for a batch.
+
+        Raises
+        ------
+        InputError
+            If ``at`` or ``across`` is given and the quantity has none, or is out of range.
+        """
+        if at is not None and self.at is None:
+            raise InputError("at", at, f"{self.name} is not asked for at a stated value")
+        if at is not None and not (np.isfinite(at) and at > 0):
+            raise InputError("at", at, "must be more than zero and finite")
+        if across is not None and not self.across:
+            raise InputError("across", across, f"{self.name} does not name an element")
+        if across is not None and across not in ELEMENTS:
+            raise InputError("across", across, f"is none of {', '.join(ELEMENTS)}")
+        shape = np.broadcast_shapes(
+            case.loop.shape, np.shape(case.source.amplitude), np.shape(case.source.frequency)
+        )
+        with np.errstate(all="ignore"):
+            value = np.asarray(self.compute(case, at, across), dtype=np.float64)
+        return np.broadcast_to(value, np.broadcast_shapes(shape, value.shape))
+
+
+def _steady(case: Case, at: At) -> SteadyState:
+    return case.steady if at is None else case.steady_at(at)
+
+
+def _phasor_current(case: Case, at: At) -> Any:
+    return np.abs(case.source.amplitude) * _steady(case, at).current
+
+
+def _rms(case: Case, phasor: Any) -> Array:
+    return np.abs(phasor) * np.abs(case.source.amplitude) * case.source.rms_per_amplitude
+
+
+def _apparent(case: Case, at: At) -> Any:
+    """Complex power, real plus j reactive, from rms values."""
+    return np.conj(_steady(case, at).current) * case.source.rms**2
+
+
+def _ringing(case: Case) -> Array:
+    eq = case.equation
+    return np.where(eq.underdamped, eq.root[0] / (2 * np.pi), np.nan)
+
+
+def _until(case: Case, at: At) -> Array:
+    if at is not None:
+        return let_through(case, at)
+    if case.source.kind == "dc":
+        return total_let_through(case)
+    return let_through(case, 1.0 / np.max(case.source.frequency))
+
+
+def _peak_time(case: Case, element: str) -> Array:
+    return case.peak(element).time
+
+
+def _worst_angle(case: Case, element: str) -> Array:
+    if not case.source.worst_angle:
+        return np.full(case.loop.shape, np.nan)
+    angle: Array = case.peak(element).angle
+    if not np.any(case.capacitor_voltage) and not np.any(case.initial_current):
+        angle = np.mod(angle, np.pi)
+    return angle
+
+
+def _resistor_power(case: Case, at: At) -> Array:
+    return _rms(case, _steady(case, at).current) ** 2 * case.loop.resistance
+
+
+_ROWS: tuple[Quantity, ...] = (
+    Quantity(
+        "natural_frequency", "f_0", "frequency", "loop", "undamped",
+        "Frequency at which the loop would ring without losses; its resonance.",
+        "sqrt(det A)/(2 pi); without a load 1/(2 pi sqrt(L C))", _AC,
+        lambda c, at, across: c.equation.natural / (2 * np.pi),
+    ),
+    Quantity(
+        "ringing_frequency", "f_r", "frequency", "loop", "damped; none if overdamped",
+        "Frequency at which the loop rings after a disturbance.",
+        "sqrt(omega_0^2 - gamma^2/4)/(2 pi)", _FREE,
+        lambda c, at, across: _ringing(c),
+    ),
+    Quantity(
+        "damping_ratio", "zeta", "number", "loop", "1 is critical",
+        "Damping as a share of critical damping.", "gamma/(2 omega_0)", _FREE,
+        lambda c, at, across: c.equation.damping_ratio,
+    ),
+    Quantity(
+        "quality_factor", "Q", "number", "loop", "at the natural frequency, losses included",
+        "Natural angular frequency over bandwidth in rad/s.", "omega_0/gamma", _AC,
+        lambda c, at, across: 0.5 / c.equation.damping_ratio,
+    ),
+    Quantity(
+        "bandwidth", "B", "frequency", "loop", "half power",
+        "Distance of the two half-power frequencies.", "gamma/(2 pi); without a load R/(2 pi L)",
+        _AC, lambda c, at, across: c.equation.gamma / (2 * np.pi),
+    ),
+    Quantity(
+        "lower_half_power_frequency", "f_1", "frequency", "loop", "half power",
+        "Frequency below resonance at which the current is 1/sqrt(2) of its maximum"
+        " (with a load: the equation's power response).",
+        "f_0^2/f_2", _AC, lambda c, at, across: half_power_frequencies(c.equation)[0],
+    ),
+    Quantity(
+        "upper_half_power_frequency", "f_2", "frequency", "loop", "half power",
+        "Frequency above resonance at which the current is 1/sqrt(2) of its maximum"
+        " (with a load: the equation's power response).",
+        "(sqrt(omega_0^2 + gamma^2/4) + gamma/2)/(2 pi)", _AC,
+        lambda c, at, across: half_power_frequencies(c.equation)[1],
+    ),
+    Quantity(
+        "characteristic_impedance", "Z_0", "resistance", "loop", "",
+        "Square root of inductance over capacitance.", "sqrt(L/C)", _FREE,
+        lambda c, at, across: np.sqrt(c.loop.total_inductance / c.loop.capacitance),
+    ),
+    Quantity(
+        "time_constant", "tau", "time", "loop", "of the ringing's envelope",
+        "Time in which the ringing falls to 1/e.", "2/gamma; without a load 2 L/R", _FREE,
+        lambda c, at, across: 2.0 / c.equation.gamma,
+    ),
+    Quantity(
+        "logarithmic_decrement", "Lambda", "number", "loop", "natural logarithm",
+        "Logarithm of the ratio of one swing to the next on the same side.",
+        "gamma/(2 f_r)", _FREE,
+        lambda c, at, across: np.where(
+            c.equation.underdamped, logarithmic_decrement(c.equation), np.nan
+        ),
+    ),
+    Quantity(
+        "capacitor_voltage_maximum_frequency", "f_C", "frequency", "loop", "zero if none",
+        "Source frequency at which the capacitor voltage is largest.",
+        "sqrt(omega_0^2 - gamma^2/2)/(2 pi)", _AC,
+        lambda c, at, across: capacitor_voltage_maximum(c.equation),
+    ),
+    Quantity(
+        "impedance", "|Z|", "resistance", "steady", "magnitude",
+        "Magnitude of all that the source's inner voltage meets, its own impedance included.",
+        "|R + j(omega L - 1/(omega C))| without a load", _AC,
+        lambda c, at, across: np.abs(_steady(c, at).impedance), "frequency",
+    ),
+    Quantity(
+        "impedance_phase", "arg Z", "angle", "steady", "positive: inductive",
+        "Angle by which the source voltage leads the current.", "arg Z", _AC,
+        lambda c, at, across: np.angle(_steady(c, at).impedance), "frequency",
+    ),
+    Quantity(
+        "current", "I", "current", "steady", "rms", "Loop current.", "V/|Z|", _AC,
+        lambda c, at, across: _rms(c, _steady(c, at).current), "frequency",
+    ),
+    Quantity(
+        "current_amplitude", "I_pk", "current", "steady", "peak, steady state",
+        "Amplitude of the loop current when the transient has died.", "V_pk/|Z|", _AC,
+        lambda c, at, across: np.abs(_phasor_current(c, at)), "frequency",
+    ),
+    Quantity(
+        "current_phase", "phi_i", "angle", "steady", "negative: the current lags the source",
+        "Phase of the current against the source.", "-arg Z", _AC,
+        lambda c, at, across: np.angle(_steady(c, at).current), "frequency",
+    ),
+    Quantity(
+        "resistor_voltage", "V_R", "voltage", "steady", "rms", "Voltage across the resistor.",
+        "R I", _AC, lambda c, at, across: _rms(c, _steady(c, at).resistor), "frequency",
+    ),
+    Quantity(
+        "inductor_voltage", "V_L", "voltage", "steady", "rms, winding resistance included",
+        "Voltage across the inductor's terminals.", "|R_w + j omega L| I", _AC,
+        lambda c, at, across: _rms(c, _steady(c, at).inductor), "frequency",
+    ),
+    Quantity(
+        "capacitor_voltage", "V_C", "voltage", "steady", "rms, series resistance included",
+        "Voltage across the capacitor's terminals.", "|r + 1/(j omega C)| I without a load",
+        _AC, lambda c, at, across: _rms(c, _steady(c, at).capacitor), "frequency",
+    ),
+    Quantity(
+        "capacitor_voltage_amplitude", "V_C,pk", "voltage", "steady", "peak, steady state",
+        "Amplitude of the capacitor's terminal voltage when the transient has died.",
+        "sqrt(2) V_C for a sine", _AC,
+        lambda c, at, across: np.abs(c.source.amplitude * _steady(c, at).capacitor), "frequency",
+    ),
+    Quantity(
+        "resistor_power", "P_R", "power", "steady", "mean", "Heat in the resistor alone.",
+        "R I^2", _AC, lambda c, at, across: _resistor_power(c, at), "frequency",
+    ),
+    Quantity(
+        "real_power", "P", "power", "steady", "mean, all losses of the loop",
+        "Power that the source delivers.", "V I cos(phi_i)", _AC,
+        lambda c, at, across: np.real(_apparent(c, at)), "frequency",
+    ),
+    Quantity(
+        "reactive_power", "Q_r", "reactive_power", "steady", "positive: inductive",
+        "Reactive power that the source delivers.", "-V I sin(phi_i)", _AC,
+        lambda c, at, across: np.imag(_apparent(c, at)), "frequency",
+    ),
+    Quantity(
+        "apparent_power", "S", "apparent_power", "steady", "rms times rms",
+        "Source voltage times current.", "V I", _AC,
+        lambda c, at, across: np.abs(_apparent(c, at)), "frequency",
+    ),
+    Quantity(
+        "power_factor", "cos phi", "number", "steady", "unsigned; see current_phase",
+        "Real over apparent power.", "P/S", _AC,
+        lambda c, at, across: np.real(_apparent(c, at)) / np.abs(_apparent(c, at)), "frequency",
+    ),
+    Quantity(
+        "voltage_magnification", "m", "number", "steady", "amplitude over amplitude",
+        "Capacitor voltage over source voltage; near Q at resonance.", "|V_C/V|", _AC,
+        lambda c, at, across: np.abs(_steady(c, at).capacitor), "frequency",
+    ),
+    Quantity(
+        "gain", "|H|", "number", "steady", "amplitude over amplitude",
+        "Voltage across the named element (the capacitor if none is named) over the source's.",
+        "|V_element/V|", _AC,
+        lambda c, at, across: np.abs(_steady(c, at).across(across or "capacitor")),
+        "frequency", True,
+    ),
+    Quantity(
+        "peak_current", "i_max", "current", "switch-on", "peak magnitude over all time",
+        "Largest current from closing on, the inrush.", "max |i(t)|", _SEARCH,
+        lambda c, at, across: c.peak("current").value,
+    ),
+    Quantity(
+        "peak_current_time", "t_i", "time", "switch-on", "none if only approached",
+        "When the largest current flows.", "arg max |i(t)|", _SEARCH,
+        lambda c, at, across: _peak_time(c, "current"),
+    ),
+    Quantity(
+        "peak_capacitor_voltage", "v_C,max", "voltage", "switch-on",
+        "peak magnitude over all time, at the terminals",
+        "Largest capacitor voltage from closing on.", "max |v_C(t)|", _SEARCH,
+        lambda c, at, across: c.peak("capacitor").value,
+    ),
+    Quantity(
+        "peak_capacitor_voltage_time", "t_C", "time", "switch-on", "none if only approached",
+        "When the capacitor voltage is largest.", "arg max |v_C(t)|", _SEARCH,
+        lambda c, at, across: _peak_time(c, "capacitor"),
+    ),
+    Quantity(
+        "peak_inductor_voltage", "v_L,max", "voltage", "switch-on",
+        "peak magnitude over all time, at the terminals",
+        "Largest inductor voltage from closing on.", "max |v_L(t)|", _SEARCH,
+        lambda c, at, across: c.peak("inductor").value,
+    ),
+    Quantity(
+        "worst_closing_angle_current", "phi_wi", "angle", "switch-on",
+        "from the source's rising zero; modulo half a turn from rest",
+        "Closing angle of the largest current; only with closing angle \"worst\".",
+        "90 deg - arg Y_i(t_i)", _SEARCH,
+        lambda c, at, across: _worst_angle(c, "current"),
+    ),
+    Quantity(
+        "worst_closing_angle_capacitor_voltage", "phi_wC", "angle", "switch-on",
+        "from the source's rising zero; modulo half a turn from rest",
+        "Closing angle of the largest capacitor voltage; only with closing angle \"worst\".",
+        "90 deg - arg Y_C(t_C)", _SEARCH,
+        lambda c, at, across: _worst_angle(c, "capacitor"),
+    ),
+    Quantity(
+        "overshoot", "o", "ratio", "switch-on", "share of the step, or of the steady amplitude",
+        "How far the capacitor voltage passes its steady state.",
+        "exp(-pi zeta/sqrt(1 - zeta^2)) for a step from rest", _STEP,
+        lambda c, at, across: overshoot(c),
+    ),
+    Quantity(
+        "settling_time", "t_s", "time", "switch-on", "band 2 % unless stated with at",
+        "Last time at which the capacitor voltage's transient is at or outside the band.",
+        "last t with |v_C - steady| >= band * steady amplitude", _STEP,
+        lambda c, at, across: settling_time(c, SETTLING_BAND if at is None else at), "ratio",
+    ),
+    Quantity(
+        "let_through", "J", "let_through", "switch-on",
+        "to the stated time; else over all time (dc) or the first source period (sine)",
+        "Integral of the squared current, what a fuse or contact must pass.",
+        "integral of i^2 dt; C V^2/(2 R) for a step from rest without a load", _STEP,
+        lambda c, at, across: _until(c, at), "time",
+    ),
+    Quantity(
+        "stored_energy", "W", "energy", "switch-on", "at the largest capacitor voltage",
+        "Largest energy stored in the capacitor.", "C v_max^2/2", _FREE,
+        lambda c, at, across: c.loop.capacitance * c.peak("dielectric").value ** 2 / 2,
+    ),
+)  # fmt: skip
+
+#: Name to quantity, in the order of tables.
+REGISTER: dict[str, Quantity] = {row.name: row for row in _ROWS}

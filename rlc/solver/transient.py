@@ -1,0 +1,221 @@
+"""What the switch-on leaves behind: settling, overshoot, let-through, damping in time."""
+
+from __future__ import annotations
+
+from typing import Any
+
+import numpy as np
+from numpy.typing import NDArray
+
+from rlc.solver.case import Case
+from rlc.solver.driven import driven_from_rest
+from rlc.solver.equation import Equation, angular, equation_of, kernels, phase
+from rlc.solver.peaks import first_extremum
+
+Array = NDArray[np.float64]
+
+_NODES, _WEIGHTS = np.polynomial.legendre.leggauss(16)
+_ITERATIONS = 100
+
+
+def capacitor_transient(case: Case) -> tuple[Array, Array, Array]:
+    """Value and slope at closing of the capacitor voltage's free part, and its steady amplitude.
+
+    Where the closing angle is the worst one, it is that of the largest capacitor voltage.
+    """
+    rotating, fixed = case.signals("capacitor")
+    turn = np.exp(1j * case.closing_angle_for("capacitor"))
+    return (
+        np.imag(turn * rotating.value) + np.real(fixed.value),
+        np.imag(turn * rotating.slope) + np.real(fixed.slope),
+        np.abs(rotating.steady),
+    )
+
+
+def settling_time(case: Case, band: float = 0.02) -> Array:
+    """Time after which the capacitor voltage stays within a band of its steady state [s].
+
+    Parameters
+    ----------
+    case : Case
+        One switch-on or a batch.
+    band : float
+        Half width of the band, as a share of the steady amplitude (of the final value for a
+        constant source).
+
+    Returns
+    -------
+    Array
+        The last moment at which the free part is at or outside the band: infinite without
+        losses, zero if it is never outside, nan if the steady state is zero or unbounded.
+    """
+    value, slope, steady = np.broadcast_arrays(*capacitor_transient(case))
+    with np.errstate(invalid="ignore"):
+        settled = last_time_outside(case.equation, value, slope, band * steady)
+    return np.where((steady > 0) & np.isfinite(steady), settled, np.nan)
+
+
+def last_time_outside(eq: Equation, value: Array, slope: Array, band: Array) -> Array:
+    """Last time at which free motion of given value and slope at closing is outside a band [s].
+
+    The extrema of free motion form a lattice (underdamped: half a ringing period apart, each
+    smaller by the same factor), which brackets the only crossing; bisection and Newton's
+    method close the bracket to rounding.
+    """
+    with np.errstate(all="ignore"):
+        turn = first_extremum(eq, value, slope)
+        turn = np.where(np.isfinite(turn), turn, 0.0)
+        at_turn = np.abs(_free(eq, value, slope, turn)[0])
+        half_period = np.pi / eq.root[0]
+        swings = np.floor(np.log(at_turn / band) / (eq.damping * half_period))
+        last = turn + np.maximum(swings, 0) * half_period
+        outside = at_turn >= band
+        low = np.where(outside, np.where(eq.underdamped, last, turn), 0.0)
+        high = np.where(eq.underdamped, last + half_period, 2 * turn + 1 / eq.slow)
+    # rounding of the logarithm may put the lattice one swing too far or too near
+    beyond = eq.underdamped & outside & (np.abs(_free(eq, value, slope, low)[0]) < band)
+    low = np.where(beyond, np.maximum(low - half_period, turn), low)
+    for _ in range(_ITERATIONS):
+        still = ~eq.underdamped & outside & (np.abs(_free(eq, value, slope, high)[0]) > band)
+        if not still.any():
+            break
+        high = np.where(still, 2 * high, high)
+    high = np.where(outside, high, turn)
+    never = (np.abs(value) < band) & ~outside
+    time = _cross(eq, value, slope, band, low, high)
+    time = np.where(never, 0.0, time)
+    return np.where((eq.damping == 0) & ~never, np.inf, time)
+
+
+def _free(eq: Equation, value: Array, slope: Array, time: Array) -> tuple[Array, Array]:
+    kernel = kernels(eq, time)
+    rest = kernel.regular - eq.gamma * kernel.s
+    return (
+        value * kernel.regular + slope * kernel.s,
+        slope * rest - eq.natural_squared[0] * value * kernel.s,
+    )
+
+
+def _cross(eq: Equation, value: Array, slope: Array, band: Array, low: Array, high: Array) -> Array:
+    sign = np.sign(_free(eq, value, slope, low)[0])
+    time = (low + high) / 2
+    for _ in range(_ITERATIONS):
+        motion, speed = _free(eq, value, slope, time)
+        excess = sign * motion - band
+        low, high = np.where(excess >= 0, time, low), np.where(excess >= 0, high, time)
+        with np.errstate(all="ignore"):
+            step = time - excess / (sign * speed)
+        inside = (step > low) & (step < high)
+        following = np.where(inside, step, (low + high) / 2)
+        if np.all(np.abs(following - time) <= 4e-16 * following):
+            return following
+        time = following
+    return time
+
+
+def overshoot(case: Case) -> Array:
+    """How far the capacitor voltage passes its steady state, as a share of it.
+
+    Constant source: the largest excursion beyond the final value, over the step from the
+    initial to the final value. Sine: the largest magnitude over the steady amplitude, less 1.
+    Zero if it never passes; nan if there is no step.
+    """
+    if case.source.kind == "dc":
+        _, values = case.extrema("capacitor")
+        start, final = values[0], values[-1]
+        with np.errstate(invalid="ignore", divide="ignore"):
+            beyond = np.max((values - final) / (final - start), axis=0)
+        return np.where(final == start, np.nan, np.maximum(beyond, 0.0))
+    steady = np.abs(case.source.amplitude * case.steady.capacitor)
+    with np.errstate(invalid="ignore", divide="ignore"):
+        return np.maximum(case.peak("capacitor").value / steady - 1, 0.0)
+
+
+def logarithmic_decrement(eq: Equation) -> Array:
+    """ln of the ratio of successive swings to the same side; infinite if overdamped."""
+    with np.errstate(divide="ignore"):
+        ringing = np.where(eq.underdamped, eq.root[0], 0.0)
+        return 2 * np.pi * eq.damping / ringing
+
+
+def total_let_through(case: Case) -> Array:
+    r"""Integral of i^2 over all time, (C e^2 + L i^2)/(2R) [A^2 s].
+
+    All energy that the loop loses passes through its resistance: e is the capacitor's
+    distance from its final voltage at closing, i the initial current. Infinite where a
+    steady current remains (a sine, a load) or nothing is lost.
+    """
+    loop = case.loop
+    distance = case.capacitor_voltage - case.source.amplitude
+    stored = loop.capacitance * distance**2 + loop.total_inductance * case.initial_current**2
+    with np.errstate(divide="ignore", invalid="ignore"):
+        total = stored / (2 * loop.total_resistance)
+    ends = (case.source.kind == "dc") & (loop.load_conductance == 0)
+    return np.where(stored == 0, 0.0, np.where(ends, total, np.inf))
+
+
+def let_through(case: Case, until: Any) -> Array:
+    r"""Integral of i^2 from closing to a given time [A^2 s].
+
+    The current is linear in z = (v_C, i, source in phase, source in quadrature), so the
+    integral is z' P z. P over a short span is a 16-point Gauss-Legendre sum; then
+    P(2h) = P(h) + E(h)' P(h) E(h) doubles the span with exact propagators E. All terms are
+    sums of squares: nothing cancels, at any damping or resonance.
+
+    Parameters
+    ----------
+    case : Case
+        One switch-on or a batch; with the worst closing angle, that of the largest current.
+    until : float
+        End of the integral, zero or more [s].
+    """
+    case_shape = np.broadcast_shapes(
+        case.loop.shape, np.shape(case.source.frequency), np.shape(case.capacitor_voltage)
+    )
+    eq, frequency = case.equation, np.broadcast_to(case.source.frequency, case_shape)
+    until = np.asarray(until, dtype=np.float64)
+    quickest = np.max(np.maximum(eq.quickest, angular(frequency)[0]), initial=0.0)
+    doublings = max(0, int(np.ceil(np.log2(max(float(np.max(until)) * float(quickest), 1.0)))))
+    span = until / 2.0**doublings
+    columns = equation_of(case.loop.column())
+    times = span * (_NODES + 1) / 2
+    row = _current_row(columns, frequency[..., np.newaxis], times)
+    gram = np.einsum("...ni,...nj,n->...ij", row, row, _WEIGHTS) * span / 2
+    for k in range(doublings):
+        step = _propagator(eq, frequency, span * 2.0**k)
+        gram = gram + np.swapaxes(step, -1, -2) @ gram @ step
+    angle = case.closing_angle_for("current")
+    amplitude = case.source.amplitude
+    start = np.stack(
+        np.broadcast_arrays(
+            case.capacitor_voltage + np.zeros(case_shape),
+            case.initial_current,
+            amplitude * np.sin(angle),
+            amplitude * np.cos(angle),
+        ),
+        axis=-1,
+    )
+    passed: Array = np.einsum("...i,...ij,...j->...", start, gram, start)
+    return passed
+
+
+def _current_row(eq: Equation, frequency: Array, time: Array) -> Array:
+    kernel = kernels(eq, time)
+    _, driven = driven_from_rest(eq, frequency, time)
+    parts = (eq.matrix[2] * kernel.s, kernel.current, driven.real, driven.imag)
+    return np.stack(np.broadcast_arrays(*parts), axis=-1)
+
+
+def _propagator(eq: Equation, frequency: Array, time: Array) -> Array:
+    kernel = kernels(eq, time)
+    voltage, _ = driven_from_rest(eq, frequency, time)
+    cosine, sine = phase(angular(frequency), time)
+    zero = np.zeros_like(kernel.s)
+    rows = (
+        (kernel.capacitor, eq.matrix[1] * kernel.s, voltage.real, voltage.imag),
+        (zero, zero, cosine, sine),
+        (zero, zero, -sine, cosine),
+    )
+    stacked = [np.stack(np.broadcast_arrays(*row, zero)[:4], axis=-1) for row in rows]
+    stacked.insert(1, _current_row(eq, frequency, time))
+    return np.stack(stacked, axis=-2)
