@@ -138,14 +138,15 @@ def _divided_difference(
     cosine, sine, detuning = (pick(value) for value in trig)
     ringing = np.where(under, pick(eq.root[0]), 0.0)
     # j omega - s1
-    x, y = np.where(under, pick(eq.damping), pick(eq.slow)), np.where(under, detuning, w)
+    x: Any = np.where(under, pick(eq.damping), pick(eq.slow))
+    y: Any = np.where(under, detuning, w)
     # exp(j omega t) - exp(s1 t)
     difference = cosine - pick(kernel.base), sine - ringing * s
     size = x * x + y * y
     size = np.where(size == 0, 1.0, size)
     e_real = (difference[0] * x + difference[1] * y) / size
     e_imag = (difference[1] * x - difference[0] * y) / size
-    small = (x * x + y * y) * t * t < 1.0
+    small: Any = (x * x + y * y) * t * t < 1.0
     if small.any():
         real, imag = _phi(-x[small] * t[small], -y[small] * t[small])
         e_real[small] = t[small] * (cosine[small] * real - sine[small] * imag)

@@ -109,7 +109,7 @@ def _phasor_current(case: Case, at: At) -> Any:
     return np.abs(case.source.amplitude) * _steady(case, at).current
 
 
-def _rms(case: Case, phasor: Any) -> Array:
+def _rms(case: Case, phasor: Any) -> Any:
     return np.abs(phasor) * np.abs(case.source.amplitude) * case.source.rms_per_amplitude
 
 
@@ -144,7 +144,7 @@ def _worst_angle(case: Case, element: str) -> Array:
     return angle
 
 
-def _resistor_power(case: Case, at: At) -> Array:
+def _resistor_power(case: Case, at: At) -> Any:
     return _rms(case, _steady(case, at).current) ** 2 * case.loop.resistance
 
 

@@ -7,7 +7,7 @@ from dataclasses import dataclass
 import numpy as np
 from numpy.typing import NDArray
 
-from rlc.solver.equation import Equation, angular, equation_of, steady_states
+from rlc.solver.equation import Equation, equation_of, steady_states
 from rlc.solver.loop import ELEMENTS, Loop
 
 Array = NDArray[np.float64]
@@ -114,8 +114,3 @@ def capacitor_voltage_maximum(eq: Equation) -> Array:
     """
     squared = eq.natural_squared[0] - 2 * eq.damping**2
     return np.sqrt(np.maximum(squared, 0.0)) / (2 * np.pi)
-
-
-def angular_frequency(frequency: Array) -> Array:
-    """2 pi f [rad/s]."""
-    return angular(np.asarray(frequency, dtype=np.float64))[0]
