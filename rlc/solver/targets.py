@@ -1,0 +1,116 @@
+"""What a loop is asked to keep: limits on registered quantities, and the ratings of its parts."""
+
+from __future__ import annotations
+
+from dataclasses import dataclass, fields
+from typing import Any, NamedTuple
+
+import numpy as np
+from numpy.typing import NDArray
+
+from rlc.errors import InputError
+from rlc.solver.case import Case
+from rlc.solver.quantities import REGISTER, Quantity
+
+Array = NDArray[np.float64]
+
+
+@dataclass(frozen=True)
+class Target:
+    """Limits on one registered quantity.
+
+    Parameters
+    ----------
+    quantity : str
+        Name in the register.
+    minimum, maximum : float, optional
+        Limits, themselves allowed; at least one is given [SI unit of the quantity].
+    at : float, optional
+        Where the quantity is asked for: a frequency [Hz], a time [s] or a band [1].
+    across : str, optional
+        Element whose voltage is meant.
+    goal : float, optional
+        Share of units that has to keep the limits [1]; without it every unit has to.
+    rating : str
+        The part's rating that it stands for, such as ``capacitor.rated_voltage``; or empty.
+    """
+
+    quantity: str
+    minimum: float | None = None
+    maximum: float | None = None
+    at: float | None = None
+    across: str | None = None
+    goal: float | None = None
+    rating: str = ""
+
+    def __post_init__(self) -> None:
+        if self.quantity not in REGISTER:
+            raise InputError("quantity", self.quantity, "is not in the register of quantities")
+        if self.minimum is None and self.maximum is None:
+            raise InputError(self.quantity, None, "needs a min, a max or both")
+        if None not in (self.minimum, self.maximum) and self.minimum > self.maximum:  # type: ignore[operator]
+            raise InputError("min", self.minimum, "is above max")
+
+    @property
+    def entry(self) -> Quantity:
+        """The quantity's row in the register."""
+        return REGISTER[self.quantity]
+
+    def values(self, case: Case) -> Array:
+        """The quantity for each loop of a batch [SI]."""
+        return self.entry(case, self.at, self.across)
+
+    def kept(self, values: Any) -> NDArray[np.bool_]:
+        """Which values are within the limits; one that does not exist is not."""
+        values = np.asarray(values, dtype=np.float64)
+        low = -np.inf if self.minimum is None else self.minimum
+        high = np.inf if self.maximum is None else self.maximum
+        return (values >= low) & (values <= high)
+
+
+class _Rating(NamedTuple):
+    key: str
+    quantity: str
+
+
+_RATED = {
+    "resistor_power": _Rating("resistor.rated_power", "resistor_power"),
+    "inductor_current": _Rating("inductor.rated_current", "current"),
+    "inductor_saturation": _Rating("inductor.saturation_current", "peak_current"),
+    "capacitor_voltage": _Rating("capacitor.rated_voltage", "peak_capacitor_voltage"),
+    "capacitor_voltage_rms": _Rating("capacitor.rated_voltage_rms", "capacitor_voltage"),
+}
+
+
+@dataclass(frozen=True)
+class Ratings:
+    """What the parts are made for; None where nothing is stated.
+
+    Attributes
+    ----------
+    resistor_power : float or None
+        Continuous heat in the resistor [W].
+    inductor_current : float or None
+        Continuous current [A rms].
+    inductor_saturation : float or None
+        Peak current up to which the inductance holds [A].
+    capacitor_voltage : float or None
+        Highest voltage at any instant, dc or peak [V].
+    capacitor_voltage_rms : float or None
+        Continuous alternating voltage [V rms].
+    """
+
+    resistor_power: float | None = None
+    inductor_current: float | None = None
+    inductor_saturation: float | None = None
+    capacitor_voltage: float | None = None
+    capacitor_voltage_rms: float | None = None
+
+    def targets(self) -> tuple[Target, ...]:
+        """Each stated rating as the target that it is."""
+        stated = ((_RATED[field.name], getattr(self, field.name)) for field in fields(self))
+        return tuple(
+            Target(rated.quantity, maximum=value, rating=rated.key)
+            for rated, value in stated
+            if value is not None
+        )
