@@ -65,7 +65,8 @@ class Target:
         values = np.asarray(values, dtype=np.float64)
         low = -np.inf if self.minimum is None else self.minimum
         high = np.inf if self.maximum is None else self.maximum
-        return (values >= low) & (values <= high)
+        within: NDArray[np.bool_] = (values >= low) & (values <= high)
+        return within
 
 
 class _Rating(NamedTuple):
