@@ -1,0 +1,264 @@
+"""The spread over real parts: corners and random samples, through the solver's own functions."""
+
+from __future__ import annotations
+
+from dataclasses import dataclass
+from itertools import product
+from typing import Any, Literal, NamedTuple
+
+import numpy as np
+from numpy.typing import NDArray
+
+from rlc.errors import InputError
+from rlc.solver.case import Case
+from rlc.solver.loop import Loop
+from rlc.solver.targets import Target
+
+Array = NDArray[np.float64]
+Distribution = Literal["uniform", "normal", "triangular"]
+
+CONFIDENCE = 0.95
+MOST_SAMPLES = 1_000_000
+
+
+@dataclass(frozen=True)
+class Part:
+    """A value of the loop that differs from unit to unit.
+
+    Parameters
+    ----------
+    field : str
+        Field of :class:`~rlc.solver.loop.Loop`, such as ``inductance``.
+    nominal, low, high : float
+        Nominal value and limits [SI unit of the field].
+    distribution : {"uniform", "normal", "triangular"}
+        How units lie between the limits. A normal one is centred between them and cut off
+        there; a triangular one has its peak at the nominal value.
+    sigmas : float
+        How many standard deviations the limits of a normal distribution are from its centre.
+    """
+
+    field: str
+    nominal: float
+    low: float
+    high: float
+    distribution: Distribution = "uniform"
+    sigmas: float = 3.0
+
+    def draw(self, count: int, seed: tuple[int, int]) -> Array:
+        """Random values, shape (count,), the same for the same seed [SI]."""
+        generator = np.random.default_rng(seed)
+        width = self.high - self.low
+        if self.distribution == "triangular" and width > 0:
+            return generator.triangular(self.low, self.nominal, self.high, count)
+        share = generator.random(count)
+        if self.distribution == "normal":
+            from scipy.special import ndtr, ndtri
+
+            tail = ndtr(-self.sigmas)
+            deviation = ndtri(tail + share * (1 - 2 * tail)) / self.sigmas
+            drawn: Array = np.clip(self.low + width * (1 + deviation) / 2, self.low, self.high)
+            return drawn
+        return self.low + width * share
+
+
+class Yield(NamedTuple):
+    """The share of units that keep the limits, and its Clopper-Pearson interval."""
+
+    value: float
+    low: float
+    high: float
+    confidence: float = CONFIDENCE
+
+
+def yield_interval(kept: int, samples: int) -> Yield:
+    """Exact binomial interval for a share.
+
+    Parameters
+    ----------
+    kept, samples : int
+        Units that keep the limits, of how many.
+
+    References
+    ----------
+    .. [1] C. J. Clopper and E. S. Pearson, "The use of confidence or fiducial limits
+       illustrated in the case of the binomial", Biometrika 26 (1934) 404-413.
+    """
+    from scipy.special import betaincinv
+
+    tail = (1 - CONFIDENCE) / 2
+    low = float(betaincinv(kept, samples - kept + 1, tail)) if kept else 0.0
+    high = float(betaincinv(kept + 1, samples - kept, 1 - tail)) if kept < samples else 1.0
+    return Yield(kept / samples, low, high)
+
+
+class Effect(NamedTuple):
+    """What one part alone does to a quantity: its value with the part at each limit [SI]."""
+
+    field: str
+    low: float
+    high: float
+
+
+@dataclass(frozen=True)
+class Outcome:
+    """One quantity over the spread; all values in SI units.
+
+    Attributes
+    ----------
+    target : Target
+        The quantity and its limits.
+    nominal : float
+        With every part at its nominal value.
+    worst_low, worst_high : float
+        Extremes over parts at their limits and all samples: searched, not proved.
+    minimum, maximum, mean, percent_1, percent_50, percent_99 : float
+        Of the samples for which the quantity exists; nan without samples.
+    samples : Array
+        Shape (n,); nan where the quantity does not exist.
+    share : Yield or None
+        Share of the samples that keep the limits.
+    effects : tuple of Effect
+        Each part alone at its limits, the part that moves the quantity most first.
+    """
+
+    target: Target
+    nominal: float
+    worst_low: float
+    worst_high: float
+    minimum: float
+    maximum: float
+    mean: float
+    percent_1: float
+    percent_50: float
+    percent_99: float
+    samples: Array
+    share: Yield | None
+    effects: tuple[Effect, ...]
+
+    @property
+    def verdict(self) -> Literal["holds", "holds by yield", "fails"]:
+        """Whether nominal and worst case are inside, or enough units are, or neither.
+
+        A value that does not exist is not inside; a share is enough when the lower end of its
+        interval reaches the goal.
+        """
+        if not self.target.kept(self.nominal):
+            return "fails"
+        if np.all(self.target.kept([self.worst_low, self.worst_high])):
+            return "holds"
+        goal, share = self.target.goal, self.share
+        enough = goal is not None and share is not None and share.low >= goal
+        return "holds by yield" if enough else "fails"
+
+
+@dataclass(frozen=True)
+class Spread:
+    """Nominal, limits one at a time, corners and samples as one batch.
+
+    Attributes
+    ----------
+    case : Case
+        The batch, shape (n,): the nominal loop first, then each part alone at its two limits,
+        then all corners, then the samples.
+    parts : tuple of Part
+        What is spread; may be empty.
+    count, seed : int
+        Number of samples, and what they follow from.
+    """
+
+    case: Case
+    parts: tuple[Part, ...]
+    count: int
+    seed: int
+
+    def outcome(self, target: Target) -> Outcome:
+        """Evaluate one target over the batch."""
+        values = np.broadcast_to(target.values(self.case), self.case.loop.shape)
+        nominal, singles = float(values[0]), values[1 : 1 + 2 * len(self.parts)]
+        effects = [
+            Effect(part.field, float(low), float(high))
+            for part, low, high in zip(self.parts, singles[::2], singles[1::2], strict=True)
+        ]
+        drawn = values[values.size - self.count :]
+        kept = int(np.count_nonzero(target.kept(drawn)))
+        missing = bool(np.isnan(values).any())
+        return Outcome(
+            target,
+            nominal,
+            *((np.nan, np.nan) if missing else (float(values.min()), float(values.max()))),
+            *_statistics(drawn),
+            drawn,
+            yield_interval(kept, self.count) if self.count else None,
+            tuple(sorted(effects, key=lambda effect: -_movement(effect, nominal))),
+        )
+
+
+def spread(case: Case, parts: tuple[Part, ...], samples: int, seed: int) -> Spread:
+    """Put parts at their limits, in all corners and at random.
+
+    Parameters
+    ----------
+    case : Case
+        The nominal switch-on, one loop.
+    parts : tuple of Part
+        What differs from unit to unit; everything else stays nominal.
+    samples : int
+        Number of random units, zero to 1e6; each part is drawn independently.
+    seed : int
+        Zero or more; the same seed gives the same units.
+
+    Returns
+    -------
+    Spread
+
+    Raises
+    ------
+    InputError
+        If `samples` or `seed` is out of range.
+    """
+    if not 0 <= samples <= MOST_SAMPLES:
+        raise InputError("samples", samples, f"must be from 0 to {MOST_SAMPLES}")
+    if seed < 0:
+        raise InputError("seed", seed, "must be zero or more")
+    spread_parts = tuple(part for part in parts if part.high > part.low)
+    count = samples if spread_parts else 0
+    rows: dict[str, Array] = {}
+    corners = np.array(list(product((0, 1), repeat=len(spread_parts)))) if spread_parts else None
+    for index, part in enumerate(spread_parts):
+        singles = np.full(2 * len(spread_parts), part.nominal)
+        singles[2 * index : 2 * index + 2] = part.low, part.high
+        assert corners is not None
+        rows[part.field] = np.concatenate(
+            [
+                [part.nominal],
+                singles,
+                np.where(corners[:, index], part.high, part.low),
+                part.draw(count, (seed, index)),
+            ]
+        )
+    loop = case.loop
+    values: dict[str, Any] = {name: getattr(loop, name) for name in loop.__dataclass_fields__}
+    values.update(rows or {"resistance": np.array([loop.resistance])})
+    batch = Case(Loop(**values), case.source, case.capacitor_voltage, case.initial_current)
+    return Spread(batch, spread_parts, count, seed)
+
+
+def _statistics(drawn: Array) -> tuple[float, float, float, float, float, float]:
+    """Minimum, maximum, mean and 1/50/99 % points of the values that exist."""
+    there = drawn[~np.isnan(drawn)]
+    if not there.size:
+        return np.nan, np.nan, np.nan, np.nan, np.nan, np.nan
+    # Points that are samples themselves: no interpolation towards an infinite neighbour.
+    one, half, most = np.quantile(there, (0.01, 0.5, 0.99), method="inverted_cdf")
+    with np.errstate(invalid="ignore"):
+        mean = float(np.mean(there))
+    return float(there.min()), float(there.max()), mean, float(one), float(half), float(most)
+
+
+def _movement(effect: Effect, nominal: float) -> float:
+    """How far a part alone moves the quantity; a value that ceases to exist moves it most."""
+    values = (effect.low, nominal, effect.high)
+    if not np.all(np.isfinite(values)):
+        return np.inf if np.isfinite(nominal) else 0.0
+    return max(values) - min(values)
