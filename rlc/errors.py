@@ -13,7 +13,7 @@ class InputError(RlcError, ValueError):
     Attributes
     ----------
     name : str
-        The argument, flag or key path that holds the value.
+        The argument, flag or key path that holds the value; empty for a file as a whole.
     value : object
         The value as it was given.
     rule : str
@@ -28,7 +28,8 @@ class InputError(RlcError, ValueError):
 
     def __str__(self) -> str:
         shown = "" if self.value is None else f" = {self.value!r}"
-        return f"{self.name}{shown}: {self.rule}" + (f". {self.hint}" if self.hint else "")
+        head = f"{self.name}{shown}: " if self.name else ""
+        return f"{head}{self.rule}" + (f". {self.hint}" if self.hint else "")
 
 
 class SheetError(RlcError, ValueError):
@@ -37,7 +38,7 @@ class SheetError(RlcError, ValueError):
     Attributes
     ----------
     path : str
-        The sheet.
+        The sheet; empty where everything came from flags.
     problems : tuple of (int or None, InputError)
         Line number, where known, and the error.
     """
@@ -47,7 +48,8 @@ class SheetError(RlcError, ValueError):
         super().__init__(path, problems)
 
     def __str__(self) -> str:
+        places = (f"{self.path}:{line}" if line else self.path for line, _ in self.problems)
         return "\n".join(
-            f"{self.path}{'' if line is None else f':{line}'}: {error}"
-            for line, error in self.problems
+            f"{place}: {error}" if place else str(error)
+            for place, (_, error) in zip(places, self.problems, strict=True)
         )

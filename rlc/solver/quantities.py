@@ -77,6 +77,26 @@ class Quantity:
     at: str | None = None
     across: bool = False
 
+    def refuse(self, at: At, across: Across, source: str) -> None:
+        """Raise InputError if it cannot be asked for like this of a ``dc`` or ``sine`` source."""
+        if at is not None and self.at is None:
+            raise InputError("at", at, f"{self.name} is not asked for at a stated value")
+        if at is not None and not (np.isfinite(at) and at > 0):
+            raise InputError("at", at, "must be more than zero and finite")
+        if at is not None and self.at == "frequency" and source == "dc" and not self.per_volt:
+            raise InputError(
+                "at", at, f"{self.name} of a dc source is not asked for at a frequency"
+            )
+        if across is not None and not self.across:
+            raise InputError("across", across, f"{self.name} does not name an element")
+        if across is not None and across not in ELEMENTS:
+            raise InputError("across", across, f"is none of {', '.join(ELEMENTS)}")
+
+    @property
+    def per_volt(self) -> bool:
+        """Whether the source's level does not matter."""
+        return self.kind in ("resistance", "angle", "number")
+
     def __call__(self, case: Case, at: At = None, across: Across = None) -> Array:
         """Evaluate for a batch.
 
@@ -85,14 +105,7 @@ class Quantity:
         InputError
             If ``at`` or ``across`` is given and the quantity has none, or is out of range.
         """
-        if at is not None and self.at is None:
-            raise InputError("at", at, f"{self.name} is not asked for at a stated value")
-        if at is not None and not (np.isfinite(at) and at > 0):
-            raise InputError("at", at, "must be more than zero and finite")
-        if across is not None and not self.across:
-            raise InputError("across", across, f"{self.name} does not name an element")
-        if across is not None and across not in ELEMENTS:
-            raise InputError("across", across, f"is none of {', '.join(ELEMENTS)}")
+        self.refuse(at, across, case.source.kind)
         shape = np.broadcast_shapes(
             case.loop.shape, np.shape(case.source.amplitude), np.shape(case.source.frequency)
         )

@@ -1,0 +1,223 @@
+"""The text of a sheet, where its keys stand, and the flags that replace its values."""
+
+from __future__ import annotations
+
+import re
+import tomllib
+from collections.abc import Mapping
+from copy import deepcopy
+from dataclasses import dataclass, field
+from pathlib import Path
+from typing import Any, NamedTuple
+
+from rlc.errors import InputError, SheetError
+from rlc.front.flags import FLAGS, SOURCE_LEVELS, TOLERANCE_FLAGS
+
+#: A sheet is a page or two; anything far beyond is some other file.
+LARGEST_SHEET = 256 * 1024
+
+KeyPath = tuple[str | int, ...]
+
+_NAME = r"""(?:[A-Za-z0-9_-]+|"[^"]*"|'[^']*')"""
+_DOTTED = rf"{_NAME}(?:\s*\.\s*{_NAME})*"
+_HEADER = re.compile(rf"\s*(\[\[?)\s*({_DOTTED})\s*\]")
+_KEY = re.compile(rf"\s*({_DOTTED})\s*=(.*)")
+_WHERE = re.compile(r" \(at line (\d+), column (\d+)\)$")
+
+
+class Replacement(NamedTuple):
+    """A value of the sheet that a flag has replaced; `old` is None if the sheet had none."""
+
+    key: str
+    option: str
+    old: Any
+    new: str
+
+
+@dataclass(frozen=True)
+class Document:
+    """A sheet before its values are read.
+
+    Attributes
+    ----------
+    name : str
+        The file as it was given; empty if everything came from flags.
+    data : dict
+        Tables of raw values.
+    lines : dict
+        Line number of each key path.
+    options : dict
+        The flag that a value came from, by key path.
+    replacements : tuple of Replacement
+        What flags have changed in a sheet.
+    """
+
+    name: str = ""
+    data: dict[str, Any] = field(default_factory=dict)
+    lines: dict[KeyPath, int] = field(default_factory=dict)
+    options: dict[KeyPath, str] = field(default_factory=dict)
+    replacements: tuple[Replacement, ...] = ()
+
+    def line_of(self, path: KeyPath) -> int | None:
+        """Line of a key, or of the nearest table around it."""
+        for end in range(len(path), 0, -1):
+            if path[:end] in self.lines:
+                return self.lines[path[:end]]
+        return None
+
+
+def read_document(path: str | Path) -> Document:
+    """Read a sheet's text.
+
+    Parameters
+    ----------
+    path : str or Path
+        A TOML file of at most 256 kB.
+
+    Returns
+    -------
+    Document
+
+    Raises
+    ------
+    SheetError
+        If it is no readable text file, or no TOML.
+    """
+    text = _text(path)
+    try:
+        data = tomllib.loads(text)
+    except tomllib.TOMLDecodeError as error:
+        where = _WHERE.search(str(error))
+        rule = _WHERE.sub("", str(error)).rstrip(".")
+        column = f", in column {where[2]}" if where else ""
+        rule = f"is no TOML: {rule[:1].lower()}{rule[1:]}{column}"
+        hint = 'Each line is a [table], or a key with a value in quotes: value = "12 ohm"'
+        line = int(where[1]) if where else None
+        raise SheetError(str(path), ((line, InputError("", None, rule, hint)),)) from None
+    except RecursionError:
+        raise _whole(path, "is nested too deeply for a sheet") from None
+    return Document(str(path), data, _key_lines(text))
+
+
+def with_flags(document: Document, given: Mapping[str, str]) -> Document:
+    """Put the values of flags in place of those of the sheet.
+
+    Parameters
+    ----------
+    document : Document
+        A sheet, or an empty document.
+    given : mapping of str to str
+        Option, such as ``--resistance``, to its text.
+
+    Returns
+    -------
+    Document
+
+    Raises
+    ------
+    InputError
+        If flags contradict each other.
+    """
+    levels = [flag for flag in FLAGS if flag.key in SOURCE_LEVELS and flag.option in given]
+    if len(levels) > 1:
+        named = " and ".join(flag.option for flag in levels)
+        raise InputError(named, None, "are given together", "A source has one of them")
+    if levels and SOURCE_LEVELS[levels[0].key] == "dc":
+        for option in ("--frequency", "--closing-angle"):
+            if option in given:
+                raise InputError(option, given[option], "does not go with --source-dc")
+    data, options = deepcopy(document.data), dict(document.options)
+    replacements = []
+    for flag in FLAGS + TOLERANCE_FLAGS:
+        if flag.option not in given:
+            continue
+        table = data.setdefault(flag.table, {})
+        if not isinstance(table, dict):
+            # An error of the sheet, reported as such when its values are read.
+            continue
+        old = table.get(flag.key)
+        if flag in levels:
+            old = _replace_source(data, SOURCE_LEVELS[flag.key], old)
+        table[flag.key] = given[flag.option]
+        options[(flag.table, flag.key)] = flag.option
+        if document.name:
+            key = f"{flag.table}.{flag.key}"
+            replacements.append(Replacement(key, flag.option, old, given[flag.option]))
+    return Document(document.name, data, document.lines, options, tuple(replacements))
+
+
+def _replace_source(data: dict[str, Any], kind: str, old: Any) -> Any:
+    """Make room for another level, and for another kind of source; return the level it had."""
+    table = data["source"]
+    had = [table.pop(key) for key in SOURCE_LEVELS if key in table]
+    table["kind"] = kind
+    if kind == "dc":
+        table.pop("frequency", None)
+        if isinstance(data.get("switch_on"), dict):
+            data["switch_on"].pop("closing_angle", None)
+    return old if old is not None or not had else had[0]
+
+
+def _whole(path: str | Path, rule: str, hint: str = "") -> SheetError:
+    return SheetError(str(path), ((None, InputError("", None, rule, hint)),))
+
+
+def _text(path: str | Path) -> str:
+    file = Path(path)
+    try:
+        if file.is_dir():
+            raise _whole(path, "is a directory", "Name the sheet in it")
+        if not file.exists():
+            raise _whole(path, "does not exist", 'Write one with "rlc new filter FILE"')
+        if not file.is_file():
+            raise _whole(path, "is no ordinary file")
+        size = file.stat().st_size
+        if size > LARGEST_SHEET:
+            rule = f"has {size} bytes, and a sheet has at most {LARGEST_SHEET}"
+            raise _whole(path, rule, "Is it the right file?")
+        raw = file.read_bytes()
+    except (OSError, ValueError) as error:
+        if isinstance(error, SheetError):
+            raise
+        reason = getattr(error, "strerror", None) or str(error)
+        raise _whole(path, f"cannot be read: {reason}") from None
+    try:
+        # Windows editors put a byte-order mark in front.
+        text = raw.decode("utf-8-sig")
+    except UnicodeDecodeError as error:
+        rule = f"is no text in UTF-8: byte {error.start + 1} is out of place"
+        raise _whole(path, rule, "Is it the right file?") from None
+    if "\0" in text:
+        raise _whole(path, "is no text: it holds zero bytes", "Is it the right file?")
+    return text
+
+
+def _key_lines(text: str) -> dict[KeyPath, int]:
+    """Line of each table and key, first mention; TOML readers do not tell."""
+    lines: dict[KeyPath, int] = {}
+    counts: dict[KeyPath, int] = {}
+    table: KeyPath = ()
+    closing = ""
+    for number, line in enumerate(text.splitlines(), start=1):
+        if closing:
+            closing = "" if closing in line else closing
+            continue
+        if header := _HEADER.match(line):
+            table = _names(header[2])
+            if header[1] == "[[":
+                counts[table] = counts.get(table, -1) + 1
+                lines.setdefault(table, number)
+                table = (*table, counts[table])
+            lines.setdefault(table, number)
+        elif key := _KEY.match(line):
+            names = _names(key[1])
+            for end in range(1, len(names) + 1):
+                lines.setdefault(table + names[:end], number)
+            for mark in ('"""', "'''"):
+                if key[2].count(mark) == 1:
+                    closing = mark
+    return lines
+
+
+def _names(dotted: str) -> KeyPath:
+    return tuple(name.strip("\"'") for name in re.findall(_NAME, dotted))

@@ -1,0 +1,301 @@
+"""The sheet: what its tables and keys mean, and the solver's objects that they become."""
+
+from __future__ import annotations
+
+from dataclasses import dataclass
+from typing import Annotated, Any, ClassVar, Literal
+
+from pydantic import (
+    BaseModel,
+    ConfigDict,
+    Field,
+    GetCoreSchemaHandler,
+    ValidationInfo,
+    field_validator,
+    model_validator,
+)
+from pydantic_core import CoreSchema, core_schema
+
+from rlc.errors import InputError
+from rlc.front.units import Tolerance, read, read_tolerance
+from rlc.solver.case import Case
+from rlc.solver.loop import ELEMENTS, Loop, make_loop
+from rlc.solver.quantities import REGISTER
+from rlc.solver.source import Source, constant, sine
+from rlc.solver.spread import Distribution, Part
+from rlc.solver.targets import Ratings, Target
+
+
+@dataclass(frozen=True)
+class Door:
+    """Reads a text as an SI value of one kind.
+
+    Attributes
+    ----------
+    kind : str
+        Key of :data:`rlc.front.units.KINDS`.
+    least : {"any", "zero", "above zero"}
+        Lower limit.
+    word : str
+        A word that stands for None, such as "worst".
+    """
+
+    kind: str
+    least: Literal["any", "zero", "above zero"] = "any"
+    word: str = ""
+
+    def __get_pydantic_core_schema__(self, _: Any, __: GetCoreSchemaHandler) -> CoreSchema:
+        return core_schema.no_info_plain_validator_function(self.open)
+
+    def open(self, text: Any) -> float | None:
+        """Read one value; raises InputError."""
+        if self.word and text == self.word:
+            return None
+        try:
+            value = _typed(text, self.kind)
+        except InputError as error:
+            hint = error.hint + (f' or "{self.word}"' if self.word else "")
+            raise InputError("", text, error.rule, hint) from None
+        if self.least == "zero" and value < 0:
+            raise InputError("", text, "must be zero or more")
+        if self.least == "above zero" and value <= 0:
+            raise InputError("", text, "must be more than zero")
+        return value
+
+
+def _typed(text: Any, kind: str) -> float:
+    """Read a value as a sheet has it: a text, or a bare number where no unit is missing."""
+    if isinstance(text, int | float) and not isinstance(text, bool) and kind in ("number", "ratio"):
+        text = repr(text)
+    return read(text, kind, "").value
+
+
+Ohms = Annotated[float, Door("resistance", "zero")]
+OhmsAbove = Annotated[float, Door("resistance", "above zero")]
+Henries = Annotated[float, Door("inductance", "zero")]
+HenriesAbove = Annotated[float, Door("inductance", "above zero")]
+Farads = Annotated[float, Door("capacitance", "above zero")]
+Volts = Annotated[float, Door("voltage")]
+VoltsAbove = Annotated[float, Door("voltage", "above zero")]
+Amperes = Annotated[float, Door("current")]
+AmperesAbove = Annotated[float, Door("current", "above zero")]
+Watts = Annotated[float, Door("power", "above zero")]
+Hertz = Annotated[float, Door("frequency", "above zero")]
+
+
+class Table(BaseModel):
+    """A table of the sheet; unknown keys are errors."""
+
+    model_config = ConfigDict(extra="forbid", frozen=True)
+
+
+class Toleranced(Table):
+    """A part whose value differs from unit to unit."""
+
+    kind: ClassVar[str]
+    field: ClassVar[str]
+
+    value: float
+    tolerance: Tolerance | None = None
+    distribution: Distribution = "uniform"
+    sigmas: Annotated[float | None, Door("number", "above zero")] = None
+
+    @field_validator("tolerance", mode="plain")
+    @classmethod
+    def _read_tolerance(cls, text: Any, info: ValidationInfo) -> Tolerance:
+        return read_tolerance(text, cls.kind, "", info.data.get("value"))
+
+    @model_validator(mode="after")
+    def _agrees(self) -> Toleranced:
+        if self.distribution != "uniform" and self.tolerance is None:
+            raise InputError("distribution", self.distribution, "needs a tolerance")
+        if (self.distribution == "normal") != (self.sigmas is not None):
+            rule = "go together: the tolerance is so many standard deviations"
+            raise InputError(
+                'distribution = "normal" and sigmas', None, rule, "Write sigmas = 3 for example"
+            )
+        return self
+
+    def part(self) -> Part:
+        """The value with its limits."""
+        limits = self.tolerance.limits(self.value) if self.tolerance else (self.value, self.value)
+        return Part(self.field, self.value, *limits, self.distribution, self.sigmas or 0.0)
+
+
+class Resistor(Toleranced):
+    """``[resistor]``."""
+
+    kind, field = "resistance", "resistance"
+
+    value: Ohms
+    rated_power: Watts | None = None
+
+
+class Inductor(Toleranced):
+    """``[inductor]``: rated_current is rms, saturation_current peak."""
+
+    kind, field = "inductance", "inductance"
+
+    value: HenriesAbove
+    winding_resistance: Ohms = 0.0
+    rated_current: AmperesAbove | None = None
+    saturation_current: AmperesAbove | None = None
+
+
+class Capacitor(Toleranced):
+    """``[capacitor]``: rated_voltage holds at every instant, rated_voltage_rms in steady state."""
+
+    kind, field = "capacitance", "capacitance"
+
+    value: Farads
+    series_resistance: Ohms = 0.0
+    rated_voltage: VoltsAbove | None = None
+    rated_voltage_rms: VoltsAbove | None = None
+
+
+class LoadTable(Table):
+    """``[load]``: what lies across the capacitor."""
+
+    resistance: OhmsAbove
+
+
+class Dc(Table):
+    """``[source]`` with kind = "dc"."""
+
+    kind: Literal["dc"]
+    voltage: Volts
+    resistance: Ohms = 0.0
+    inductance: Henries = 0.0
+
+
+class Sine(Table):
+    """``[source]`` with kind = "sine": rms or amplitude, never both."""
+
+    kind: Literal["sine"]
+    rms: VoltsAbove | None = None
+    amplitude: VoltsAbove | None = None
+    frequency: Hertz
+    resistance: Ohms = 0.0
+    inductance: Henries = 0.0
+
+
+class SwitchOn(Table):
+    """``[switch_on]``: the states at closing."""
+
+    closing_angle: Annotated[float | None, Door("angle", word="worst")] = 0.0
+    capacitor_voltage: Volts = 0.0
+    initial_current: Amperes = 0.0
+
+
+class TargetTable(Table):
+    """``[[target]]``: limits on one registered quantity."""
+
+    quantity: Literal[tuple(REGISTER)]  # type: ignore[valid-type]
+    at: float | None = None
+    across: Literal[ELEMENTS] | None = None  # type: ignore[valid-type]
+    min: float | None = None
+    max: float | None = None
+    goal: Annotated[float | None, Door("ratio", "above zero")] = Field(default=None, alias="yield")
+
+    @field_validator("at", "min", "max", mode="plain")
+    @classmethod
+    def _read_limit(cls, text: Any, info: ValidationInfo) -> float | None:
+        entry = REGISTER.get(info.data.get("quantity", ""))
+        if entry is None:
+            # The quantity's name is the error to mend first.
+            return None
+        if info.field_name != "at":
+            return _typed(text, entry.kind)
+        if entry.at is None:
+            raise InputError("", text, f"{entry.name} is not asked for at a stated value")
+        return Door(entry.at, "above zero").open(text)
+
+    @field_validator("goal")
+    @classmethod
+    def _is_share(cls, goal: float) -> float:
+        if goal > 1:
+            raise InputError("", f"{100 * goal:g} %", "is more than 100 %")
+        return goal
+
+    @model_validator(mode="after")
+    def _agrees(self) -> TargetTable:
+        entry = REGISTER[self.quantity]
+        if self.across is not None and not entry.across:
+            raise InputError("across", self.across, f"{entry.name} does not name an element")
+        self.target()
+        return self
+
+    def target(self) -> Target:
+        """The solver's target."""
+        return Target(self.quantity, self.min, self.max, self.at, self.across, self.goal)
+
+
+class Sheet(Table):
+    """A whole sheet, in SI units."""
+
+    title: str = Field(default="", max_length=120)
+    resistor: Resistor
+    inductor: Inductor
+    capacitor: Capacitor
+    source: Annotated[Dc | Sine, Field(discriminator="kind")]
+    load: LoadTable | None = None
+    switch_on: SwitchOn = SwitchOn()
+    target: tuple[TargetTable, ...] = ()
+
+    @field_validator("title")
+    @classmethod
+    def _is_one_line(cls, title: str) -> str:
+        if not title.isprintable():
+            raise InputError("", title, "must be one line of printable characters")
+        return title
+
+    def loop(self) -> Loop:
+        """The nominal loop."""
+        return make_loop(
+            resistance=self.resistor.value,
+            inductance=self.inductor.value,
+            capacitance=self.capacitor.value,
+            winding_resistance=self.inductor.winding_resistance,
+            series_resistance=self.capacitor.series_resistance,
+            load_resistance=self.load.resistance if self.load else float("inf"),
+            source_resistance=self.source.resistance,
+            source_inductance=self.source.inductance,
+        )
+
+    def driven_by(self) -> Source:
+        """The source, with its closing angle."""
+        if isinstance(self.source, Dc):
+            return constant(self.source.voltage)
+        amplitude = self.source.amplitude
+        if amplitude is None:
+            assert self.source.rms is not None
+            amplitude = self.source.rms * 2**0.5
+        return sine(amplitude, self.source.frequency, self.switch_on.closing_angle)
+
+    def case(self) -> Case:
+        """The nominal switch-on."""
+        states = self.switch_on
+        return Case(
+            self.loop(),
+            self.driven_by(),
+            states.capacitor_voltage,  # type: ignore[arg-type]
+            states.initial_current,  # type: ignore[arg-type]
+        )
+
+    def parts(self) -> tuple[Part, ...]:
+        """Resistor, inductor and capacitor with their limits."""
+        return self.resistor.part(), self.inductor.part(), self.capacitor.part()
+
+    def ratings(self) -> Ratings:
+        """What the parts are made for."""
+        return Ratings(
+            resistor_power=self.resistor.rated_power,
+            inductor_current=self.inductor.rated_current,
+            inductor_saturation=self.inductor.saturation_current,
+            capacitor_voltage=self.capacitor.rated_voltage,
+            capacitor_voltage_rms=self.capacitor.rated_voltage_rms,
+        )
+
+    def targets(self) -> tuple[Target, ...]:
+        """The sheet's targets, then its ratings."""
+        return tuple(row.target() for row in self.target) + self.ratings().targets()

@@ -1,0 +1,231 @@
+"""A document's values against the sheet's models: every error at once, each with its place."""
+
+from __future__ import annotations
+
+from collections.abc import Iterator, Mapping
+from difflib import get_close_matches
+from pathlib import Path
+from typing import Any, NamedTuple, get_args
+
+from pydantic import BaseModel, ValidationError
+
+from rlc.errors import InputError, SheetError
+from rlc.front.document import Document, KeyPath, read_document, with_flags
+from rlc.front.flags import option_for
+from rlc.front.marking import note_on
+from rlc.front.sheet import Dc, Door, Sheet, Sine, Table
+from rlc.solver.quantities import REGISTER
+
+_SOURCES: dict[str, type[Table]] = {"dc": Dc, "sine": Sine}
+_TABLES: dict[str, type[BaseModel]] = {
+    name: kind
+    for name, info in Sheet.model_fields.items()
+    for kind in (info.annotation, *get_args(info.annotation))
+    if isinstance(kind, type) and issubclass(kind, BaseModel)
+}
+_EXAMPLES = {
+    "resistor.value": '"12 ohm"',
+    "inductor.value": '"33 mH"',
+    "capacitor.value": '"1 uF"',
+    "source.kind": '"dc" or "sine"',
+    "source.voltage": '"24 V"',
+    "source.frequency": '"50 Hz"',
+    "load.resistance": '"10 kohm"',
+}
+_SINE = 'kind = "sine", rms = "24 V", frequency = "50 Hz"'
+_LEVEL = 'Write rms = "24 V" or amplitude = "34 V"'
+
+
+class Loaded(NamedTuple):
+    """A sheet that can be worked with.
+
+    Attributes
+    ----------
+    sheet : Sheet
+        Its values.
+    document : Document
+        Where they came from.
+    notes : tuple of str
+        Values that were taken, but look like slips.
+    """
+
+    sheet: Sheet
+    document: Document
+    notes: tuple[str, ...]
+
+
+def load(path: str | Path | None = None, flags: Mapping[str, str] | None = None) -> Loaded:
+    """Read a sheet, flags, or a sheet with flags in place of some of its values.
+
+    Parameters
+    ----------
+    path : str or Path, optional
+        The sheet.
+    flags : mapping of str to str, optional
+        Option, such as ``--resistance``, to its text.
+
+    Returns
+    -------
+    Loaded
+
+    Raises
+    ------
+    SheetError
+        With everything that is wrong with the sheet.
+    InputError
+        If flags contradict each other.
+    """
+    document = with_flags(Document() if path is None else read_document(path), flags or {})
+    problems = dict(_contradictions(document.data))
+    try:
+        sheet = Sheet.model_validate(document.data)
+    except ValidationError as error:
+        for each in error.errors():
+            at, found = _problem(each, document)
+            problems.setdefault(at, found)
+    if problems:
+        ordered = sorted(problems, key=lambda at: document.line_of(at) or 0)
+        raise SheetError(
+            document.name, tuple(_placed(at, problems[at], document) for at in ordered)
+        )
+    return Loaded(sheet, document, tuple(_notes(sheet, document)))
+
+
+def _placed(at: KeyPath, found: InputError, document: Document) -> tuple[int | None, InputError]:
+    """The error with its line, under the name by which the user knows the value."""
+    name = document.options.get(at, "")
+    if not name and not document.name:
+        name = option_for(str(at[0]), str(at[-1])) if len(at) == 2 else ""
+        if at == ("source",):
+            name = "--source-rms, --source-amplitude or --source-dc"
+    if not name:
+        steps = (f"[{part + 1}]" if isinstance(part, int) else f".{part}" for part in at)
+        name = "".join(steps).lstrip(".")
+    if found.name and found.name != at[-1]:
+        name += f": {found.name}"
+    line = None if at in document.options else document.line_of(at)
+    return line, InputError(name, found.value, found.rule, found.hint)
+
+
+def _contradictions(data: Mapping[str, Any]) -> Iterator[tuple[KeyPath, InputError]]:
+    """What keys say against each other; looked for even where single values are wrong."""
+    source, switch_on, targets = (data.get(key) for key in ("source", "switch_on", "target"))
+    kind = source.get("kind") if isinstance(source, dict) else None
+    if isinstance(source, dict) and kind == "sine":
+        levels = [key for key in ("rms", "amplitude") if key in source]
+        if len(levels) == 2:
+            rule = "is given beside rms, and a sine is given by one of them"
+            yield ("source", "amplitude"), InputError("", source["amplitude"], rule)
+        elif not levels and "voltage" in source:
+            rule = "does not say whether the sine's rms or its amplitude (peak) is meant"
+            yield ("source", "voltage"), InputError("", source["voltage"], rule, _LEVEL)
+        elif not levels:
+            yield ("source",), InputError("", None, "has neither rms nor amplitude", _LEVEL)
+    if kind == "dc" and isinstance(switch_on, dict) and "closing_angle" in switch_on:
+        rule = "belongs to a sine source, and this one is dc"
+        angle = switch_on["closing_angle"]
+        yield ("switch_on", "closing_angle"), InputError("", angle, rule)
+    for index, row in enumerate(targets if isinstance(targets, list) else ()):
+        entry = REGISTER.get(str(row.get("quantity"))) if isinstance(row, dict) else None
+        if entry and kind == "dc" and entry.at == "frequency" and "at" in row:
+            rule = f"{entry.name} of a dc source is not asked for at a frequency"
+            if not entry.per_volt:
+                yield ("target", index, "at"), InputError("", row["at"], rule)
+
+
+def _problem(error: Any, document: Document) -> tuple[KeyPath, InputError]:
+    """One of pydantic's errors in our words, and where it is."""
+    # A source's place holds its kind, which is no key of the sheet.
+    at: KeyPath = tuple(
+        part
+        for index, part in enumerate(error["loc"])
+        if (error["loc"][0], index) != ("source", 1) or part not in _SOURCES
+    )
+    kind, value = error["type"], error["input"]
+    cause = error.get("ctx", {}).get("error")
+    if isinstance(cause, InputError):
+        # A rule between keys names the one to change; its value is shown as it was typed.
+        if cause.name:
+            value = value.get(cause.name) if isinstance(value, dict) else None
+        return at, InputError(cause.name, value, cause.rule, cause.hint)
+    if kind == "missing":
+        return _missing(at, document)
+    if kind == "extra_forbidden":
+        return at, InputError("", value, *_unknown(at, document.data))
+    if kind.startswith("union_tag"):
+        given = value.get("kind") if isinstance(value, dict) else None
+        rule = "is missing" if given is None else "is no kind of source"
+        hint = f"Write kind = {_EXAMPLES['source.kind']}"
+        return ("source", "kind"), InputError("", given, rule, hint)
+    if kind == "literal_error":
+        return at, InputError("", value, *_no_choice(at, value, document.data))
+    if kind in ("model_type", "model_attributes_type", "tuple_type"):
+        line = f"[[{at[0]}]]" if at[0] == "target" else f"[{at[0]}]"
+        return at, InputError("", value, f"must be a table, with a line {line} above its keys")
+    return at, InputError("", value, error["msg"][:1].lower() + error["msg"][1:])
+
+
+def _missing(at: KeyPath, document: Document) -> tuple[KeyPath, InputError]:
+    if at[-1] in _TABLES and at[-1] != "source" and len(at) == 1:
+        at = (*at, "value")
+    example = _EXAMPLES.get(".".join(str(part) for part in at), "")
+    if at == ("source",):
+        hint = f"Write [source] and below it {_SINE}" if document.name else ""
+    elif not document.name or at[0] == "target":
+        hint = f"For example {example}" if example else ""
+    else:
+        hint = f"Write below [{at[0]}] {at[-1]} = {example}" if example else ""
+    return at, InputError("", None, "is missing", hint)
+
+
+def _model_at(at: KeyPath, data: Mapping[str, Any]) -> type[BaseModel]:
+    """The model of the table around a key."""
+    if len(at) == 1:
+        return Sheet
+    if at[0] == "source":
+        return _SOURCES.get(str(data["source"].get("kind")), Sine)
+    return _TABLES[str(at[0])]
+
+
+def _no_choice(at: KeyPath, value: Any, data: Mapping[str, Any]) -> tuple[str, str]:
+    """Rule and hint for a word that is not among those that may stand here."""
+    model = _model_at(at, data)
+    names = {info.alias or name: info.annotation for name, info in model.model_fields.items()}
+    annotation = names[str(at[-1])]
+    nested = (get_args(each) or (each,) for each in get_args(annotation))
+    choices = [choice for each in nested for choice in each if isinstance(choice, str)]
+    near = get_close_matches(str(value), choices, 1)
+    if at[-1] == "quantity":
+        hint = f'Did you mean "{near[0]}"?' if near else 'The names: "rlc quantities"'
+        return "is not in the register of quantities", hint
+    listed = ", ".join(f'"{choice}"' for choice in choices)
+    return f"is none of {listed}", f'Did you mean "{near[0]}"?' if near else ""
+
+
+def _unknown(at: KeyPath, data: Mapping[str, Any]) -> tuple[str, str]:
+    """Rule and hint for a key that does not belong where it stands."""
+    key = str(at[-1])
+    here = [info.alias or name for name, info in _model_at(at, data).model_fields.items()]
+    for name, model in _TABLES.items():
+        if len(at) > 1 and name != at[0] and key in model.model_fields:
+            return f"is a key of [{name}], not of [{at[0]}]", f"Move it below [{name}]"
+    near = get_close_matches(key, here, 1)
+    return "is an unknown key", f'Did you mean "{near[0]}"?' if near else (
+        f"Known here: {', '.join(here)}"
+    )
+
+
+def _notes(sheet: Sheet, document: Document) -> Iterator[str]:
+    """Sentences on values that are implausible for their kind."""
+    for name, table in sheet:
+        if not isinstance(table, BaseModel):
+            continue
+        for key, info in type(table).model_fields.items():
+            nested = (part for each in get_args(info.annotation) for part in get_args(each))
+            door = next(
+                (part for part in (*info.metadata, *nested) if isinstance(part, Door)), None
+            )
+            value = getattr(table, key)
+            note = note_on(value, door.kind) if door and value is not None else ""
+            if note:
+                yield f"{document.options.get((name, key)) or f'{name}.{key}'}: {note}"
