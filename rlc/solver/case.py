@@ -11,7 +11,7 @@ from numpy.typing import NDArray
 
 from rlc.errors import InputError
 from rlc.solver.driven import driven_from_rest
-from rlc.solver.equation import Equation, angular, equation_of, free_response, kernels
+from rlc.solver.equation import Equation, angular, equation_of, free_response, kernels, phase
 from rlc.solver.loop import Loop
 from rlc.solver.peaks import Peak, Signal, constant_source_extrema, constant_source_peak
 from rlc.solver.search import sine_peak
@@ -64,6 +64,17 @@ class Case:
             if not np.all(np.isfinite(value)):
                 raise InputError(name, getattr(self, name), "must be finite")
             object.__setattr__(self, name, value)
+
+    @property
+    def shape(self) -> tuple[int, ...]:
+        """Shape of the batch, from everything that may be an array."""
+        source, angle = self.source, self.source.closing_angle
+        given = (source.amplitude, source.frequency, self.capacitor_voltage, self.initial_current)
+        return np.broadcast_shapes(
+            self.loop.shape,
+            *(np.shape(value) for value in given),
+            () if angle is None else np.shape(angle),
+        )
 
     @cached_property
     def equation(self) -> Equation:
@@ -127,12 +138,7 @@ class Case:
     def _find_peak(self, element: str) -> Peak:
         if self.source.kind == "dc":
             return constant_source_peak(self.equation, self.constant_signal(element))
-        shape = np.broadcast_shapes(
-            self.loop.shape,
-            np.shape(self.source.amplitude),
-            np.shape(self.source.frequency),
-            np.shape(self.capacitor_voltage),
-        )
+        shape = self.shape
 
         def flat(value: Any) -> Any:
             return np.broadcast_to(value, shape).reshape(-1)
@@ -187,7 +193,8 @@ class Case:
         )
         state = amplitude * np.imag(turn * driven_voltage) + free_voltage
         current = amplitude * np.imag(turn * driven_current) + free_current
-        source = amplitude * np.sin(angular(frequency)[0] * time + column(angle)) + 0 * current
+        cosine, sine = phase(angular(frequency), time)
+        source = amplitude * np.imag(turn * (cosine + 1j * sine)) + 0 * current
 
         def across(element: str) -> Any:
             w = loop.weights(element)

@@ -95,8 +95,12 @@ def equation_of(loop: Loop) -> Equation:
     """
     one = dd.exact(np.ones(loop.shape))
     conductance = loop.load_conductance
-    outer = dd.exact(loop.outer_resistance)
-    inductance, capacitance = dd.exact(loop.total_inductance), dd.exact(loop.capacitance)
+    outer = dd.add(
+        dd.two_sum(loop.resistance, loop.winding_resistance), dd.exact(loop.source_resistance)
+    )
+    # half a unit in the last place of the sum is 1e-12 of a turn after 1e4 periods
+    inductance = dd.two_sum(loop.inductance, loop.source_inductance)
+    capacitance = dd.exact(loop.capacitance)
     series_term = dd.add(one, dd.two_product(conductance, loop.series_resistance))
     share = dd.divide(one, series_term)
     natural_squared = dd.divide(

@@ -90,7 +90,9 @@ def constant_source_extrema(eq: Equation, signal: Signal) -> tuple[Array, Array]
         Stacked on a new first axis: at closing, the first two extrema, the final value. Later
         extrema lie between the first two, since each swing is shorter than the last.
     """
-    steady, value, slope = (np.real(part) + 0.0 * eq.damping for part in signal)
+    steady, value, slope = np.broadcast_arrays(
+        *(np.real(part) + 0.0 * eq.damping for part in signal)
+    )
     first = first_extremum(eq, value, slope)
     with np.errstate(divide="ignore", invalid="ignore"):
         second = np.where(eq.underdamped, first + np.pi / eq.root[0], first)

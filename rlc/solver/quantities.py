@@ -33,7 +33,7 @@ from rlc.solver.transient import (
 )
 
 Array = NDArray[np.float64]
-At = float | None
+At = float | Array | None
 Across = str | None
 
 _AC = "OpenStax, University Physics vol. 2, sections 15.2 to 15.5"
@@ -81,7 +81,7 @@ class Quantity:
         """Raise InputError if it cannot be asked for like this of a ``dc`` or ``sine`` source."""
         if at is not None and self.at is None:
             raise InputError("at", at, f"{self.name} is not asked for at a stated value")
-        if at is not None and not (np.isfinite(at) and at > 0):
+        if at is not None and not np.all(np.isfinite(at) & (np.asarray(at) > 0)):
             raise InputError("at", at, "must be more than zero and finite")
         if at is not None and self.at == "frequency" and source == "dc" and not self.per_volt:
             raise InputError(
@@ -98,7 +98,7 @@ class Quantity:
         return self.kind in ("resistance", "angle", "number")
 
     def __call__(self, case: Case, at: At = None, across: Across = None) -> Array:
-        """Evaluate for a batch.
+        """Evaluate for a batch; an array ``at`` broadcasts against it.
 
         Raises
         ------
@@ -141,7 +141,7 @@ def _until(case: Case, at: At) -> Array:
         return let_through(case, at)
     if case.source.kind == "dc":
         return total_let_through(case)
-    return let_through(case, 1.0 / np.max(case.source.frequency))
+    return let_through(case, 1.0 / case.source.frequency)
 
 
 def _peak_time(case: Case, element: str) -> Array:
@@ -223,8 +223,8 @@ _ROWS: tuple[Quantity, ...] = (
     Quantity(
         "capacitor_voltage_maximum_frequency", "f_C", "frequency", "loop", "zero if none",
         "Source frequency at which the capacitor voltage is largest.",
-        "sqrt(omega_0^2 - gamma^2/2)/(2 pi)", _AC,
-        lambda c, at, across: capacitor_voltage_maximum(c.equation),
+        "sqrt(omega_0^2 - gamma^2/2)/(2 pi) without series resistance", _AC,
+        lambda c, at, across: capacitor_voltage_maximum(c.loop, c.equation),
     ),
     Quantity(
         "impedance", "|Z|", "resistance", "steady", "magnitude",

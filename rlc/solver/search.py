@@ -33,6 +33,7 @@ PROVED_GAP = 1e-9
 _CELLS_AT_ONCE = 200_000
 _MOST_CELLS = 50_000_000
 _EXPONENT_LIMIT = 300.0
+_GRID, _ZOOMS = np.linspace(-1.0, 1.0, 257), 5
 
 
 def sine_peak(
@@ -63,7 +64,7 @@ def sine_peak(
     At one moment the largest :math:`|\Im(e^{j\varphi}Y) + y_0|` over all closing angles is
     :math:`|Y| + |y_0|`, so the worst angle needs one search over time and no scan of angles.
     A loop without losses never loses its free motion, which comes into step with the source
-    arbitrarily closely; its peak is the sum of the amplitudes, approached and not reached.
+    arbitrarily closely; its peak is the sum of their largest values, approached and not reached.
     """
     if closing_angle is None:
         parts = [rotating, fixed]
@@ -126,7 +127,8 @@ class _Search:
         left = np.full(self.omega.size, gap)
         undamped = self.eq.damping == 0
         if undamped.any():
-            best[undamped], when[undamped] = self._never_decaying()[undamped], np.inf
+            best[undamped] = self._never_decaying(np.flatnonzero(undamped))
+            when[undamped] = np.inf
             left[undamped] = 0.0
         which, middle, half = self._first_cells(best, gap, np.flatnonzero(~undamped))
         bound = np.full(which.size, np.inf)
@@ -176,11 +178,27 @@ class _Search:
         loop_column, middle, half_width = zip(*cells, strict=True)
         return np.concatenate(loop_column), np.concatenate(middle), np.concatenate(half_width)
 
-    def _never_decaying(self) -> Array:
-        total = self.amplitude.copy()
-        with np.errstate(invalid="ignore"):
-            for part in self.parts:
-                total += np.abs(part.first) + np.abs(part.second)
+    def _never_decaying(self, loops: Index) -> Array:
+        """Steady amplitude plus the largest that free motion of constant size comes to.
+
+        The parts swing together, so the largest of their sum is sought over one turn: on a
+        grid, then on ever finer ones around its best point.
+        """
+        rate = self.eq.natural[loops, np.newaxis]
+        best, width = np.zeros((loops.size, 1)), np.pi / 2
+        largest = np.zeros(loops.size)
+        for _ in range(_ZOOMS):
+            turn = best + width * _GRID
+            size = np.zeros(turn.shape)
+            with np.errstate(invalid="ignore"):
+                for part in self.parts:
+                    value, slope = part.value[loops, np.newaxis], part.slope[loops, np.newaxis]
+                    size += np.abs(value * np.cos(turn) + slope / rate * np.sin(turn))
+            at = size.argmax(axis=-1)[:, np.newaxis]
+            best = np.take_along_axis(turn, at, axis=-1)
+            largest = np.take_along_axis(size, at, axis=-1)[:, 0]
+            width *= 2 * (_GRID[1] - _GRID[0])
+        total: Array = self.amplitude[loops] + largest
         return np.where(np.isfinite(total), total, np.inf)
 
     def _motion(self, which: Index, time: Array) -> list[tuple[Any, Any, Any, Any, Any]]:

@@ -87,7 +87,8 @@ def steady_state(loop: Loop, frequency: Array, eq: Equation | None = None) -> St
         impedance=np.where(np.isinf(current), 0j, impedance),
         current=current,
         resistor=voltage("resistor"),
-        inductor=voltage("inductor"),
+        # from the current: as a rest of the source's volt it would cancel far below resonance
+        inductor=(loop.winding_resistance + 2j * np.pi * frequency * loop.inductance) * current,
         capacitor=voltage("capacitor"),
         dielectric=state,
     )
@@ -106,11 +107,22 @@ def half_power_frequencies(eq: Equation) -> tuple[Array, Array]:
     return eq.natural_squared[0] / upper / (2 * np.pi), upper / (2 * np.pi)
 
 
-def capacitor_voltage_maximum(eq: Equation) -> Array:
-    r"""Frequency at which the capacitor's voltage is largest [Hz].
+def capacitor_voltage_maximum(loop: Loop, eq: Equation) -> Array:
+    r"""Frequency at which the capacitor's terminal voltage is largest [Hz].
 
-    :math:`\sqrt{\omega_0^2 - \gamma^2/2}`, or zero when the damping ratio is above
-    :math:`1/\sqrt2` and the voltage only falls with frequency.
+    With :math:`\tau = rC` the voltage goes as :math:`(1 + j\omega\tau)/(\omega_0^2 - \omega^2
+    + j\omega\gamma)`, which is largest at
+
+    .. math::
+
+        \omega^2 = \frac{m}{1 + \sqrt{1 + \tau^2 m}}, \qquad
+        m = 2\omega_0^2 - \gamma^2 + \tau^2\omega_0^4,
+
+    that is :math:`\omega_0^2 - \gamma^2/2` without series resistance. Zero when m is not
+    positive and the voltage only falls with frequency.
     """
-    squared = eq.natural_squared[0] - 2 * eq.damping**2
-    return np.sqrt(np.maximum(squared, 0.0)) / (2 * np.pi)
+    squared = eq.natural_squared[0]
+    lead = (loop.series_resistance * loop.capacitance) ** 2
+    excess = np.maximum(2 * squared - eq.gamma**2 + lead * squared**2, 0.0)
+    highest: Array = np.sqrt(excess / (1 + np.sqrt(1 + lead * excess)))
+    return highest / (2 * np.pi)

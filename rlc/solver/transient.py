@@ -32,7 +32,7 @@ def capacitor_transient(case: Case) -> tuple[Array, Array, Array]:
     )
 
 
-def settling_time(case: Case, band: float = 0.02) -> Array:
+def settling_time(case: Case, band: float | Array = 0.02) -> Array:
     """Time after which the capacitor voltage stays within a band of its steady state [s].
 
     Parameters
@@ -166,21 +166,21 @@ def let_through(case: Case, until: Any) -> Array:
     ----------
     case : Case
         One switch-on or a batch; with the worst closing angle, that of the largest current.
-    until : float
-        End of the integral, zero or more [s].
+    until : array_like
+        End of the integral, zero or more; broadcasts against the batch [s].
     """
-    case_shape = np.broadcast_shapes(
-        case.loop.shape, np.shape(case.source.frequency), np.shape(case.capacitor_voltage)
-    )
-    eq, frequency = case.equation, np.broadcast_to(case.source.frequency, case_shape)
     until = np.asarray(until, dtype=np.float64)
-    quickest = np.max(np.maximum(eq.quickest, angular(frequency)[0]), initial=0.0)
-    doublings = max(0, int(np.ceil(np.log2(max(float(np.max(until)) * float(quickest), 1.0)))))
+    shape = np.broadcast_shapes(case.shape, until.shape)
+    eq, frequency = case.equation, np.broadcast_to(case.source.frequency, shape)
+    until = np.broadcast_to(until, shape)
+    turns = until * np.maximum(eq.quickest, angular(frequency)[0])
+    doublings = max(0, int(np.ceil(np.log2(np.max(turns, initial=1.0)))))
     span = until / 2.0**doublings
     columns = equation_of(case.loop.column())
-    times = span * (_NODES + 1) / 2
+    times = span[..., np.newaxis] * (_NODES + 1) / 2
     row = _current_row(columns, frequency[..., np.newaxis], times)
-    gram = np.einsum("...ni,...nj,n->...ij", row, row, _WEIGHTS) * span / 2
+    gram = np.einsum("...ni,...nj,n->...ij", row, row, _WEIGHTS)
+    gram = gram * span[..., np.newaxis, np.newaxis] / 2
     for k in range(doublings):
         step = _propagator(eq, frequency, span * 2.0**k)
         gram = gram + np.swapaxes(step, -1, -2) @ gram @ step
@@ -188,7 +188,7 @@ def let_through(case: Case, until: Any) -> Array:
     amplitude = case.source.amplitude
     start = np.stack(
         np.broadcast_arrays(
-            case.capacitor_voltage + np.zeros(case_shape),
+            case.capacitor_voltage + np.zeros(shape),
             case.initial_current,
             amplitude * np.sin(angle),
             amplitude * np.cos(angle),
