@@ -222,6 +222,8 @@ class TargetTable(Table):
         entry = REGISTER[self.quantity]
         if self.across is not None and not entry.across:
             raise InputError("across", self.across, f"{entry.name} does not name an element")
+        if self.min is None and self.max is None:
+            raise InputError("min or max", None, "is missing")
         self.target()
         return self
 
@@ -285,6 +287,11 @@ class Sheet(Table):
     def parts(self) -> tuple[Part, ...]:
         """Resistor, inductor and capacitor with their limits."""
         return self.resistor.part(), self.inductor.part(), self.capacitor.part()
+
+    def tolerances(self) -> dict[str, str]:
+        """Tolerances as they were typed, by field of the loop."""
+        rows: tuple[Toleranced, ...] = (self.resistor, self.inductor, self.capacitor)
+        return {row.field: row.tolerance.text for row in rows if row.tolerance}
 
     def ratings(self) -> Ratings:
         """What the parts are made for."""

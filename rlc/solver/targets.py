@@ -24,7 +24,8 @@ class Target:
     quantity : str
         Name in the register.
     minimum, maximum : float, optional
-        Limits, themselves allowed; at least one is given [SI unit of the quantity].
+        Limits, themselves allowed [SI unit of the quantity]. Without any, the quantity is only
+        asked for over the spread.
     at : float, optional
         Where the quantity is asked for: a frequency [Hz], a time [s] or a band [1].
     across : str, optional
@@ -46,8 +47,6 @@ class Target:
     def __post_init__(self) -> None:
         if self.quantity not in REGISTER:
             raise InputError("quantity", self.quantity, "is not in the register of quantities")
-        if self.minimum is None and self.maximum is None:
-            raise InputError(self.quantity, None, "needs a min, a max or both")
         if None not in (self.minimum, self.maximum) and self.minimum > self.maximum:  # type: ignore[operator]
             raise InputError("min", self.minimum, "is above max")
 
@@ -55,6 +54,11 @@ class Target:
     def entry(self) -> Quantity:
         """The quantity's row in the register."""
         return REGISTER[self.quantity]
+
+    @property
+    def limited(self) -> bool:
+        """Whether there is anything to keep."""
+        return self.minimum is not None or self.maximum is not None
 
     def values(self, case: Case) -> Array:
         """The quantity for each loop of a batch [SI]."""

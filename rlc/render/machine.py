@@ -1,0 +1,129 @@
+"""Results as JSON: SI numbers at full precision, null where there is none."""
+
+from __future__ import annotations
+
+import math
+from collections.abc import Iterable, Mapping
+from dataclasses import fields
+from typing import Any
+
+from rlc.front.marking import KINDS
+from rlc.render.cautions import Caution
+from rlc.solver.case import Case
+from rlc.solver.loop import Loop
+from rlc.solver.quantities import REGISTER, Quantity
+from rlc.solver.spread import Outcome, Part
+from rlc.solver.sweep import Sweep
+
+# Where the unit that is printed is not the SI unit.
+_SI = {"angle": "rad", "ratio": "1", "number": "1"}
+
+
+def unit(kind: str) -> str:
+    """The SI unit of a kind of quantity, as text."""
+    return _SI.get(kind, KINDS[kind].symbol)
+
+
+def number(value: Any) -> float | None:
+    """A finite float, or None."""
+    return float(value) if value is not None and math.isfinite(value) else None
+
+
+def loop(case: Case, parts: Iterable[Part] = ()) -> dict[str, Any]:
+    """The loop as understood: every part, what adds up, the source, the states at closing."""
+    values = {field.name: number(getattr(case.loop, field.name)) for field in fields(Loop)}
+    source = case.source
+    sine = source.kind == "sine"
+    angle: Any = source.closing_angle
+    return values | {
+        "total_resistance": number(case.loop.total_resistance),
+        "total_inductance": number(case.loop.total_inductance),
+        "source": {
+            "kind": source.kind,
+            "amplitude": number(source.amplitude),
+            "rms": number(source.rms),
+            "frequency": number(source.frequency),
+            "closing_angle": ("worst" if angle is None else number(angle)) if sine else None,
+        },
+        "capacitor_voltage": number(case.capacitor_voltage),
+        "initial_current": number(case.initial_current),
+        "limits": {part.field: [part.low, part.high] for part in parts if part.high > part.low},
+    }
+
+
+def quantities(values: Mapping[str, float]) -> dict[str, Any]:
+    """Registered quantities by name."""
+    return {
+        name: {"value": number(value), "unit": unit(REGISTER[name].kind)}
+        for name, value in values.items()
+    }
+
+
+def _asked(outcome: Outcome) -> dict[str, Any]:
+    target = outcome.target
+    return {"quantity": target.quantity, "at": number(target.at), "across": target.across}
+
+
+def target(outcome: Outcome) -> dict[str, Any]:
+    """One target with its verdict."""
+    asked, share = outcome.target, outcome.share
+    return _asked(outcome) | {
+        "min": number(asked.minimum),
+        "max": number(asked.maximum),
+        "goal": number(asked.goal),
+        "rating": asked.rating or None,
+        "nominal": number(outcome.nominal),
+        "worst_low": number(outcome.worst_low),
+        "worst_high": number(outcome.worst_high),
+        "yield": share._asdict() if share else None,
+        "verdict": outcome.verdict,
+    }
+
+
+def spread(outcome: Outcome) -> dict[str, Any]:
+    """How one quantity is spread, and what each part alone does to it."""
+    points = ("nominal", "minimum", "percent_1", "percent_50", "mean", "percent_99", "maximum")
+    return (
+        _asked(outcome)
+        | {"unit": unit(outcome.target.entry.kind)}
+        | {name: number(getattr(outcome, name)) for name in points}
+        | {
+            "parts": [
+                {"part": effect.field, "low": number(effect.low), "high": number(effect.high)}
+                for effect in outcome.effects
+            ]
+        }
+    )
+
+
+def sweep(found: Sweep) -> dict[str, Any]:
+    """A frequency response, column by column."""
+    columns = {
+        column.quantity + (f"_across_{column.across}" if column.across else ""): column.values
+        for column in found.columns
+    }
+    return {
+        name: [number(value) for value in values]
+        for name, values in ({"frequency": found.frequency} | columns).items()
+    }
+
+
+def register(rows: Iterable[Quantity]) -> list[dict[str, Any]]:
+    """Entries of the register."""
+    words = (
+        "name",
+        "symbol",
+        "group",
+        "convention",
+        "definition",
+        "formula",
+        "at",
+        "across",
+        "source",
+    )
+    return [{"unit": unit(row.kind)} | {word: getattr(row, word) for word in words} for row in rows]
+
+
+def cautions(found: Iterable[Caution]) -> list[dict[str, str]]:
+    """Cautions in their order."""
+    return [{"id": caution.id, "text": caution.text} for caution in found]

@@ -1,0 +1,233 @@
+"""The main job: a sheet in, results and verdicts out."""
+
+from __future__ import annotations
+
+from collections.abc import Callable, Iterable, Mapping
+from dataclasses import dataclass
+from pathlib import Path
+from typing import TYPE_CHECKING, Any
+
+from rlc import __version__
+from rlc.errors import InputError
+from rlc.front.validate import Loaded, load
+from rlc.render import machine
+from rlc.render.cautions import Caution, cautions
+from rlc.solver.case import Case
+from rlc.solver.quantities import REGISTER
+from rlc.solver.spread import Outcome, Spread, spread
+from rlc.solver.sweep import Sweep
+from rlc.solver.targets import Target
+
+if TYPE_CHECKING:
+    from matplotlib.figure import Figure
+
+#: Random units unless stated otherwise: enough to tell 99.9 % from 99 %, at seconds of work.
+SAMPLES = 2000
+SEED = 1
+
+#: What a spread shows where nobody has asked for anything.
+USUAL = (
+    "natural_frequency",
+    "bandwidth",
+    "quality_factor",
+    "peak_current",
+    "peak_capacitor_voltage",
+)
+
+
+@dataclass(frozen=True)
+class Review:
+    """What was computed from one sheet.
+
+    Attributes
+    ----------
+    loaded : Loaded
+        The sheet's values and where they came from.
+    case : Case
+        The nominal switch-on.
+    quantities : mapping of str to float
+        Nominal values by name; nan where one does not exist [SI unit of the quantity].
+    spread : Spread or None
+        Nominal, corners and samples as one batch; None if no spread was asked for.
+    outcomes : tuple of Outcome
+        One per target, in the order of the sheet, then the ratings.
+    cautions : tuple of Caution
+        What belongs beside the numbers.
+    sweep : Sweep or None
+        The frequency response, if it was asked for.
+    """
+
+    loaded: Loaded
+    case: Case
+    quantities: Mapping[str, float]
+    spread: Spread | None
+    outcomes: tuple[Outcome, ...]
+    cautions: tuple[Caution, ...]
+    sweep: Sweep | None = None
+
+    @property
+    def targets_hold(self) -> bool:
+        """Whether no target fails; a quantity without limits is no target."""
+        return all(outcome.verdict != "fails" for outcome in self.outcomes)
+
+    def document(self) -> dict[str, Any]:
+        """Everything in it as one JSON document, in SI units."""
+        loaded, batch = self.loaded, self.spread
+        found: dict[str, Any] = {
+            "title": loaded.sheet.title,
+            "sheet": loaded.document.name or None,
+            "version": __version__,
+        }
+        if batch is not None:
+            found |= {"seed": batch.seed, "samples": batch.count}
+        if loaded.document.replacements:
+            found["replaced"] = [each._asdict() for each in loaded.document.replacements]
+        found["loop"] = machine.loop(self.case, loaded.sheet.parts())
+        found["quantities"] = machine.quantities(self.quantities)
+        if batch is not None:
+            limited = [each for each in self.outcomes if each.target.limited]
+            found["targets"] = [machine.target(outcome) for outcome in limited]
+            found["spread"] = [machine.spread(outcome) for outcome in self.outcomes]
+        if self.sweep is not None:
+            found["sweep"] = machine.sweep(self.sweep)
+        return found | {"cautions": machine.cautions(self.cautions)}
+
+    def pictures(self, names: Iterable[str]) -> dict[str, Callable[[], Figure]]:
+        """What draws each picture, by file name without suffix.
+
+        Parameters
+        ----------
+        names : iterable of {"frequency-response", "switch-on", "state-plane", "spread"}
+            Which to draw; "spread" stands for one histogram per outcome.
+        """
+        from rlc.render import plots
+
+        title = self.loaded.sheet.title or "Series loop"
+        beside = tuple(caution.text for caution in self.cautions)
+        limits = self.loaded.sheet.targets()
+        batch = self.spread.case if self.spread and self.spread.parts else None
+
+        def histogram(outcome: Outcome) -> Callable[[], Figure]:
+            return lambda: plots.histogram(
+                outcome.target, outcome.samples, outcome.nominal, beside, title
+            )
+
+        drawn: dict[str, Callable[[], Figure]] = {
+            "frequency-response": lambda: plots.frequency_response(
+                self.case, limits, batch, beside, title
+            ),
+            "switch-on": lambda: plots.switch_on(self.case, limits, batch, beside, title),
+            "state-plane": lambda: plots.state_plane(self.case, beside, title),
+        }
+        asked = list(names)
+        found = {name: drawn[name] for name in asked if name in drawn}
+        if "spread" in asked and batch is not None:
+            for index, outcome in enumerate(self.outcomes, start=1):
+                found[f"spread-{index}-{outcome.target.quantity}"] = histogram(outcome)
+        return found
+
+
+def check(
+    path: str | Path | None = None,
+    *,
+    flags: Mapping[str, str] | None = None,
+    samples: int = SAMPLES,
+    seed: int = SEED,
+) -> Review:
+    """Judge a loop from one sheet of parts.
+
+    Parameters
+    ----------
+    path : str or Path, optional
+        The sheet.
+    flags : mapping of str to str, optional
+        Values in place of the sheet's, as on the command line: ``{"--load": "10 kohm"}``.
+    samples, seed : int
+        Random units that are drawn, zero to 1e6, and what they follow from.
+
+    Returns
+    -------
+    Review
+
+    Raises
+    ------
+    SheetError, InputError
+        If the sheet or a value cannot be used.
+    """
+    loaded = load(path, flags)
+    return review(loaded, REGISTER, judge(loaded, loaded.sheet.targets(), samples, seed))
+
+
+def judge(
+    loaded: Loaded, targets: Iterable[Target], samples: int, seed: int
+) -> tuple[Spread, tuple[Outcome, ...]]:
+    """Put the sheet's parts through their spread, and each target through that."""
+    batch = spread(loaded.sheet.case(), loaded.sheet.parts(), samples, seed)
+    return batch, tuple(batch.outcome(target) for target in targets)
+
+
+def review(
+    loaded: Loaded,
+    names: Iterable[str],
+    judged: tuple[Spread, tuple[Outcome, ...]] | None = None,
+) -> Review:
+    """Put together what was asked for.
+
+    Parameters
+    ----------
+    loaded : Loaded
+        The sheet.
+    names : iterable of str
+        Registered quantities to evaluate.
+    judged : tuple, optional
+        What :func:`judge` gave.
+    """
+    case = loaded.sheet.case()
+    batch, outcomes = judged or (None, ())
+    worst = {
+        outcome.target.quantity: outcome.worst_high
+        for outcome in outcomes
+        if outcome.target.at is None and outcome.target.across is None
+    }
+    return Review(
+        loaded,
+        case,
+        {name: float(REGISTER[name](case)) for name in names},
+        batch,
+        outcomes,
+        cautions(case, loaded.sheet.ratings(), worst),
+    )
+
+
+def names_in(*groups: str) -> tuple[str, ...]:
+    """Names of the registered quantities of some groups."""
+    return tuple(name for name, entry in REGISTER.items() if entry.group in groups)
+
+
+def asked_targets(loaded: Loaded, names: Iterable[str]) -> tuple[Target, ...]:
+    """What `rlc spread` looks at: the named quantities, else the targets, else the usual ones.
+
+    Raises
+    ------
+    InputError
+        If a name is not in the register.
+    """
+    targets = loaded.sheet.targets()
+    named = tuple(names)
+    unknown = [name for name in named if name not in REGISTER]
+    if unknown:
+        raise unknown_quantity(unknown[0], "--quantity")
+    if named:
+        limited = {target.quantity for target in targets}
+        extra = tuple(Target(name) for name in named if name not in limited)
+        return tuple(target for target in targets if target.quantity in named) + extra
+    return targets or tuple(Target(name) for name in USUAL)
+
+
+def unknown_quantity(name: str, where: str) -> InputError:
+    """The error for a name that is not in the register, with the nearest one that is."""
+    from difflib import get_close_matches
+
+    near = get_close_matches(name, REGISTER, 1)
+    hint = f'Did you mean "{near[0]}"?' if near else 'The names: "rlc quantities"'
+    return InputError(where, name, "is not in the register of quantities", hint)
