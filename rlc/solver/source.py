@@ -74,13 +74,16 @@ class Source:
         return 1.0 if self.kind == "dc" else float(np.sqrt(0.5))
 
 
-def constant(voltage: float) -> Source:
+def constant(voltage: float | Array) -> Source:
     """A constant voltage, stepped on at t = 0 [V]."""
-    return Source(np.float64(voltage))  # type: ignore[arg-type]
+    return Source(np.asarray(voltage, dtype=np.float64))
 
 
-def sine(amplitude: float, frequency: float, closing_angle: float | None = 0.0) -> Source:
+def sine(
+    amplitude: float | Array, frequency: float | Array, closing_angle: float | Array | None = 0.0
+) -> Source:
     """A sinusoid of given peak value [V], frequency [Hz] and closing angle [rad, None: worst]."""
-    if not frequency > 0:
+    if not np.all(np.asarray(frequency) > 0):
         raise InputError("frequency", frequency, "a sine needs a frequency above zero")
-    return Source(np.float64(amplitude), np.float64(frequency), closing_angle)  # type: ignore[arg-type]
+    angle = None if closing_angle is None else np.asarray(closing_angle, dtype=np.float64)
+    return Source(np.asarray(amplitude, dtype=np.float64), np.asarray(frequency), angle)

@@ -1,0 +1,348 @@
+"""The sheet: what is read, what is refused, and where the errors point."""
+
+from __future__ import annotations
+
+import errno
+import math
+import os
+from pathlib import Path
+
+import pytest
+
+from rlc.errors import InputError, SheetError
+from rlc.front.document import LARGEST_SHEET
+from rlc.front.validate import load
+
+GOOD = """\
+title = "Buoy light"
+[resistor]
+value = "12 ohm"
+tolerance = "1 %"
+rated_power = "5 W"
+[inductor]
+value = "33 mH"
+tolerance = "0.5 mH"
+winding_resistance = "2.2 ohm"
+rated_current = "0.8 A"
+saturation_current = "2 A"
+[capacitor]
+value = "1u0"
+tolerance = "-20 % / +80 %"
+series_resistance = "0.1 ohm"
+rated_voltage = "250 V"
+rated_voltage_rms = "160 V"
+[load]
+resistance = "10 kohm"
+[source]
+kind = "sine"
+rms = "24 V"
+frequency = "880 Hz"
+resistance = "0.5 ohm"
+inductance = "10 uH"
+[switch_on]
+closing_angle = "30 deg"
+capacitor_voltage = "-5 V"
+initial_current = "10 mA"
+[[target]]
+quantity = "bandwidth"
+max = "80 Hz"
+yield = "99 %"
+[[target]]
+quantity = "gain"
+across = "resistor"
+at = "300 Hz"
+max = 0.03
+"""
+
+
+def write(folder: Path, text: str) -> Path:
+    path = folder / "sheet.toml"
+    path.write_text(text, encoding="utf-8")
+    return path
+
+
+def problems(folder: Path, text: str) -> list[str]:
+    with pytest.raises(SheetError) as caught:
+        load(write(folder, text))
+    # Paths vary between machines; what follows them does not.
+    return [
+        line.removeprefix(f"{folder / 'sheet.toml'}:") for line in str(caught.value).splitlines()
+    ]
+
+
+def test_every_value_arrives_in_si_units(tmp_path: Path) -> None:
+    sheet = load(write(tmp_path, GOOD)).sheet
+    loop, source, case = sheet.loop(), sheet.driven_by(), sheet.case()
+    assert (loop.resistance, loop.inductance, loop.capacitance) == (12.0, 33e-3, 1e-6)
+    assert (loop.winding_resistance, loop.series_resistance) == (2.2, 0.1)
+    assert (loop.source_resistance, loop.source_inductance) == (0.5, 10e-6)
+    assert loop.load_resistance == 10e3
+    assert source.amplitude == pytest.approx(24 * math.sqrt(2), rel=1e-15)
+    assert source.frequency == 880.0
+    assert source.closing_angle == pytest.approx(math.pi / 6, rel=1e-15)
+    assert (case.capacitor_voltage, case.initial_current) == (-5.0, 0.01)
+    limits = {part.field: (part.low, part.high) for part in sheet.parts()}
+    assert limits["resistance"] == pytest.approx((11.88, 12.12), rel=1e-15)
+    assert limits["inductance"] == pytest.approx((32.5e-3, 33.5e-3), rel=1e-15)
+    assert limits["capacitance"] == pytest.approx((0.8e-6, 1.8e-6), rel=1e-15)
+    first, second, *ratings = sheet.targets()
+    assert (first.quantity, first.maximum, first.goal) == ("bandwidth", 80.0, 0.99)
+    assert (second.across, second.at, second.maximum) == ("resistor", 300.0, 0.03)
+    assert {(each.rating, each.quantity, each.maximum) for each in ratings} == {
+        ("resistor.rated_power", "resistor_power", 5.0),
+        ("inductor.rated_current", "current", 0.8),
+        ("inductor.saturation_current", "peak_current", 2.0),
+        ("capacitor.rated_voltage", "peak_capacitor_voltage", 250.0),
+        ("capacitor.rated_voltage_rms", "capacitor_voltage", 160.0),
+    }
+
+
+def test_worst_closing_angle_is_a_word(tmp_path: Path) -> None:
+    sheet = load(write(tmp_path, GOOD.replace("30 deg", "worst"))).sheet
+    assert sheet.driven_by().worst_angle
+
+
+def test_all_errors_come_at_once_each_with_its_line(tmp_path: Path) -> None:
+    text = (
+        GOOD.replace('"12 ohm"', '"12"')
+        .replace('"33 mH"', '"10 mh"')
+        .replace('"1u0"', '"1,0 uF"')
+        .replace("winding_resistance", "winding_resistence")
+        .replace('"30 deg"', '"wrst"')
+        .replace('"bandwidth"', '"bandwith"')
+        .replace('"resistor"', '"resister"')
+    )
+    assert problems(tmp_path, text) == [
+        "3: resistor.value = '12': has no unit. Write for example \"4.7 kohm\"",
+        "7: inductor.value = '10 mh': is in millihour, a unit of time, and inductance is expected."
+        ' Capital letters matter: millihenry is written mH, as in "10 mH"',
+        "9: inductor.winding_resistence = '2.2 ohm': is an unknown key."
+        ' Did you mean "winding_resistance"?',
+        "13: capacitor.value = '1,0 uF': uses a comma; write the decimal mark as a point, and"
+        ' thousands with no separator. Write for example "4.7 uF"',
+        "27: switch_on.closing_angle = 'wrst': does not begin with a number."
+        ' Write for example "30 deg" or "worst"',
+        "31: target[1].quantity = 'bandwith': is not in the register of quantities."
+        ' Did you mean "bandwidth"?',
+        '36: target[2].across = \'resister\': is none of "resistor", "inductor", "capacitor".'
+        ' Did you mean "resistor"?',
+    ]
+
+
+@pytest.mark.parametrize(
+    ("old", "new", "said"),
+    [
+        ('rms = "24 V"\n', "", "20: source: has neither rms nor amplitude. Write rms"),
+        (
+            'rms = "24 V"',
+            'rms = "24 V"\namplitude = "34 V"',
+            "23: source.amplitude = '34 V': is given beside rms",
+        ),
+        (
+            'rms = "24 V"',
+            'voltage = "24 V"',
+            "22: source.voltage = '24 V': does not say whether the sine's rms or its amplitude",
+        ),
+        ('"880 Hz"', '"880 rad/s"', "23: source.frequency = '880 rad/s': is an angular rate"),
+        ('"880 Hz"', '"0 Hz"', "23: source.frequency = '0 Hz': must be more than zero"),
+        (
+            '"sine"',
+            '"square"',
+            "21: source.kind = 'square': is no kind of source. Write kind = \"dc\"",
+        ),
+        ('kind = "sine"\n', "", '20: source.kind: is missing. Write kind = "dc" or "sine"'),
+        ('"12 ohm"', '"-1 ohm"', "3: resistor.value = '-1 ohm': must be zero or more"),
+        ('"33 mH"', '"0 H"', "7: inductor.value = '0 H': must be more than zero"),
+        ('"33 mH"', "33", "7: inductor.value = 33: must be a text with a number and a unit"),
+        (
+            'value = "33 mH"\n',
+            "",
+            '6: inductor.value: is missing. Write below [inductor] value = "33',
+        ),
+        ('"10 kohm"', '"0 ohm"', "19: load.resistance = '0 ohm': must be more than zero"),
+        ('"0.5 mH"', '"5"', "8: inductor.tolerance = '5': has no unit"),
+        ('"1 %"', '"100 %"', "4: resistor.tolerance = '100 %': would let the value reach zero"),
+        (
+            "rated_power",
+            "rated_voltage",
+            "5: resistor.rated_voltage = '5 W': is a key of [capacitor]",
+        ),
+        ('max = "80 Hz"', "", "30: target[1]: min or max: is missing"),
+        ('max = "80 Hz"', 'max = "80 V"', "32: target[1].max = '80 V': is in V, a unit of voltage"),
+        (
+            'max = "80 Hz"',
+            'min = "90 Hz"\nmax = "80 Hz"',
+            "30: target[1]: min = '90 Hz': is above max",
+        ),
+        ('yield = "99 %"', 'yield = "101 %"', "33: target[1].yield = '101 %': is more than 100 %"),
+        (
+            'yield = "99 %"',
+            'at = "1 Hz"',
+            "33: target[1].at = '1 Hz': bandwidth is not asked for at",
+        ),
+        (
+            'yield = "99 %"',
+            'across = "inductor"',
+            "30: target[1]: across = 'inductor': bandwidth does not name an element",
+        ),
+        ("[load]", "[lode]", "18: lode = {'resistance': '10 kohm'}: is an unknown key."),
+        (
+            'tolerance = "1 %"',
+            'tolerance = "1 %"\ndistribution = "normal"',
+            '2: resistor: distribution = "normal" and sigmas: go together',
+        ),
+        (
+            'tolerance = "1 %"',
+            'distribution = "triangular"',
+            "2: resistor: distribution = 'triangular': needs a tolerance",
+        ),
+        ('"Buoy light"', '"a\\u001b[31mb"', "1: title = 'a\\x1b[31mb': must be one line"),
+        ("[switch_on]", "[switch_on", "26: is no TOML: expected ']' at the end of a table"),
+    ],
+)
+def test_one_slip_one_sentence(tmp_path: Path, old: str, new: str, said: str) -> None:
+    assert GOOD.count(old) >= 1
+    found = problems(tmp_path, GOOD.replace(old, new, 1))
+    assert len(found) == 1
+    assert found[0].startswith(said)
+
+
+def test_dc_source_has_no_angle_and_no_level_at_a_frequency(tmp_path: Path) -> None:
+    text = GOOD.replace('kind = "sine"\nrms', 'kind = "dc"\nvoltage').replace(
+        'frequency = "880 Hz"\n', ""
+    )
+    text = text.replace('"bandwidth"\nmax = "80 Hz"', '"current"\nat = "50 Hz"\nmax = "1 A"')
+    assert problems(tmp_path, text) == [
+        "26: switch_on.closing_angle = '30 deg': belongs to a sine source, and this one is dc",
+        "31: target[1].at = '50 Hz': current of a dc source is not asked for at a frequency",
+    ]
+
+
+def test_missing_parts_are_all_named(tmp_path: Path) -> None:
+    assert problems(tmp_path, "") == [
+        f" {line}"
+        for line in (
+            'resistor.value: is missing. Write below [resistor] value = "12 ohm"',
+            'inductor.value: is missing. Write below [inductor] value = "33 mH"',
+            'capacitor.value: is missing. Write below [capacitor] value = "1 uF"',
+            'source: is missing. Write [source] and below it kind = "sine", rms = "24 V",'
+            ' frequency = "50 Hz"',
+        )
+    ]
+
+
+@pytest.mark.parametrize(
+    ("content", "said"),
+    [
+        (b"\x89PNG\r\n\x1a\n\xff\xfe", "is no text in UTF-8: byte 1 is out of place"),
+        (b'title = "a\0b"', "is no text: it holds zero bytes"),
+        (b"# " + b"x" * 1_000_000, f"has 1000002 bytes, and a sheet has at most {LARGEST_SHEET}"),
+        (b"a = " + b"[" * 5000 + b"]" * 5000, "is nested too deeply"),
+    ],
+    ids=["binary", "zero bytes", "1 MB", "nested"],
+)
+def test_files_that_are_no_sheets(tmp_path: Path, content: bytes, said: str) -> None:
+    path = tmp_path / "sheet.toml"
+    path.write_bytes(content)
+    with pytest.raises(SheetError) as caught:
+        load(path)
+    assert said in str(caught.value)
+    assert len(str(caught.value).splitlines()) == 1
+
+
+def test_a_directory_a_missing_file_and_one_without_permission(
+    tmp_path: Path, monkeypatch: pytest.MonkeyPatch
+) -> None:
+    with pytest.raises(SheetError, match="is a directory"):
+        load(tmp_path)
+    with pytest.raises(SheetError, match=r"does not exist\. Write one with"):
+        load(tmp_path / "none.toml")
+    locked = write(tmp_path, GOOD)
+
+    def refuse(path: Path) -> bytes:
+        # As the system does it; whoever runs the tests may be allowed to read everything.
+        raise PermissionError(errno.EACCES, os.strerror(errno.EACCES), str(path))
+
+    monkeypatch.setattr(Path, "read_bytes", refuse)
+    with pytest.raises(SheetError, match="cannot be read: Permission denied"):
+        load(locked)
+
+
+def test_a_byte_order_mark_is_no_error(tmp_path: Path) -> None:
+    path = tmp_path / "sheet.toml"
+    path.write_text(GOOD, encoding="utf-8-sig")
+    assert load(path).sheet.title == "Buoy light"
+
+
+def test_lines_are_found_in_dotted_inline_and_multiline_toml(tmp_path: Path) -> None:
+    text = (
+        'title = """\\\n  [resistor] \\\n  value = 3"""\n'
+        'resistor.value = "12"\n'
+        'inductor = { value = "33" }\n'
+        '["capacitor"]\n"value" = "1 uV"\n'
+        '[source]\nkind = "dc"\nvoltage = "1"\n'
+    )
+    assert [line.split(":")[0] for line in problems(tmp_path, text)] == ["4", "5", "7", "10"]
+
+
+def test_a_slip_that_may_be_meant_gets_a_note(tmp_path: Path) -> None:
+    loaded = load(write(tmp_path, GOOD.replace('"33 mH"', '"10 MH"').replace('"0.5 mH"', '"5 %"')))
+    assert loaded.sheet.inductor.value == 10e6
+    assert [note.split(":")[0] for note in loaded.notes] == ["inductor.value"]
+
+
+def test_flags_alone_make_the_same_loop_as_a_sheet(tmp_path: Path) -> None:
+    flags = {
+        "--resistance": "12 ohm",
+        "--inductance": "33 mH",
+        "--capacitance": "1u0",
+        "--winding-resistance": "2.2 ohm",
+        "--series-resistance": "0.1 ohm",
+        "--load": "10 kohm",
+        "--source-rms": "24 V",
+        "--frequency": "880 Hz",
+        "--source-resistance": "0.5 ohm",
+        "--source-inductance": "10 uH",
+        "--closing-angle": "30 deg",
+        "--capacitor-voltage": "-5 V",
+        "--initial-current": "10 mA",
+    }
+    assert repr(load(None, flags).sheet.case()) == repr(load(write(tmp_path, GOOD)).sheet.case())
+
+
+def test_a_flag_replaces_a_value_and_is_named_in_errors(tmp_path: Path) -> None:
+    path = write(tmp_path, GOOD)
+    loaded = load(path, {"--resistance": "15 ohm", "--source-amplitude": "10 V"})
+    assert loaded.sheet.resistor.value == 15.0
+    assert loaded.sheet.driven_by().amplitude == 10.0
+    assert [(each.key, each.old, each.new) for each in loaded.document.replacements] == [
+        ("resistor.value", "12 ohm", "15 ohm"),
+        ("source.amplitude", "24 V", "10 V"),
+    ]
+    with pytest.raises(SheetError) as caught:
+        load(path, {"--resistance": "15"})
+    assert str(caught.value).startswith(f"{path}: --resistance = '15': has no unit")
+
+
+def test_a_dc_flag_turns_a_sine_sheet_into_dc(tmp_path: Path) -> None:
+    sheet = load(write(tmp_path, GOOD), {"--source-dc": "48 V"}).sheet
+    assert sheet.driven_by().kind == "dc"
+    assert sheet.driven_by().amplitude == 48.0
+    assert sheet.loop().source_resistance == 0.5
+
+
+def test_flags_that_contradict_each_other() -> None:
+    with pytest.raises(InputError, match="--source-rms and --source-dc: are given together"):
+        load(None, {"--source-rms": "1 V", "--source-dc": "1 V"})
+    with pytest.raises(InputError, match="--frequency = '50 Hz': does not go with --source-dc"):
+        load(None, {"--source-dc": "1 V", "--frequency": "50 Hz"})
+
+
+def test_flags_that_are_missing_are_named_as_flags() -> None:
+    with pytest.raises(SheetError) as caught:
+        load(None, {"--resistance": "1 ohm", "--source-rms": "1 V"})
+    assert str(caught.value).splitlines() == [
+        '--inductance: is missing. For example "33 mH"',
+        '--capacitance: is missing. For example "1 uF"',
+        '--frequency: is missing. For example "50 Hz"',
+    ]
