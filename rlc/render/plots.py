@@ -1,0 +1,133 @@
+"""The pictures of an answer: over frequency, over time, in the state plane, over samples.
+
+Each function returns a figure and draws nothing on any screen; `save` writes it.
+"""
+
+from __future__ import annotations
+
+from collections.abc import Sequence
+from typing import TYPE_CHECKING
+
+import numpy as np
+from numpy.typing import ArrayLike, NDArray
+
+from rlc.front.marking import KINDS, show
+from rlc.render.figures import (
+    INSIDE,
+    NATURAL,
+    OUTSIDE,
+    fit_height,
+    legend_above,
+    limit_label,
+    limit_line,
+    limits,
+    name_axis,
+    note,
+    panels,
+    save,
+)
+from rlc.render.responses import frequency_response
+from rlc.render.transients import state_plane, switch_on
+from rlc.solver.targets import Target
+
+if TYPE_CHECKING:
+    from matplotlib.figure import Figure
+
+__all__ = ["frequency_response", "histogram", "save", "state_plane", "switch_on"]
+
+Array = NDArray[np.float64]
+
+_FEWEST_BINS, _MOST_BINS = 10, 50
+# Samples closer together than this share of their size are drawn as one value.
+_RESOLVED = 1e-9
+
+
+def histogram(
+    target: Target,
+    values: ArrayLike,
+    nominal: float,
+    cautions: Sequence[str] = (),
+    title: str = "",
+) -> Figure:
+    """How a target's quantity is distributed over samples, and which share keeps the limits.
+
+    Parameters
+    ----------
+    target : Target
+        What was asked for.
+    values : array_like
+        The quantity for each sample, at least one [SI unit of the quantity]. A sample for which
+        it does not exist, or is unbounded, is counted and not drawn.
+    nominal : float
+        The quantity for the nominal loop [SI unit of the quantity].
+    cautions : sequence of str
+        Printed small beneath.
+    title : str
+        Stands above.
+
+    Returns
+    -------
+    Figure
+        One panel: the quantity across, samples per bin up; those outside the limits hatched.
+    """
+    kind = target.entry.kind
+    unit = float(KINDS[kind].units[KINDS[kind].symbol])
+    values = np.asarray(values, dtype=np.float64).ravel()
+    kept = target.kept(values)
+    drawn = np.isfinite(values)
+    figure, (panel,) = panels(1, title, cautions)
+    edges = _bin_edges(values[drawn], nominal)
+    inside = np.histogram(values[drawn & kept], edges)[0]
+    outside = np.histogram(values[drawn & ~kept], edges)[0]
+    left, width = edges[:-1] / unit, np.diff(edges) / unit
+    panel.bar(
+        left,
+        inside,
+        width,
+        align="edge",
+        label="within the limits" if target.limited else "samples",
+        **INSIDE,
+    )
+    if target.limited:
+        some = outside > 0
+        panel.bar(
+            left[some], outside[some], width[some], inside[some],
+            align="edge", label="outside", **OUTSIDE,
+        )  # fmt: skip
+    panel.set_ylim(0, 1.06 * max(float(np.max(inside + outside)), 1.0))
+    if np.isfinite(nominal):
+        panel.axvline(nominal / unit, label=f"nominal {show(nominal, kind)}", **NATURAL)
+    reach = edges[-1] - edges[0]
+    for limit, upper in limits(target):
+        label = limit_label(target, upper=upper)
+        if edges[0] - reach <= limit <= edges[-1] + reach:
+            limit_line(panel, limit / unit, label, upper=upper, vertical=True)
+        else:
+            note(panel, f"{label} (beyond the picture)")
+    heading = f"{kept.size} samples"
+    if target.limited:
+        share = show(float(np.mean(kept)), "ratio")
+        heading = f"{np.count_nonzero(kept)} of {heading} are within the limits ({share})"
+    if target.goal is not None:
+        heading += f"; asked for: {show(target.goal, 'ratio')}"
+    missing = int(np.count_nonzero(~drawn))
+    if missing:
+        note(panel, f"not drawn, since none or unbounded: {missing}")
+    name_axis(panel.xaxis, target.quantity.replace("_", " "), kind)
+    panel.set_ylabel("samples per bin [1]")
+    legend_above(panel, heading)
+    fit_height(figure, 3.6)
+    return figure
+
+
+def _bin_edges(values: Array, nominal: float) -> Array:
+    """Even bins over the samples; about one value if they are all the same."""
+    if not values.size:
+        values = np.array([nominal if np.isfinite(nominal) else 0.0])
+    low, high = float(values.min()), float(values.max())
+    if high - low <= _RESOLVED * max(abs(low), abs(high)):
+        half = 0.01 * abs(low) or 1.0
+        return np.linspace(low - half, low + half, 2)
+    wished = np.histogram_bin_edges(values, "sturges").size - 1 + np.sqrt(values.size) / 2
+    bins = int(np.clip(wished, _FEWEST_BINS, _MOST_BINS))
+    return np.linspace(low, high, bins + 1)
