@@ -13,6 +13,7 @@ from typing import Any
 
 import numpy as np
 from rich.box import SIMPLE_HEAD
+from rich.cells import cell_len
 from rich.console import Console
 from rich.table import Table
 from rich.text import Text
@@ -34,30 +35,45 @@ _ELSEWHERE = {
     "peak_current", "peak_current_time", "peak_capacitor_voltage", "peak_capacitor_voltage_time",
     "peak_inductor_voltage", "worst_closing_angle_current", "worst_closing_angle_capacitor_voltage",
 }  # fmt: skip
+_NO_ANGLE = 1e-12
 _PEAKS = (("current", "current"), ("capacitor", "voltage"), ("inductor", "voltage"))
 
 
 def write(console: Console, *pieces: Table | str) -> None:
-    """Print tables and sentences; long sentences are wrapped, tables are not."""
-    for piece in pieces:
+    """Print tables and sentences; sentences and words are wrapped, numbers never."""
+    for before, piece in zip((None, *pieces), pieces, strict=False):
+        if isinstance(before, Table) or (before is not None and isinstance(piece, Table)):
+            console.print()
         if isinstance(piece, str):
-            width = min(console.width, _WIDEST_TEXT)
-            for line in textwrap.wrap(piece, width) or [""]:
+            for line in textwrap.wrap(piece, min(console.width, _WIDEST_TEXT)) or [""]:
                 console.print(Text(line), soft_wrap=True)
             continue
-        needed = console.measure(piece).maximum
-        if needed > console.width:
-            console = Console(file=console.file, width=needed, markup=False, highlight=False)
-        console.print(piece)
+        for column in piece.columns:
+            cells = [str(cell) for cell in (column.header, *column.cells)]
+            whole = [
+                part
+                for cell in cells
+                for part in (cell.splitlines() if column.no_wrap else cell.split())
+            ]
+            column.min_width = max(map(cell_len, whole), default=0)
+        endless = console.options.update(width=10_000)
+        needed = console.measure(piece, options=endless).minimum
+        console.print(piece, width=max(needed, console.width), crop=False, no_wrap=True)
 
 
-def _table(title: str, *headings: str, words: int = 1) -> Table:
-    """A table whose first `words` columns are text and the rest numbers."""
+def _table(
+    title: str, *headings: str, words: int = 1, sentence: bool = False, leading: int = 0
+) -> Table:
+    """A table whose first `words` columns are text, the last too if it is a sentence."""
     table = Table(
-        title=title, title_justify="left", title_style="bold", box=SIMPLE_HEAD, pad_edge=False
-    )
+        title=title, title_justify="left", title_style="bold", box=SIMPLE_HEAD, show_edge=False,
+        pad_edge=False, padding=(0, 1, 0, 0), leading=leading,
+    )  # fmt: skip
     for index, heading in enumerate(headings):
-        table.add_column(heading, justify="left" if index < words else "right", no_wrap=True)
+        text = index < words or (sentence and index == len(headings) - 1)
+        table.add_column(
+            heading, justify="left" if text else "right", no_wrap=not text, overflow="fold"
+        )
     return table
 
 
@@ -128,12 +144,11 @@ def frequencies(case: Case, values: Mapping[str, float]) -> Table:
 
 def quantities(title: str, values: Mapping[str, float], group: str) -> Table:
     """Registered quantities of a group, those left out that have a table of their own."""
-    table = _table(title, "quantity", "symbol", "value", "convention", words=2)
-    table.columns[-1].justify = "left"
+    table = _table(title, "quantity", "symbol", "value", "convention", words=2, sentence=True)
     for name, value in values.items():
         entry = REGISTER[name]
         if entry.group == group and name not in _ELSEWHERE:
-            table.add_row(name, entry.symbol, show(value, entry.kind), entry.convention)
+            table.add_row(name, entry.symbol, _shown(value, entry.kind), entry.convention)
     return table
 
 
@@ -154,7 +169,7 @@ def elements(case: Case) -> Table:
             name,
             show(ratio * level * case.source.rms_per_amplitude, "voltage"),
             show(ratio * level, "voltage"),
-            show(float(np.angle(phasor)), "angle"),
+            _shown(float(np.angle(phasor)), "angle"),
             show(ratio, "number"),
         )
     return table
@@ -174,11 +189,18 @@ def peaks(case: Case) -> Table:
             "current" if element == "current" else f"{element} voltage",
             show(float(peak.value), kind),
             show(float(peak.time), "time"),
-            show(float(case.closing_angle_for(element)), "angle") if sine else "",
+            show(_angle(case, element), "angle") if sine else "",
             show(amplitude, kind),
             _knowledge(float(peak.value), float(peak.time)),
         )
     return table
+
+
+def _angle(case: Case, element: str) -> float:
+    """The closing angle of a peak, within one turn."""
+    turn = float(np.mod(case.closing_angle_for(element), 2 * np.pi))
+    # What rounding leaves just below a full turn is the rising zero.
+    return 0.0 if math.isclose(turn, 2 * math.pi) else turn
 
 
 def _knowledge(value: float, time: float) -> str:
@@ -187,31 +209,32 @@ def _knowledge(value: float, time: float) -> str:
     return "approached, never reached" if math.isnan(time) else "proved"
 
 
-def name_of(outcome: Outcome) -> str:
+def _name(outcome: Outcome) -> str:
     """The quantity, where it is asked for, and the rating that it stands for."""
     target = outcome.target
-    place = f" at {show(target.at, target.entry.at)}" if target.at and target.entry.at else ""
-    across = f" across {target.across}" if target.across else ""
-    return f"{target.quantity}{across}{place}" + (f" ({target.rating})" if target.rating else "")
+    lines = [target.quantity]
+    if target.across:
+        lines.append(f"across {target.across}")
+    if target.at and target.entry.at:
+        lines.append(f"at {show(target.at, target.entry.at)}")
+    return "\n".join([*lines, *[target.rating] * bool(target.rating)])
 
 
 def targets(outcomes: Iterable[Outcome]) -> Table:
     """One row per target: limits, nominal and margin, worst case, yield, verdict."""
     table = _table(
-        "Targets", "quantity", "limits", "nominal", "margin",
-        "worst low", "worst high", "yield (95 % interval)", "verdict", words=2,
+        "Targets", "quantity", "limits", "nominal\nmargin", "worst low\nworst high",
+        "yield\n95 % interval", "verdict", words=2, leading=1,
     )  # fmt: skip
     for outcome in outcomes:
         kind = outcome.target.entry.kind
         table.add_row(
-            name_of(outcome),
+            _name(outcome),
             _limits(outcome, kind),
-            show(outcome.nominal, kind),
-            _margin(outcome),
-            show(outcome.worst_low, kind),
-            show(outcome.worst_high, kind),
+            f"{show(outcome.nominal, kind)}\n{_margin(outcome)}",
+            f"{show(outcome.worst_low, kind)}\n{show(outcome.worst_high, kind)}",
             _share(outcome),
-            Text(outcome.verdict, style=_VERDICT_STYLE[outcome.verdict]),
+            Text(outcome.verdict.replace(" ", "\n", 1), style=_VERDICT_STYLE[outcome.verdict]),
         )
     return table
 
@@ -222,7 +245,7 @@ def _limits(outcome: Outcome, kind: str) -> str:
     found = [f"{word} {show(value, kind)}" for word, value in ends if value is not None]
     if target.goal is not None:
         found.append(f"for {show(target.goal, 'ratio')}")
-    return ", ".join(found)
+    return "\n".join(found)
 
 
 def _margin(outcome: Outcome) -> str:
@@ -244,23 +267,28 @@ def _share(outcome: Outcome) -> str:
         math.floor(outcome.share.value * 1e4) / 100,
         math.ceil(outcome.share.high * 1e4) / 100,
     )
-    return f"{value:g} % ({low:g} to {high:g})"
+    return f"{value:g} %\n{low:g} to {high:g}"
 
 
 def spread(outcomes: Iterable[Outcome]) -> Table:
     """How each quantity is spread over the samples, and which part moves it most."""
     table = _table(
-        "Spread", "quantity", "nominal", "minimum", "1 %", "50 %", "mean", "99 %", "maximum",
-        "moved most by",
+        "Spread", "quantity", "nominal", "minimum\nmaximum", "1 % point\n99 % point",
+        "median\nmean", "moved most by", leading=1,
     )  # fmt: skip
-    table.columns[-1].justify = "left"
     for outcome in outcomes:
         kind = outcome.target.entry.kind
-        points = (
-            outcome.nominal, outcome.minimum, outcome.percent_1, outcome.percent_50,
-            outcome.mean, outcome.percent_99, outcome.maximum,
-        )  # fmt: skip
-        table.add_row(name_of(outcome), *(show(point, kind) for point in points), _blame(outcome))
+        pairs = (
+            (outcome.minimum, outcome.maximum),
+            (outcome.percent_1, outcome.percent_99),
+            (outcome.percent_50, outcome.mean),
+        )
+        table.add_row(
+            _name(outcome),
+            show(outcome.nominal, kind),
+            *(f"{show(first, kind)}\n{show(second, kind)}" for first, second in pairs),
+            _blame(outcome),
+        )
     return table
 
 
@@ -268,23 +296,32 @@ def _blame(outcome: Outcome) -> str:
     if not outcome.effects:
         return "-"
     kind, first = outcome.target.entry.kind, outcome.effects[0]
-    return f"{first.field}: {show(first.low, kind)} to {show(first.high, kind)}"
+    return f"{first.field}\n{show(first.low, kind)} to {show(first.high, kind)}"
 
 
 def sweep(found: Sweep) -> Table:
     """A frequency response, one row per frequency."""
     headings = [
-        (f"{column.across} gain" if column.across else column.quantity.replace("_", " "))
+        (f"{column.across} gain" if column.across else column.quantity).replace("_", " ")
         for column in found.columns
     ]
-    table = _table("Frequency response", "frequency", *headings, "", words=0)
+    stacked = (heading.replace(" ", "\n") for heading in headings)
+    table = _table("Frequency response", "frequency", *stacked, "", words=0)
     for index, frequency in enumerate(found.frequency):
         table.add_row(
             show(frequency, "frequency", 5),
-            *(show(each.values[index], REGISTER[each.quantity].kind) for each in found.columns),
+            *(
+                _shown(column.values[index], REGISTER[column.quantity].kind)
+                for column in found.columns
+            ),
             found.marks.get(float(frequency), ""),
         )
     return table
+
+
+def _shown(value: float, kind: str) -> str:
+    """As `show`, with the rounding that is left of an angle of zero taken away."""
+    return show(0.0 if kind == "angle" and abs(value) < _NO_ANGLE else value, kind)
 
 
 def register() -> Table:

@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+import math
 from dataclasses import dataclass
 from typing import NamedTuple
 
@@ -81,7 +82,10 @@ def sweep(case: Case, start: float | None, stop: float | None, points: int) -> S
     if sine:
         marks.setdefault(float(case.source.frequency), "source")
     marks = {place: name for place, name in marks.items() if first <= place <= last}
-    frequency = np.unique(np.concatenate([np.geomspace(first, last, points), list(marks)]))
+    steps = np.geomspace(first, last, points)
+    # A step that falls on a marked frequency, but for rounding, is the same row.
+    apart = [not any(math.isclose(step, mark) for mark in marks) for step in steps]
+    frequency = np.sort(np.concatenate([steps[apart], list(marks)]))
     asked: list[tuple[str, str | None]] = [("impedance", None), ("impedance_phase", None)]
     if sine:
         asked += [("current", None)]
