@@ -240,6 +240,7 @@ class _Search:
         eq = _take(self.eq, which)
         start = at - half
         size, top = np.zeros(which.size), np.zeros(which.size)
+        before, after, bend = np.zeros(which.size), np.zeros(which.size), np.zeros(which.size)
         omega = self.omega[which]
         growth = np.exp(np.minimum(eq.gamma * half, _EXPONENT_LIMIT))
         with np.errstate(all="ignore"):
@@ -262,11 +263,13 @@ class _Search:
                 reach = np.where(over, np.fmin(reach, two), reach)
                 curvature = np.where(over, np.fmin(curvature, bent), curvature)
             curvature = curvature + omega * omega * part.amplitude[which]
-            line = np.maximum(np.abs(value + half * slope), np.abs(value - half * slope))
-            limit = np.minimum(line + 0.5 * half * half * curvature, part.amplitude[which] + reach)
-            top += np.fmin(limit, self._beat(part, eq, which, at, half))
+            before += np.abs(value - half * slope)
+            after += np.abs(value + half * slope)
+            bend += curvature
+            top += np.fmin(part.amplitude[which] + reach, self._beat(part, eq, which, at, half))
         self._record(which, at, size, best, when)
-        return top
+        # the parts' slopes cancel at the top of their sum, so their lines are taken together
+        return np.fmin(top, np.maximum(before, after) + 0.5 * half * half * bend)
 
     def _beat(self, part: _Part, eq: Equation, which: Index, at: Array, half: Array) -> Array:
         """Bound for a ringing loop: |S + A exp((s1 - j omega) t)| turns slowly near resonance."""
