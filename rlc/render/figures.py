@@ -288,7 +288,7 @@ def _wrapped(text: str, size: float) -> list[str]:
             lines.append(line)
         line = word
         while _text_width(line, size) > _TEXT_WIDTH:
-            cut = len(line)
+            cut = int(len(line) * _TEXT_WIDTH / _text_width(line, size)) + 1
             while _text_width(line[:cut], size) > _TEXT_WIDTH:
                 cut -= 1
             lines.append(line[:cut])

@@ -243,7 +243,8 @@ def _band(
 ) -> tuple[Array, Array]:
     """Lowest and highest value over the batch at each time, the nominal included."""
     angle = _closing_angle(batch, trace)
-    if batch.source.worst_angle and not np.any(batch.capacitor_voltage):
+    rest = not np.any(batch.capacitor_voltage) and not np.any(batch.initial_current)
+    if batch.source.worst_angle and rest:
         # from rest half a turn only changes the sign: take the one next to the nominal
         angle = angle + np.pi * np.round((nominal_angle - angle) / np.pi)
     low, high = nominal, nominal
