@@ -2,27 +2,34 @@
 
 from __future__ import annotations
 
-import functools
-import inspect
 import json
-import os
-import sys
-from collections.abc import Callable, Iterable
 from dataclasses import replace
 from pathlib import Path
-from typing import TYPE_CHECKING, Annotated, Any, Literal, NamedTuple
+from typing import TYPE_CHECKING, Annotated, Literal
 
 import typer
 
 from rlc import __version__
-from rlc.errors import InputError, RlcError
-from rlc.front.flags import FLAGS, TOLERANCE_FLAGS, Flag
+from rlc.console import (
+    Json,
+    Output,
+    Plots,
+    Samples,
+    Seed,
+    Sheet,
+    Suffix,
+    console,
+    guarded,
+    read_sheet,
+    show,
+    with_flags,
+)
+from rlc.errors import InputError
+from rlc.front.flags import FLAGS, SAMPLES, SEED, TOLERANCE_FLAGS
 
 if TYPE_CHECKING:
-    from rich.console import Console
     from rich.table import Table
 
-    from rlc.front.validate import Loaded
     from rlc.review import Review
 
 app = typer.Typer(
@@ -35,28 +42,7 @@ app = typer.Typer(
     pretty_exceptions_enable=False,
 )
 
-TARGET_FAILS, BAD_INPUT = 3, 2
-
-Sheet = Annotated[
-    Path | None, typer.Argument(help="The sheet of parts (TOML); not needed with flags.")
-]
-Json = Annotated[bool, typer.Option("--json", help="Print one JSON document, in SI units.")]
-Plots = Annotated[
-    Path | None, typer.Option(metavar="DIR", help="Save the pictures in this directory.")
-]
-Suffix = Annotated[
-    Literal["png", "svg", "pdf"], typer.Option("--picture-format", help="Of saved pictures.")
-]
-Samples = Annotated[int, typer.Option(help="Random units to draw, up to 1000000.")]
-Seed = Annotated[int, typer.Option(help="What the random units follow from.")]
-
-
-class _Output(NamedTuple):
-    """How the answer is wanted."""
-
-    as_json: bool
-    plots: Path | None
-    suffix: str
+TARGET_FAILS = 3
 
 
 def main() -> None:
@@ -64,153 +50,37 @@ def main() -> None:
     app()
 
 
-def _guarded(command: Callable[..., None]) -> Callable[..., None]:
-    """Show an expected error on stderr and exit with 2; a bug keeps its trace."""
-
-    @functools.wraps(command)
-    def guarded(*args: Any, **given: Any) -> None:
-        try:
-            command(*args, **given)
-            sys.stdout.flush()
-        except RlcError as error:
-            typer.echo(str(error), err=True)
-            raise typer.Exit(BAD_INPUT) from None
-        except BrokenPipeError:
-            # Whoever read the output has seen enough; nothing may be flushed at exit.
-            os.dup2(os.open(os.devnull, os.O_WRONLY), sys.stdout.fileno())
-
-    return guarded
-
-
-def _with_flags(*flags: Flag) -> Callable[[Callable[..., None]], Callable[..., None]]:
-    """Give a command one option per flag, and hand it those that were used."""
-
-    def decorate(command: Callable[..., None]) -> Callable[..., None]:
-        names = {flag.option.strip("-").replace("-", "_"): flag for flag in flags}
-
-        @functools.wraps(command)
-        def wrapper(**given: Any) -> None:
-            texts = {name: given.pop(name) for name in names}
-            used = {names[name].option: text for name, text in texts.items() if text is not None}
-            command(flags=used, **given)
-
-        own = inspect.signature(command, eval_str=True).parameters
-        options = [
-            inspect.Parameter(
-                name,
-                inspect.Parameter.KEYWORD_ONLY,
-                default=None,
-                annotation=Annotated[
-                    str | None, typer.Option(flag.option, metavar="VALUE", help=flag.help)
-                ],
-            )
-            for name, flag in names.items()
-        ]
-        kept = [
-            parameter.replace(kind=inspect.Parameter.KEYWORD_ONLY)
-            for name, parameter in own.items()
-            if name != "flags"
-        ]
-        signature = inspect.Signature([kept[0], *options, *kept[1:]])
-        wrapper.__signature__ = signature  # type: ignore[attr-defined]
-        wrapper.__annotations__ = {
-            each.name: each.annotation for each in signature.parameters.values()
-        }
-        return wrapper
-
-    return decorate
-
-
-def _loaded(sheet: Path | None, flags: dict[str, str]) -> Loaded:
-    """Read the sheet and say on stderr what was replaced and what looks like a slip."""
-    from rlc.front.validate import load
-
-    loaded = load(sheet, flags)
-    for each in loaded.document.replacements:
-        old = "nothing" if each.old is None else f'"{each.old}"'
-        typer.echo(f'{each.option} replaces {each.key}: {old} by "{each.new}"', err=True)
-    for note in loaded.notes:
-        typer.echo(f"Note: {note}", err=True)
-    return loaded
-
-
-def _show(
-    found: Review, pieces: Iterable[Table | str], pictures: Iterable[str], output: _Output
-) -> None:
-    """Save the pictures, then print the answer: as one JSON document, or as tables."""
-    from rlc.render import tables
-
-    if output.plots is not None:
-        _save(found, pictures, output.plots, output.suffix)
-    if output.as_json:
-        typer.echo(json.dumps(found.document(), indent=2, allow_nan=False))
-        return
-    heading = [found.loaded.sheet.title] * bool(found.loaded.sheet.title)
-    if found.loaded.document.name:
-        heading.append(f"Sheet: {found.loaded.document.name}")
-    heading += [
-        f"Replaced: {each.key} = {each.new} (sheet: {each.old or 'nothing'})"
-        for each in found.loaded.document.replacements
-    ]
-    tables.write(_console(), *heading, *pieces, *tables.cautions(found.cautions))
-
-
-def _console() -> Console:
-    from rich.console import Console
-
-    return Console(markup=False, highlight=False, emoji=False)
-
-
-def _save(found: Review, pictures: Iterable[str], directory: Path, suffix: str) -> None:
-    from rlc.render.plots import save
-
-    drawn = {
-        directory / f"{name}.{suffix}": draw for name, draw in found.pictures(pictures).items()
-    }
-    for path in drawn:
-        if path.exists():
-            rule = f"would overwrite {path}"
-            raise InputError("--plots", str(directory), rule, "Name another directory")
-    try:
-        directory.mkdir(parents=True, exist_ok=True)
-    except OSError as error:
-        raise InputError("--plots", str(directory), f"cannot be made: {error.strerror}") from None
-    for path, draw in drawn.items():
-        save(draw(), path)
-        typer.echo(f"Saved {path}", err=True)
-
-
 @app.command()
-@_with_flags(*FLAGS, *TOLERANCE_FLAGS)
-@_guarded
+@with_flags(*FLAGS, *TOLERANCE_FLAGS)
+@guarded
 def check(
     flags: dict[str, str],
     sheet: Sheet = None,
-    samples: Samples = 2000,
-    seed: Seed = 1,
+    samples: Samples = SAMPLES,
+    seed: Seed = SEED,
     as_json: Json = False,
     plots: Plots = None,
     suffix: Suffix = "png",
 ) -> None:
-    """Judge a loop: steady state, switch-on, spread, a verdict per target, cautions.
+    """Judge a loop: all results, a verdict per target, cautions.
 
     Exits with 0 if all targets hold, 3 if one fails, 2 on bad input.
     """
     from rlc.review import judge, review
     from rlc.solver.quantities import REGISTER
 
-    loaded = _loaded(sheet, flags)
+    loaded = read_sheet(sheet, flags)
     found = review(loaded, REGISTER, judge(loaded, loaded.sheet.targets(), samples, seed))
     pieces = [*_loop(found), *_steady(found), *_switch_on(found), *_spread(found)]
     pictures = ("frequency-response", "switch-on", "state-plane", "spread")
-    _show(found, pieces, pictures, _Output(as_json, plots, suffix))
+    show(found, pieces, pictures, Output(as_json, plots, suffix))
     if not found.targets_hold:
         raise typer.Exit(TARGET_FAILS)
 
 
 @app.command()
-@_with_flags(*FLAGS)
-@_guarded
+@with_flags(*FLAGS)
+@guarded
 def steady(
     flags: dict[str, str],
     sheet: Sheet = None,
@@ -218,15 +88,15 @@ def steady(
     plots: Plots = None,
     suffix: Suffix = "png",
 ) -> None:
-    """What is left when the transient has died: impedance, current, voltages, power."""
+    """Show the steady state: impedance, current, voltages, power."""
     found = _partial(sheet, flags, ("loop", "steady"))
     pieces = [*_loop(found), *_steady(found)]
-    _show(found, pieces, ("frequency-response",), _Output(as_json, plots, suffix))
+    show(found, pieces, ("frequency-response",), Output(as_json, plots, suffix))
 
 
 @app.command(name="switch-on")
-@_with_flags(*FLAGS)
-@_guarded
+@with_flags(*FLAGS)
+@guarded
 def switch_on(
     flags: dict[str, str],
     sheet: Sheet = None,
@@ -234,15 +104,15 @@ def switch_on(
     plots: Plots = None,
     suffix: Suffix = "png",
 ) -> None:
-    """What happens from the closing of the switch on: true peaks, settling, let-through."""
+    """Show the switch-on: true peaks, settling, let-through."""
     found = _partial(sheet, flags, ("loop", "switch-on"))
     pieces = [*_loop(found), *_switch_on(found)]
-    _show(found, pieces, ("switch-on", "state-plane"), _Output(as_json, plots, suffix))
+    show(found, pieces, ("switch-on", "state-plane"), Output(as_json, plots, suffix))
 
 
 @app.command()
-@_with_flags(*FLAGS)
-@_guarded
+@with_flags(*FLAGS)
+@guarded
 def sweep(
     flags: dict[str, str],
     sheet: Sheet = None,
@@ -253,7 +123,10 @@ def sweep(
     plots: Plots = None,
     suffix: Suffix = "png",
 ) -> None:
-    """The steady state over a range of frequencies, resonance and band edges included."""
+    """Show the steady state over a range of frequencies.
+
+    The resonance, the band edges and the source's frequency are rows of their own.
+    """
     from rlc.front.units import read
     from rlc.render import tables
     from rlc.solver.sweep import sweep as solve
@@ -266,12 +139,12 @@ def sweep(
     response = solve(found.case, first, last, points)
     found = replace(found, sweep=response)
     pieces = [*_loop(found), tables.sweep(response)]
-    _show(found, pieces, ("frequency-response",), _Output(as_json, plots, suffix))
+    show(found, pieces, ("frequency-response",), Output(as_json, plots, suffix))
 
 
 @app.command()
-@_with_flags(*FLAGS, *TOLERANCE_FLAGS)
-@_guarded
+@with_flags(*FLAGS, *TOLERANCE_FLAGS)
+@guarded
 def spread(
     flags: dict[str, str],
     sheet: Sheet = None,
@@ -279,29 +152,29 @@ def spread(
         list[str] | None,
         typer.Option(metavar="NAME", help="Look at this one instead of the targets; repeatable."),
     ] = None,
-    samples: Samples = 2000,
-    seed: Seed = 1,
+    samples: Samples = SAMPLES,
+    seed: Seed = SEED,
     as_json: Json = False,
     plots: Plots = None,
     suffix: Suffix = "png",
 ) -> None:
-    """What real parts do: corners, random units, yield, and the part that matters most.
+    """Show what real parts do: worst case, yield, part to blame.
 
     Exits with 0 if all targets that were looked at hold, 3 if one fails, 2 on bad input.
     """
     from rlc.review import asked_targets, judge, names_in, review
 
-    loaded = _loaded(sheet, flags)
+    loaded = read_sheet(sheet, flags)
     judged = judge(loaded, asked_targets(loaded, quantity or ()), samples, seed)
     found = review(loaded, names_in("loop"), judged)
     pieces = [*_loop(found), *_spread(found)]
-    _show(found, pieces, ("spread",), _Output(as_json, plots, suffix))
+    show(found, pieces, ("spread",), Output(as_json, plots, suffix))
     if not found.targets_hold:
         raise typer.Exit(TARGET_FAILS)
 
 
 @app.command()
-@_guarded
+@guarded
 def new(
     kind: Annotated[
         Literal["filter", "inrush", "tolerance"], typer.Argument(help="What the sheet is for.")
@@ -310,7 +183,10 @@ def new(
         Path | None, typer.Argument(help="Where to write it; KIND.toml here if not given.")
     ] = None,
 ) -> None:
-    """Write a commented sheet to start from; it passes "rlc check" as it stands."""
+    """Write a commented sheet to start from.
+
+    It passes "rlc check" as it stands. Nothing is overwritten.
+    """
     from importlib.resources import files
 
     path = file or Path(f"{kind}.toml")
@@ -326,12 +202,15 @@ def new(
 
 
 @app.command()
-@_guarded
+@guarded
 def quantities(
     name: Annotated[str | None, typer.Argument(help="Only this one, in full.")] = None,
     as_json: Json = False,
 ) -> None:
-    """The register: every quantity that has a name, with unit, convention, formula, source."""
+    """List every quantity that has a name.
+
+    With a name: its unit, convention, definition, formula and published source.
+    """
     from rlc.render import machine, tables
     from rlc.review import unknown_quantity
     from rlc.solver.quantities import REGISTER
@@ -342,7 +221,7 @@ def quantities(
     if as_json:
         typer.echo(json.dumps({"quantities": machine.register(rows)}, indent=2))
     else:
-        tables.write(_console(), tables.register() if name is None else tables.definition(rows[0]))
+        tables.write(console(), tables.register() if name is None else tables.definition(rows[0]))
 
 
 @app.callback(invoke_without_command=True)
@@ -358,7 +237,7 @@ def _partial(sheet: Path | None, flags: dict[str, str], groups: tuple[str, ...])
     """Those quantities that one command answers, without a spread."""
     from rlc.review import names_in, review
 
-    return review(_loaded(sheet, flags), names_in(*groups))
+    return review(read_sheet(sheet, flags), names_in(*groups))
 
 
 def _loop(found: Review) -> list[Table | str]:

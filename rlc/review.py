@@ -9,6 +9,7 @@ from typing import TYPE_CHECKING, Any
 
 from rlc import __version__
 from rlc.errors import InputError
+from rlc.front.flags import SAMPLES, SEED
 from rlc.front.validate import Loaded, load
 from rlc.render import machine
 from rlc.render.cautions import Caution, cautions
@@ -20,10 +21,6 @@ from rlc.solver.targets import Target
 
 if TYPE_CHECKING:
     from matplotlib.figure import Figure
-
-#: Random units unless stated otherwise: enough to tell 99.9 % from 99 %, at seconds of work.
-SAMPLES = 2000
-SEED = 1
 
 #: What a spread shows where nobody has asked for anything.
 USUAL = (

@@ -86,7 +86,8 @@ Hertz = Annotated[float, Door("frequency", "above zero")]
 class Table(BaseModel):
     """A table of the sheet; unknown keys are errors."""
 
-    model_config = ConfigDict(extra="forbid", frozen=True)
+    # Built once, for the whole sheet, when the first one is read.
+    model_config = ConfigDict(extra="forbid", frozen=True, defer_build=True)
 
 
 class Toleranced(Table):
@@ -241,7 +242,7 @@ class Sheet(Table):
     capacitor: Capacitor
     source: Annotated[Dc | Sine, Field(discriminator="kind")]
     load: LoadTable | None = None
-    switch_on: SwitchOn = SwitchOn()
+    switch_on: SwitchOn = Field(default_factory=SwitchOn)
     target: tuple[TargetTable, ...] = ()
 
     @field_validator("title")

@@ -154,6 +154,8 @@ def _worst_angle(case: Case, element: str) -> Array:
     angle: Array = case.peak(element).angle
     if not np.any(case.capacitor_voltage) and not np.any(case.initial_current):
         angle = np.mod(angle, np.pi)
+        # What rounding leaves just below half a turn is the zero itself.
+        angle = np.where(np.pi - angle < 1e-12, 0.0, angle)
     return angle
 
 
