@@ -4,7 +4,6 @@ from __future__ import annotations
 
 from typing import NamedTuple
 
-
 #: Random units unless stated otherwise: enough to tell 99.9 % from 99 %, at seconds of work.
 SAMPLES = 2000
 SEED = 1
