@@ -53,7 +53,7 @@ def driven_from_rest(eq: Equation, frequency: Array, time: Array) -> tuple[Compl
 
     Notes
     -----
-    Worst error measured against 110-digit arithmetic, relative to the running peak, for
+    Worst error measured against 50-digit arithmetic, relative to the running peak, for
     quality factors 1e-4 to 1e6, up to 1e4 periods and frequency ratios 1e-4 to 1e4: below
     1e-14 (``tests/benchmarks/accuracy.py`` prints it by regime).
     """

@@ -41,7 +41,7 @@ def settling_time(case: Case, band: float | Array = 0.02) -> Array:
         One switch-on or a batch.
     band : float
         Half width of the band, as a share of the steady amplitude (of the final value for a
-        constant source).
+        constant source) [1].
 
     Returns
     -------

@@ -1,0 +1,112 @@
+"""Print the worst error of the waveforms by regime of damping, against 50 digits.
+
+Run it from the top of the tree: ``python tests/benchmarks/accuracy.py [loops per regime]``.
+The error is a share of the running peak, the largest magnitude from closing to that time.
+Loops are random over twelve decades of quality factor, times over 1e-6 to 1e4 natural
+periods, and half of the sources are at or within a millionth of resonance.
+"""
+
+import sys
+from collections.abc import Callable
+from pathlib import Path
+
+import numpy as np
+
+HERE = Path(__file__).resolve().parent
+sys.path[:0] = [str(HERE.parent / "solver"), str(HERE.parent.parent)]
+
+from exact import worst_error  # noqa: E402
+
+from rlc.solver.case import Case  # noqa: E402
+from rlc.solver.loop import Loop, make_loop  # noqa: E402
+from rlc.solver.source import constant, sine  # noqa: E402
+
+WAVES = {"capacitor": "capacitor_voltage", "current": "current"}
+#: Fractions of a natural period: before each time and in the first one, for the running peak.
+BEFORE = np.array([0.0, 0.13, 0.29, 0.41, 0.63, 0.88])
+FIRST = np.linspace(0.1, 1.0, 10)
+
+Draw = Callable[[np.random.Generator], float]
+
+
+def decades(low: float, high: float) -> Draw:
+    """Draw evenly in the logarithm."""
+    return lambda rng: float(10 ** rng.uniform(low, high))
+
+
+def near_one(rng: np.random.Generator) -> float:
+    """Draw a damping ratio within a hundredth of critical, down to the last bit."""
+    return 1 + float(rng.choice([-1, 1]) * 10 ** rng.uniform(-15.6, -2))
+
+
+#: Damping ratio by regime: quality factors from 1e6 to 1e-4.
+REGIMES: dict[str, Draw] = {
+    "no losses": lambda rng: 0.0,
+    "high quality": decades(-6.3, -1.3),
+    "middle": decades(-1.3, -0.01),
+    "near critical": near_one,
+    "overdamped": decades(0.01, 3.7),
+}
+
+
+def random_loop(rng: np.random.Generator, zeta: float, parts: bool) -> Loop:
+    """A loop of about the given damping ratio, with every further part or none."""
+    natural, impedance = 10 ** rng.uniform(1, 8), 10 ** rng.uniform(-2, 4)
+    inductance, capacitance = impedance / natural, 1 / (impedance * natural)
+    loss = 2 * zeta * np.sqrt(inductance / capacitance)
+    if not parts:
+        return make_loop(resistance=loss, inductance=inductance, capacitance=capacitance)
+    return make_loop(
+        resistance=loss / 2,
+        winding_resistance=loss * rng.random() / 4,
+        source_resistance=loss * rng.random() / 4,
+        inductance=inductance / 2,
+        source_inductance=inductance * rng.random() / 2,
+        capacitance=capacitance,
+        series_resistance=loss * rng.random() / 4,
+        load_resistance=impedance / max(zeta, 1e-6) * 10 ** rng.uniform(0, 2),
+    )
+
+
+def error_of(rng: np.random.Generator, loop: Loop, kind: str) -> dict[str, float]:
+    """Worst error of capacitor voltage and current at ten times."""
+    unit = Case(loop, constant(1.0))
+    natural = float(unit.equation.natural)
+    period = 2 * np.pi / natural
+    if kind == "dc":
+        source = constant(1.0)
+    else:
+        close = rng.random() < 0.5
+        ratio = 1 + rng.choice([-1, 0, 1]) * 10 ** rng.uniform(-12, -6) if close else None
+        ratio = 10 ** rng.uniform(-4, 4) if ratio is None else ratio
+        source = sine(1.0, ratio * natural / (2 * np.pi), rng.choice([0.0, np.pi / 2]))
+    times = 10 ** rng.uniform(-6, 4, 10) * period
+    every = np.sort(np.r_[(times[:, np.newaxis] - period * BEFORE).ravel(), period * FIRST])
+    return worst_error(Case(loop, source), every[every > 0], WAVES)
+
+
+def main(loops: int) -> None:
+    """Print one line for each regime and set of parts."""
+    rng = np.random.default_rng(1)
+    columns = [(kind, name) for kind in ("dc", "sine") for name in WAVES]
+    titles = "".join(
+        f"{kind + ' ' + ('v_C' if name != 'current' else 'i'):>10}" for kind, name in columns
+    )
+    print(f"{loops} loops each; worst error over running peak")
+    print(f"{'':34}{titles}")
+    for regime, draw in REGIMES.items():
+        for parts in (False, True):
+            worst = dict.fromkeys(columns, 0.0)
+            for _ in range(loops):
+                loop = random_loop(rng, draw(rng), parts)
+                for kind in ("dc", "sine"):
+                    for name, error in error_of(rng, loop, kind).items():
+                        worst[kind, name] = max(worst[kind, name], error)
+            label = f"{regime}, {'all parts' if parts else 'R, L, C alone'}"
+            print(
+                f"{label:34}" + "".join(f"{worst[column]:10.1e}" for column in columns), flush=True
+            )
+
+
+if __name__ == "__main__":
+    main(int(sys.argv[1]) if len(sys.argv) > 1 else 100)
