@@ -18,10 +18,10 @@ from rlc.console import (
     Seed,
     Sheet,
     Suffix,
-    console,
     guarded,
     read_sheet,
     show,
+    terminal_width,
     with_flags,
 )
 from rlc.errors import InputError
@@ -221,7 +221,9 @@ def quantities(
     if as_json:
         typer.echo(json.dumps({"quantities": machine.register(rows)}, indent=2))
     else:
-        tables.write(console(), tables.register() if name is None else tables.definition(rows[0]))
+        tables.write(
+            terminal_width(), tables.register() if name is None else tables.definition(rows[0])
+        )
 
 
 @app.callback(invoke_without_command=True)

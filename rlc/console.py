@@ -6,6 +6,7 @@ import functools
 import inspect
 import json
 import os
+import shutil
 import sys
 from collections.abc import Callable, Iterable
 from pathlib import Path
@@ -17,7 +18,6 @@ from rlc.errors import InputError, RlcError
 from rlc.front.flags import Flag
 
 if TYPE_CHECKING:
-    from rich.console import Console
     from rich.table import Table
 
     from rlc.front.validate import Loaded
@@ -135,13 +135,12 @@ def show(
         f"Replaced: {each.key} = {each.new} (sheet: {each.old or 'nothing'})"
         for each in found.loaded.document.replacements
     ]
-    tables.write(console(), *heading, *pieces, *tables.cautions(found.cautions))
+    tables.write(terminal_width(), *heading, *pieces, *tables.cautions(found.cautions))
 
 
-def console() -> Console:
-    from rich.console import Console
-
-    return Console(markup=False, highlight=False, emoji=False)
+def terminal_width() -> int:
+    """Columns of the terminal; 80 in a pipe."""
+    return shutil.get_terminal_size().columns
 
 
 def _save(found: Review, pictures: Iterable[str], directory: Path, suffix: str) -> None:

@@ -27,6 +27,8 @@ from rlc.solver.spread import Outcome, Part
 from rlc.solver.sweep import Sweep
 
 _WIDEST_TEXT = 96
+_NARROWEST = 24
+_ENDLESS = 10_000
 _VERDICT_STYLE = {"holds": "green", "holds by yield": "green", "fails": "bold red"}
 _ELSEWHERE = {
     "natural_frequency", "ringing_frequency",
@@ -39,41 +41,62 @@ _NO_ANGLE = 1e-12
 _PEAKS = (("current", "current"), ("capacitor", "voltage"), ("inductor", "voltage"))
 
 
-def write(console: Console, *pieces: Table | str) -> None:
-    """Print tables and sentences; sentences and words are wrapped, numbers never."""
+def write(width: int, *pieces: Table | str) -> None:
+    """Print tables and sentences; sentences are wrapped, numbers and names never.
+
+    Parameters
+    ----------
+    width : int
+        Of the terminal; a table that needs more is printed wider.
+    pieces : Table or str
+        In their order.
+    """
+    # A console as wide as the terminal would cut what does not fit.
+    console = Console(width=_ENDLESS, markup=False, highlight=False, emoji=False)
     for before, piece in zip((None, *pieces), pieces, strict=False):
         if isinstance(before, Table) or (before is not None and isinstance(piece, Table)):
             console.print()
         if isinstance(piece, str):
-            for line in textwrap.wrap(piece, min(console.width, _WIDEST_TEXT)) or [""]:
-                console.print(Text(line), soft_wrap=True)
-            continue
-        for column in piece.columns:
-            cells = [str(cell) for cell in (column.header, *column.cells)]
-            whole = [
-                part
-                for cell in cells
-                for part in (cell.splitlines() if column.no_wrap else cell.split())
-            ]
-            column.min_width = max(map(cell_len, whole), default=0)
-        endless = console.options.update(width=10_000)
-        needed = console.measure(piece, options=endless).minimum
-        console.print(piece, width=max(needed, console.width), crop=False, no_wrap=True)
+            for line in textwrap.wrap(piece, min(width, _WIDEST_TEXT)) or [""]:
+                console.print(Text(line))
+        else:
+            _fit(piece, width)
+            console.print(piece)
+
+
+def _fit(table: Table, width: int) -> None:
+    """Give every column what it needs, and a sentence in the last one what is left."""
+    lengths = [
+        [
+            cell_len(line)
+            for cell in (column.header, *column.cells)
+            for line in str(cell).splitlines()
+        ]
+        for column in table.columns
+    ]
+    needed = [max(length, default=0) for length in lengths]
+    last = table.columns[-1]
+    if not last.no_wrap:
+        words = [cell_len(word) for cell in last.cells for word in str(cell).split()]
+        # Two blanks between columns.
+        left = width - sum(needed[:-1]) - 2 * (len(needed) - 1)
+        needed[-1] = min(needed[-1], max(left, *words, _NARROWEST))
+    for column, size in zip(table.columns, needed, strict=True):
+        column.width = size
 
 
 def _table(
     title: str, *headings: str, words: int = 1, sentence: bool = False, leading: int = 0
 ) -> Table:
-    """A table whose first `words` columns are text, the last too if it is a sentence."""
+    """A table whose first `words` columns are text; only a sentence in the last is wrapped."""
     table = Table(
         title=title, title_justify="left", title_style="bold", box=SIMPLE_HEAD, show_edge=False,
         pad_edge=False, padding=(0, 1, 0, 0), leading=leading,
     )  # fmt: skip
     for index, heading in enumerate(headings):
-        text = index < words or (sentence and index == len(headings) - 1)
-        table.add_column(
-            heading, justify="left" if text else "right", no_wrap=not text, overflow="fold"
-        )
+        wrapped = sentence and index == len(headings) - 1
+        left = wrapped or index < words
+        table.add_column(heading, justify="left" if left else "right", no_wrap=not wrapped)
     return table
 
 
@@ -188,10 +211,10 @@ def peaks(case: Case) -> Table:
         table.add_row(
             "current" if element == "current" else f"{element} voltage",
             show(float(peak.value), kind),
-            show(float(peak.time), "time"),
+            show(float(peak.time), "time") if np.isfinite(peak.time) else "-",
             show(_angle(case, element), "angle") if sine else "",
             show(amplitude, kind),
-            _knowledge(float(peak.value), float(peak.time)),
+            _knowledge(float(peak.value), float(peak.time), amplitude),
         )
     return table
 
@@ -203,10 +226,13 @@ def _angle(case: Case, element: str) -> float:
     return 0.0 if math.isclose(turn, 2 * math.pi) else turn
 
 
-def _knowledge(value: float, time: float) -> str:
+def _knowledge(value: float, time: float, steady: float) -> str:
     if math.isinf(value):
         return "grows without bound"
-    return "approached, never reached" if math.isnan(time) else "proved"
+    if not math.isfinite(time):
+        return "approached, never reached"
+    # Driven near resonance a crest may pass the steady state by parts in a million, after long.
+    return "proved, as in steady state" if 0 < value <= steady * (1 + 1e-4) else "proved"
 
 
 def _name(outcome: Outcome) -> str:
@@ -326,7 +352,9 @@ def _shown(value: float, kind: str) -> str:
 
 def register() -> Table:
     """All quantities that have a name."""
-    table = _table("Quantities", "name", "symbol", "unit", "group", "convention", words=5)
+    table = _table(
+        "Quantities", "name", "symbol", "unit", "group", "convention", words=4, sentence=True
+    )
     for entry in REGISTER.values():
         table.add_row(entry.name, entry.symbol, _unit(entry), entry.group, entry.convention)
     return table
@@ -359,5 +387,8 @@ def _unit(entry: Quantity) -> str:
 
 
 def cautions(found: Iterable[Caution]) -> list[str]:
-    """Each caution as a sentence of its own."""
-    return [f"{index}. {caution.text}" for index, caution in enumerate(found, start=1)]
+    """Each caution as a sentence of its own, under a heading."""
+    return [
+        "Cautions",
+        *(f"{index}. {caution.text}" for index, caution in enumerate(found, start=1)),
+    ]

@@ -145,7 +145,8 @@ def _until(case: Case, at: At) -> Array:
 
 
 def _peak_time(case: Case, element: str) -> Array:
-    return case.peak(element).time
+    time = case.peak(element).time
+    return np.where(np.isfinite(time), time, np.nan)
 
 
 def _worst_angle(case: Case, element: str) -> Array:
