@@ -23,6 +23,7 @@ from rlc.render.cautions import Caution
 from rlc.solver.case import Case
 from rlc.solver.loop import ELEMENTS
 from rlc.solver.quantities import REGISTER, Quantity
+from rlc.solver.search import PROVED_GAP
 from rlc.solver.spread import Outcome, Part
 from rlc.solver.sweep import Sweep
 
@@ -214,7 +215,7 @@ def peaks(case: Case) -> Table:
             show(float(peak.time), "time") if np.isfinite(peak.time) else "-",
             show(_angle(case, element), "angle") if sine else "",
             show(amplitude, kind),
-            _knowledge(float(peak.value), float(peak.time), amplitude),
+            _knowledge(float(peak.value), float(peak.time), float(peak.gap), amplitude),
         )
     return table
 
@@ -226,9 +227,11 @@ def _angle(case: Case, element: str) -> float:
     return 0.0 if math.isclose(turn, 2 * math.pi) else turn
 
 
-def _knowledge(value: float, time: float, steady: float) -> str:
+def _knowledge(value: float, time: float, gap: float, steady: float) -> str:
     if math.isinf(value):
         return "grows without bound"
+    if gap > PROVED_GAP:
+        return f"searched; at most {show(gap, 'ratio', 2)} more"
     if not math.isfinite(time):
         return "approached, never reached"
     # Driven near resonance a crest may pass the steady state by parts in a million, after long.

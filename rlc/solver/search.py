@@ -31,7 +31,8 @@ Index = NDArray[np.intp]
 PROVED_GAP = 1e-9
 
 _CELLS_AT_ONCE = 200_000
-_MOST_CELLS = 50_000_000
+# A loop of extreme quality rings through billions of periods; its search ends with a wider gap.
+_MOST_CELLS, _MOST_CELLS_PER_LOOP = 2_000_000, 20_000
 _EXPONENT_LIMIT = 300.0
 _GRID, _ZOOMS = np.linspace(-1.0, 1.0, 257), 5
 
@@ -132,12 +133,13 @@ class _Search:
             left[undamped] = 0.0
         which, middle, half = self._first_cells(best, gap, np.flatnonzero(~undamped))
         bound = np.full(which.size, np.inf)
-        seen = 0
+        seen, most = 0, _MOST_CELLS + _MOST_CELLS_PER_LOOP * self.omega.size
         while which.size:
             live = bound > best[which] * (1 + gap)
             which, middle, half, bound = which[live], middle[live], half[live], bound[live]
-            if seen > _MOST_CELLS:
-                np.maximum.at(left, which, bound / best[which] - 1)
+            if seen > most:
+                anywhere = self.amplitude[which] + self.energy[which]
+                np.maximum.at(left, which, np.minimum(bound, anywhere) / best[which] - 1)
                 break
             now = slice(max(0, which.size - _CELLS_AT_ONCE), None)
             cells, at, width = which[now], middle[now], half[now]
