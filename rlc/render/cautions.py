@@ -140,11 +140,12 @@ def _residual_voltage(found: Findings) -> str:
     charge, load = found.charge.highest, float(found.loop.load_resistance)
     prove = "prove it dead before touching it"
     if math.isinf(load):
+        held = show(charge, "voltage") if math.isfinite(charge) else "any voltage"
         settled = show(found.steady("dielectric"), "voltage")
-        later = f", {settled} if opened in steady state" if found.level else ""
+        later = f" ({settled} if opened in steady state)" if found.level else ""
         return (
-            "Once the loop is opened nothing discharges the capacitor: it may hold up to"
-            f" {show(charge, 'voltage')} for a long time{later}. Short it through a resistor and {prove}."
+            f"Once the loop is opened nothing discharges the capacitor: it may hold up to {held}"
+            f"{later} for a long time. Short it through a resistor and {prove}."
         )
     path = load + float(found.loop.series_resistance)
     time_constant = path * float(found.loop.capacitance)
@@ -172,10 +173,11 @@ def _undamped(found: Findings) -> str:
             f"The quality factor of {quality} is more than real parts usually give."
             " Put winding, contact and series resistances on the sheet: they bound the peaks."
         )
-    driven = "it grows" if math.isinf(found.capacitor.nominal) else "it would grow"
+    at_resonance = found.sine and exceeds(found.capacitor.nominal, LOSSLESS_QUALITY * found.level)
+    driven = "as here, it grows" if at_resonance else "it would grow"
     return (
-        f"The loop has no resistance, so its ringing never dies; driven at its resonance {driven}"
-        " without bound. Real parts have losses: put them on the sheet."
+        "The loop has no resistance, so its ringing never dies; driven at its resonance,"
+        f" {driven} without bound. Real parts have losses: put them on the sheet."
     )
 
 

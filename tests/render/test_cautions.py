@@ -1,0 +1,600 @@
+"""Cautions: each speaks when it should and not otherwise, with numbers worked out by hand."""
+
+import math
+import re
+
+import numpy as np
+import pytest
+from hypothesis import given
+from hypothesis import strategies as st
+from scipy.integrate import solve_ivp
+
+from rlc.render.cautions import Caution, cautions
+from rlc.solver.case import Case
+from rlc.solver.loop import make_loop
+from rlc.solver.peaks import Peak
+from rlc.solver.source import constant, sine
+from rlc.solver.targets import Ratings
+
+ROOT2 = math.sqrt(2)
+FORBIDDEN = re.compile(r"\b(un)?safe(ly|ty)?\b|\bcompl(y|ies|iant|iance)\b", re.IGNORECASE)
+#: Standards whose values nobody confirmed.
+UNCONFIRMED = ("60831", "60871", "60252", "61010", "60479", "DOE")
+POWERS = {"p": -12, "n": -9, "u": -6, "m": -3, "": 0, "k": 3, "M": 6, "G": 9}
+
+
+def loop(resistance, inductance, capacitance, **more):
+    return make_loop(resistance=resistance, inductance=inductance, capacitance=capacitance, **more)
+
+
+def slow(capacitance, **more):
+    """Far above critical damping: the capacitor's peak is the source's level."""
+    resistance = 200 * math.sqrt(1e-6 / capacitance)
+    return loop(resistance, 1e-6, capacitance, **more)
+
+
+def lossless(inductance, capacitance, **more):
+    return loop(0.0, inductance, capacitance, **more)
+
+
+def told(case, ratings=None, worst=None):
+    found = cautions(case, ratings or Ratings(), worst)
+    assert all(isinstance(each, Caution) for each in found)
+    return {each.id: each.text for each in found}
+
+
+def printed(text, unit):
+    """Numbers with a unit in a text, as ranges of what rounds to the digits that are printed."""
+    found = []
+    for digits, prefix in re.findall(rf"(?<![\w.])([\d.]+) ([pnumkMG]?){re.escape(unit)}\b", text):
+        scale = 10.0 ** POWERS[prefix]
+        # four significant digits, of which zeros at the end are dropped
+        half = 0.5 * 10.0 ** (math.floor(math.log10(float(digits))) - 3) if float(digits) else 0.0
+        found.append(((float(digits) - half) * scale, (float(digits) + half) * scale))
+    return found
+
+
+def holds(text, unit, value):
+    """Whether a text has this value, to the digits printed."""
+    slack = 1e-9 * value
+    return any(low - slack <= value <= high + slack for low, high in printed(text, unit))
+
+
+def test_reading_numbers_back():
+    assert holds("stores 99.9 J at", "J", 99.901)
+    assert not holds("stores 99.9 J at", "J", 99.93)
+    assert holds("up to 28.31 mJ.", "J", 28.306e-3)
+    assert not holds("1.5 V rms", "J", 1.5)
+
+
+# --- voltage of the source and above it
+
+
+@pytest.mark.parametrize(
+    ("source", "hazardous"),
+    [
+        (sine(50 * ROOT2, 50), False),
+        (sine(50.01 * ROOT2, 50), True),
+        (constant(120), False),
+        (constant(120.1), True),
+        (constant(-400), True),
+        (constant(0), False),
+    ],
+)
+def test_a_source_above_extra_low_voltage(source, hazardous):
+    # IEC 61140, IEC 61558-1: 50 V ac rms, 120 V ripple-free dc (confirmed on public pages).
+    found = told(Case(slow(1e-9), source))
+    assert ("hazardous-source" in found) is hazardous
+    if hazardous:
+        assert "extra-low-voltage" not in found
+
+
+@pytest.mark.parametrize(("level", "leaves"), [(59.9, False), (60.1, True)])
+def test_ringing_takes_a_dc_loop_above_its_source(level, leaves):
+    # Without losses the capacitor reaches twice the step.
+    found = told(Case(lossless(1e-6, 1e-9), constant(level)))
+    assert ("extra-low-voltage" in found) is leaves
+    if leaves:
+        assert holds(found["extra-low-voltage"], "V", 2 * level)
+        assert "capacitor" in found["extra-low-voltage"]
+        assert "inductor" not in found["extra-low-voltage"]
+
+
+def resonant(quality, amplitude, angle=0.0):
+    """At resonance, L = 1 mH and C = 1 uF: V_C is quality times the source."""
+    impedance = math.sqrt(1e-3 / 1e-6)
+    frequency = 1 / (2 * math.pi * math.sqrt(1e-3 * 1e-6))
+    return Case(loop(impedance / quality, 1e-3, 1e-6), sine(amplitude, frequency, angle))
+
+
+@pytest.mark.parametrize(("amplitude", "leaves"), [(6.9, False), (7.2, True)])
+def test_resonance_takes_parts_above_extra_low_voltage(amplitude, leaves):
+    # 10 times 7.2 V is above 50 sqrt 2 = 70.7 V, 10 times 6.9 V is not.
+    found = told(resonant(10, amplitude))
+    assert ("extra-low-voltage" in found) is leaves
+    if leaves:
+        assert holds(found["extra-low-voltage"], "V", 10 * amplitude)
+        assert "70.7 V peak" in found["extra-low-voltage"]
+
+
+def test_the_resistor_too_can_leave_extra_low_voltage():
+    case = Case(loop(20.0, 1e-3, 1e-6), constant(12), 0.0, 10.0)
+    assert holds(told(case)["extra-low-voltage"].split("resistor")[1], "V", 200.0)
+
+
+def test_the_highest_value_over_the_parts_counts_and_is_shown_beside_the_nominal():
+    case = Case(lossless(1e-6, 1e-9), constant(59.0))
+    assert "extra-low-voltage" not in told(case)
+    text = told(case, worst={"peak_capacitor_voltage": 121.0})["extra-low-voltage"]
+    assert "nominal 118 V, up to 121 V over the parts" in text
+
+
+@pytest.mark.parametrize("highest", [118.0, 100.0, math.nan, None])
+def test_a_highest_value_that_is_none_leaves_the_nominal(highest):
+    case = Case(lossless(1e-6, 1e-9), constant(59.0))
+    assert told(case, worst={"peak_capacitor_voltage": highest}) == told(case)
+
+
+# --- energy and charge
+
+
+def test_stored_energy_of_a_kilovar():
+    """1 kvar at 60 Hz: 2.65 J at the peak, the rule printed for shunt capacitors."""
+    # Manufacturer's data sheet, single phase; printed with three digits.
+    rms, frequency = 240.0, 60.0
+    capacitance = 1000 / (2 * math.pi * frequency * rms**2)
+    # closed at the zero through hardly any impedance, so that the peak is the steady one
+    case = Case(loop(0.01, 1e-9, capacitance), sine(rms * ROOT2, frequency))
+    text = told(case)["stored-energy"]
+    (low, high), *_ = printed(text, "J")
+    assert low < 2.655
+    assert high > 2.645
+    assert "shock" in text
+
+
+@pytest.mark.parametrize(
+    ("voltage", "capacitance", "words"),
+    [
+        # energy C v^2/2 against 0.35 J, at voltages that do not shock
+        (24, 4700e-6, {"sparks", "welds"}),  # 1.35 J
+        (12, 4700e-6, set()),  # 0.34 J
+        (60, 1e-3, {"sparks"}),
+        # above 60 V dc also a shock, and both where there is energy
+        (60.1, 1e-3, {"shock", "sparks"}),
+        (61, 1e-6, {"shock"}),
+        # IEC 60335-1, 8.1.4: 0.1 uF up to 450 V, 45 uC up to 15 kV, 350 mJ above
+        (300, 0.099e-6, set()),
+        (300, 0.101e-6, {"shock"}),
+        (1e3, 44e-9, set()),
+        (1e3, 46e-9, {"shock"}),
+        (20e3, 1.7e-9, set()),  # 0.34 J
+        (20e3, 1.8e-9, {"shock", "sparks"}),  # 0.36 J
+    ],
+)
+def test_what_a_charge_can_do(voltage, capacitance, words):
+    found = told(Case(slow(capacitance), constant(voltage)))
+    assert ("stored-energy" in found) is bool(words)
+    assert ("residual-voltage" in found) is bool(words)
+    text = found.get("stored-energy", "")
+    assert {word for word in ("shock", "sparks", "welds") if word in text} >= words
+    assert ("shock" in text) is ("shock" in words)
+    assert ("sparks" in text) is bool(words & {"sparks", "welds"})
+    if words:
+        assert holds(text, "J", capacitance * voltage**2 / 2)
+        assert holds(text, "V", voltage)
+
+
+def test_the_registered_energy_over_the_parts_is_shown():
+    text = told(Case(slow(1e-3), constant(100.0)), worst={"stored_energy": 6.0})["stored-energy"]
+    assert "nominal 5 J, up to 6 J over the parts" in text
+
+
+def test_the_charge_is_the_voltage_behind_the_series_resistance():
+    """At closing the terminals have 100 V x 0.9 from the current; the capacitor holds none yet."""
+    parts = loop(1.0, 1e-12, 1e-3, series_resistance=9.0)
+    case = Case(parts, constant(0.0), 0.0, 10.0)
+    # 10 A through 1 pH: 50 pJ, which lifts 1 mF by less than a microvolt
+    assert "stored-energy" not in told(case)
+    assert "stored-energy" not in told(case, worst={"peak_capacitor_voltage": 95.0})
+
+
+def test_without_a_load_the_charge_stays():
+    text = told(Case(lossless(1e-6, 1e-3), constant(100.0)))["residual-voltage"]
+    assert "nothing discharges" in text
+    assert holds(text, "V", 200.0)  # opened at the top of the ringing
+    assert holds(text, "V", 100.0)  # opened when it has settled
+    assert "through a resistor" in text
+
+
+def fall_to_50_volt(charge, capacitance, load, series):
+    """Time for the terminals to fall to 50 V, integrated."""
+
+    def slope(_, voltage):
+        return -voltage / (load + series) / capacitance
+
+    def at_limit(_, voltage):
+        return voltage[0] * load / (load + series) - 50.0
+
+    at_limit.terminal = True
+    end = 20 * (load + series) * capacitance
+    run = solve_ivp(slope, (0, end), [charge], events=at_limit, rtol=1e-10, atol=1e-10)
+    return float(run.t_events[0][0])
+
+
+@pytest.mark.parametrize(
+    ("charge", "capacitance", "load", "series"),
+    [(400.0, 470e-6, 47e3, 0.0), (90.0, 10e-6, 1e6, 0.0), (900.0, 1e-3, 2e3, 150.0)],
+)
+def test_a_load_discharges_in_the_time_that_an_integrator_finds(charge, capacitance, load, series):
+    # trapped, and opened before anything flows: held by a loop that is all but open
+    parts = loop(1e9, 1e-6, capacitance, load_resistance=load, series_resistance=series)
+    case = Case(parts, constant(0.0), charge)
+    text = told(case)["residual-voltage"]
+    assert holds(text, "s", fall_to_50_volt(charge, capacitance, load, series))
+    assert holds(text, "V", charge * load / (load + series))
+    assert "comes off or fails" in text
+
+
+@pytest.mark.parametrize(
+    ("volts", "seconds", "rule", "word"),
+    [
+        (400.0, 59.0, "NEC 460.6", "less"),
+        (400.0, 61.0, "NEC 460.6", "longer"),
+        (1000.0, 61.0, "NEC 460.6", "longer"),
+        (1001.0, 61.0, "Title 8", "less"),
+        (1001.0, 301.0, "Title 8", "longer"),
+    ],
+)
+def test_the_discharge_is_held_against_the_rule_for_its_voltage(volts, seconds, rule, word):
+    load = 1e6
+    capacitance = seconds / (load * math.log(volts / 50))
+    case = Case(slow(capacitance, load_resistance=load), constant(volts))
+    text = told(case)["residual-voltage"]
+    assert "for information" in text
+    assert rule in text
+    assert f"takes {word}" in text
+
+
+def test_a_low_voltage_store_with_a_load_has_a_time_constant():
+    parts = slow(10e-3, load_resistance=100.0)
+    text = told(Case(parts, constant(24.0)))["residual-voltage"]
+    assert holds(text, "s", 1.0)
+    assert "NEC" not in text
+
+
+def test_opening_a_loop_that_carries_current():
+    # V sqrt(C/L) = 100 A through 2 uH: 10 mJ
+    case = Case(lossless(2e-6, 200e-6), constant(10.0))
+    text = told(case)["interrupting"]
+    assert holds(text, "A", 100.0)
+    assert holds(text, "J", 10e-3)
+    # C V^2/2 is also the inductance's largest energy: 1 mJ is the boundary
+    below = Case(lossless(2e-6, 19.9e-6), constant(10.0))
+    above = Case(lossless(2e-6, 20.1e-6), constant(10.0))
+    assert "interrupting" not in told(below)
+    assert "interrupting" in told(above)
+
+
+# --- ratings and magnification
+
+
+def test_capacitor_voltage_above_its_rating():
+    case = Case(lossless(1e-6, 1e-6), constant(24.0))
+    assert "capacitor-overvoltage" not in told(case, Ratings(capacitor_voltage=48.0))
+    text = told(case, Ratings(capacitor_voltage=47.0))["capacitor-overvoltage"]
+    assert holds(text, "V", 48.0)
+    assert "above the rated voltage of 47 V" in text
+    text = told(case, Ratings(capacitor_voltage=50.0), {"peak_capacitor_voltage": 51.0})
+    assert "nominal 48 V, up to 51 V" in text["capacitor-overvoltage"]
+
+
+def test_capacitor_voltage_without_a_rating():
+    text = told(Case(lossless(1e-6, 1e-6), constant(24.0)))["capacitor-overvoltage"]
+    assert "No voltage rating is stated for peaks" in text
+    assert "(2 times the source's peak)" in text
+    assert "capacitor-overvoltage" not in told(Case(slow(1e-6), constant(24.0)))
+    # overshoot exp(-pi zeta/sqrt(1 - zeta^2)) is 0.2 at a damping ratio of 0.456
+    for zeta, speaks in ((0.45, True), (0.46, False)):
+        case = Case(loop(2 * zeta, 1.0, 1.0), constant(1.0))
+        assert ("capacitor-overvoltage" in told(case)) is speaks
+
+
+def test_steady_capacitor_voltage_above_its_rms_rating():
+    case = resonant(10, 7.0 * ROOT2)  # 70 V rms across the capacitor
+    rms = 70.0
+    kept = Ratings(capacitor_voltage=200.0, capacitor_voltage_rms=rms * 1.001)
+    assert "capacitor-overvoltage" not in told(case, kept)
+    text = told(case, Ratings(capacitor_voltage=200.0, capacitor_voltage_rms=rms * 0.999))
+    assert holds(text["capacitor-overvoltage"], "V", rms)
+    assert "rms" in text["capacitor-overvoltage"]
+    assert "capacitor-overvoltage" in told(case, kept, {"capacitor_voltage": 71.0})
+
+
+def test_magnification_in_steady_state():
+    text = told(resonant(10, 5.0))["magnification"]
+    assert text.count(" 10 times (50 V peak)") == 2  # at resonance both have Q times the source
+    assert "magnification" not in told(resonant(1.99, 5.0))
+    assert "magnification" in told(resonant(2.01, 5.0))
+    worst = {"capacitor_voltage": 11.0 / ROOT2}
+    text = told(resonant(1.99, 5.0), worst=worst)["magnification"]
+    assert "up to 11 V over the parts peak" in text
+    assert "inductor" not in text
+    assert "magnification" not in told(Case(lossless(1e-3, 1e-6), constant(5.0)))
+
+
+def test_resonance_is_named_inside_the_half_power_band_only():
+    # R/(2 pi L) apart, with the product f_0^2: textbook half-power frequencies
+    inductance, capacitance, resistance = 1e-3, 1e-6, 5.0
+    natural = 1 / (2 * math.pi * math.sqrt(inductance * capacitance))
+    bandwidth = resistance / (2 * math.pi * inductance)
+    lower = math.hypot(natural, bandwidth / 2) - bandwidth / 2
+    upper = lower + bandwidth
+    for frequency, speaks in (
+        (0.999 * lower, False),
+        (1.001 * lower, True),
+        (0.999 * upper, True),
+        (1.001 * upper, False),
+    ):
+        found = told(Case(loop(resistance, inductance, capacitance), sine(1.0, frequency)))
+        assert ("resonance" in found) is speaks
+        if speaks:
+            assert all(holds(found["resonance"], "Hz", each) for each in (lower, upper, natural))
+    assert "resonance" not in told(resonant(0.99, 1.0))
+    assert "resonance" in told(resonant(1.01, 1.0))
+
+
+# --- current
+
+
+def test_current_above_saturation():
+    case = Case(lossless(1e-6, 1e-6), constant(24.0))  # 24 A
+    assert "saturation" not in told(case)
+    assert "saturation" not in told(case, Ratings(inductor_saturation=24.0))
+    text = told(case, Ratings(inductor_saturation=20.0))["saturation"]
+    assert holds(text, "A", 24.0)
+    assert "saturation current of 20 A" in text
+    assert "saturation" in told(case, Ratings(inductor_saturation=25.0), {"peak_current": 26.0})
+
+
+def test_inrush_of_an_ideal_capacitor():
+    """230 V on 40 uF through 20 uH: V sqrt(C/L) = 325.27 A."""
+    # Bimbhra, Power Electronics, Example 5.4: 120 A of load and this inrush make 445.27 A.
+    text = told(Case(lossless(20e-6, 40e-6), constant(230.0)))["inrush"]
+    assert holds(text, "A", 445.27 - 120)
+    assert "No saturation current is stated" in text
+    assert "let-through" not in text  # it never ends
+    stated = told(Case(lossless(20e-6, 40e-6), constant(230.0)), Ratings(inductor_saturation=400))
+    assert "No saturation current" not in stated["inrush"]
+
+
+def test_let_through_of_an_inrush():
+    # all of C V^2/2 is lost in the resistance: integral of i^2 = C V^2/(2 R)
+    text = told(Case(loop(0.1, 1e-6, 100e-6), constant(24.0)))["inrush"]
+    assert f"{100e-6 * 24**2 / 0.2:.4g} A^2 s over all time" in text
+
+
+def test_let_through_beside_a_load_is_that_of_the_inrush():
+    """With a load current flows for ever: five time constants 2/(R/L + G/C) are counted."""
+    resistance, inductance, capacitance, load = 0.1, 1e-6, 100e-6, 2.0
+    until = 10 / (resistance / inductance + 1 / (load * capacitance))
+
+    def slope(_, states):
+        voltage, current, _ = states
+        return [
+            (current - voltage / load) / capacitance,
+            (24.0 - resistance * current - voltage) / inductance,
+            current**2,
+        ]
+
+    run = solve_ivp(slope, (0, until), [0.0, 0.0, 0.0], method="DOP853", rtol=1e-10, atol=1e-10)
+    parts = loop(resistance, inductance, capacitance, load_resistance=load)
+    text = told(Case(parts, constant(24.0)))["inrush"]
+    assert holds(text, "A^2 s", run.y[2, -1])
+    assert holds(text, "s", until)
+
+
+def test_inrush_speaks_of_notable_currents_only():
+    assert "inrush" not in told(Case(lossless(1e-6, 1e-6), constant(0.99)))
+    assert "inrush" in told(Case(lossless(1e-6, 1e-6), constant(1.01)))
+    # started at its resonance a loop creeps up to its steady amplitude: no inrush
+    assert "inrush" not in told(resonant(10, 100.0))
+
+
+# --- other closings
+
+
+def fast_loop(x, amplitude, angle, **states):
+    """No losses, driven at x times the natural frequency (1 rad/s), L = C = 1.
+
+    With S = V/(1 - x^2) the steady capacitor voltage is S sin(x t + phi), and free motion adds
+    sqrt((S sin phi - v_0)^2 + (x S cos phi)^2) in both voltage and current.
+    """
+    source = sine(amplitude, x / (2 * math.pi), angle)
+    return Case(lossless(1.0, 1.0), source, *states.values()), amplitude / (1 - x * x)
+
+
+def test_a_chosen_closing_angle_is_held_against_the_worst_one():
+    case, steady = fast_loop(0.1, 10.0, 0.0)
+    text = told(case)["closing-angle"]
+    assert holds(text, "A", steady * (0.1 + 1))
+    assert holds(text, "V", 2 * steady)
+    assert "closing at 0 deg" in text
+    at_the_worst, _ = fast_loop(0.1, 10.0, math.pi / 2)
+    assert "closing-angle" not in told(at_the_worst)
+
+
+def test_the_angle_in_the_text_is_the_worst_of_all():
+    parts, frequency = loop(0.3, 1.0, 1.0), 0.13 / (2 * math.pi)
+    text = told(Case(parts, sine(10.0, frequency, 0.2)))["closing-angle"]
+    named = [float(angle) for angle in re.findall(r"\(at ([\d.]+) deg\)", text)]
+    angles = np.radians(np.arange(0, 180, 0.25))
+    scan = Case(parts, sine(10.0, frequency, angles))
+    for element, angle in zip(("current", "capacitor"), named, strict=True):
+        peaks = scan.peak(element).value
+        # the peak is flat around its angle, and both are printed or scanned coarsely
+        assert np.degrees(angles[peaks.argmax()]) == pytest.approx(angle, abs=0.25)
+
+    worst = told(Case(parts, sine(10.0, frequency, None)))["closing-angle"]
+    assert [float(angle) for angle in re.findall(r"([\d.]+) deg", worst)] == named
+    assert "different closings" in worst
+
+
+def test_no_angle_is_named_where_the_steady_state_is_the_peak():
+    assert "closing-angle" not in told(resonant(10, 5.0, None))
+    assert "closing-angle" not in told(Case(lossless(1.0, 1.0), constant(5.0)))
+
+
+def test_reclosing_onto_what_opening_leaves():
+    case, steady = fast_loop(0.1, 10.0, None)
+    text = told(case)["trapped-charge"]
+    assert holds(text, "V", steady)  # left on the capacitor
+    assert holds(text, "V", 3 * steady)
+    assert holds(text, "A", steady * (0.1 + 2))
+    assert "load" not in text
+
+
+def test_a_charged_capacitor_of_the_other_polarity():
+    case = Case(lossless(1.0, 1.0), constant(24.0), 10.0)
+    text = told(case)["trapped-charge"]
+    assert "charged to 10 V" in text
+    assert holds(text, "V", 24.0 + 34.0)
+    assert holds(text, "A", 34.0)
+    assert "trapped-charge" not in told(Case(lossless(1.0, 1.0), constant(24.0)))
+    assert "trapped-charge" not in told(Case(lossless(1.0, 1.0), constant(0.0), 10.0))
+    alternating, _ = fast_loop(0.1, 10.0, None, capacitor_voltage=-30.0)
+    assert "charged to -30 V" in told(alternating)["trapped-charge"]
+
+
+# --- limits of the model
+
+
+def test_a_loop_without_losses():
+    frequency = 1 / (2 * math.pi)
+    at_resonance = told(Case(lossless(1.0, 1.0), sine(1.0, frequency)))
+    beside = told(Case(lossless(1.0, 1.0), sine(1.0, 2 * frequency)))
+    assert "it would grow without bound" in beside["undamped"]
+    assert "as here, it grows without bound" in at_resonance["undamped"]
+    stepped = told(Case(lossless(1.0, 1.0), constant(1.0)))
+    assert "it would grow without bound" in stepped["undamped"]
+    for quality, speaks in ((999.0, False), (1001.0, True)):
+        found = told(Case(loop(1 / quality, 1.0, 1.0), constant(1.0)))
+        assert ("undamped" in found) is speaks
+        if speaks:
+            assert "1001" in found["undamped"]
+
+
+def test_unbounded_peaks_are_said_to_be_so():
+    # No two doubles L and C meet a frequency to the solver's 32 digits: the peaks are put in.
+    unbounded = Peak(*(np.asarray(each) for each in (np.inf, np.inf, 0.0, 0.0)))
+    peaks = dict.fromkeys(("current", "capacitor", "inductor"), unbounded)
+    found = told(Case(lossless(1.0, 1.0), sine(1.0, 1 / (2 * math.pi)), _peaks=peaks))
+    assert "as here, it grows without bound" in found["undamped"]
+    assert "capacitor unbounded" in found["extra-low-voltage"]
+    assert "unbounded" in found["stored-energy"]
+    assert "may hold up to any voltage" in found["residual-voltage"]
+    assert "unbounded" in found["capacitor-overvoltage"]
+
+
+def test_ceramic_capacitors_are_named_where_the_loop_rings():
+    ringing = told(Case(loop(1.9, 1.0, 1.0), constant(5.0)))
+    creeping = told(Case(loop(2.1, 1.0, 1.0), constant(5.0)))
+    assert "ceramic" in ringing["model-limits"]
+    assert "ceramic" not in creeping["model-limits"]
+
+
+def test_the_most_hazardous_comes_first():
+    case = Case(loop(0.5, 1e-3, 100e-6), sine(325.0, 480.0, 0.3), 50.0)
+    ratings = Ratings(inductor_saturation=10.0, capacitor_voltage=100.0)
+    assert list(told(case, ratings)) == [
+        "hazardous-source",
+        "stored-energy",
+        "residual-voltage",
+        "interrupting",
+        "capacitor-overvoltage",
+        "magnification",
+        "resonance",
+        "saturation",
+        "trapped-charge",
+        "model-limits",
+        "deference",
+    ]
+    case = Case(lossless(1e-3, 100e-6), sine(68.0, 50.0, 1.0))
+    assert list(told(case)) == [
+        "extra-low-voltage",
+        "stored-energy",
+        "residual-voltage",
+        "undamped",
+        "interrupting",
+        "capacitor-overvoltage",
+        "inrush",
+        "closing-angle",
+        "trapped-charge",
+        "model-limits",
+        "deference",
+    ]
+
+
+def test_a_quiet_loop_has_only_what_always_holds():
+    case = Case(loop(1e3, 1e-3, 1e-6), constant(5.0))
+    assert list(told(case)) == ["model-limits", "deference"]
+
+
+# --- all loops
+
+
+def decades(low, high):
+    return st.floats(low, high).map(lambda exponent: 10.0**exponent)
+
+
+def maybe(strategy, otherwise):
+    return st.one_of(st.just(otherwise), strategy)
+
+
+@st.composite
+def switch_ons(draw):
+    parts = loop(
+        draw(maybe(decades(-4, 6), 0.0)),
+        draw(decades(-9, 2)),
+        draw(decades(-12, 1)),
+        series_resistance=draw(maybe(decades(-4, 3), 0.0)),
+        winding_resistance=draw(maybe(decades(-4, 3), 0.0)),
+        load_resistance=draw(maybe(decades(-2, 8), math.inf)),
+        source_inductance=draw(maybe(decades(-9, 0), 0.0)),
+    )
+    natural = float(Case(parts, constant(1.0)).equation.natural) / (2 * math.pi)
+    level = draw(maybe(decades(-3, 5), 0.0))
+    if draw(st.booleans()):
+        source = constant(draw(st.sampled_from([-1, 1])) * level)
+    else:
+        frequency = draw(maybe(decades(-3, 3), 1.0)) * natural
+        source = sine(level, frequency, draw(maybe(st.floats(0, 6), None)))
+    states = (draw(maybe(st.floats(-1e3, 1e3), 0.0)) for _ in range(2))
+    return Case(parts, source, *states)
+
+
+RATINGS = st.builds(
+    Ratings,
+    inductor_saturation=maybe(decades(-3, 3), None),
+    capacitor_voltage=maybe(decades(0, 4), None),
+    capacitor_voltage_rms=maybe(decades(0, 4), None),
+)
+WORST = st.dictionaries(
+    st.sampled_from(
+        ("peak_current", "peak_capacitor_voltage", "capacitor_voltage", "stored_energy")
+    ),
+    maybe(decades(-3, 6), math.nan) | st.just(math.inf),
+)
+
+
+@given(switch_ons(), RATINGS, WORST)
+def test_any_loop_gets_cautions_in_plain_words(case, ratings, worst):
+    found = cautions(case, ratings, worst)
+    assert [each.id for each in found[-2:]] == ["model-limits", "deference"]
+    assert len({each.id for each in found}) == len(found)
+    for each in found:
+        assert not FORBIDDEN.search(each.text)
+        assert not any(standard in each.text for standard in UNCONFIRMED)
+        assert not re.search(r"\bnan\b|\binf\b|None| - |: -\.", each.text)
+        assert each.text.endswith(".")
+        assert 1 <= len(re.findall(r"\.(?= [A-Z]|$)", each.text)) <= 3
+        assert "  " not in each.text
