@@ -208,23 +208,20 @@ def peaks(case: Case) -> Table:
         peak = case.peak(element)
         steady = case.steady.current if element == "current" else case.steady.across(element)
         amplitude = abs(complex(case.source.amplitude * steady))
-        sine = case.source.kind == "sine"
+        angle = float(case.closing_angle_for(element))
+        if case.source.worst_angle and not np.isfinite(peak.time):
+            shown = "any"
+        else:
+            shown = show(angle, "angle") if case.source.kind == "sine" else ""
         table.add_row(
             "current" if element == "current" else f"{element} voltage",
             show(float(peak.value), kind),
             show(float(peak.time), "time") if np.isfinite(peak.time) else "-",
-            show(_angle(case, element), "angle") if sine else "",
+            shown,
             show(amplitude, kind),
             _knowledge(float(peak.value), float(peak.time), float(peak.gap), amplitude),
         )
     return table
-
-
-def _angle(case: Case, element: str) -> float:
-    """The closing angle of a peak, within one turn."""
-    turn = float(np.mod(case.closing_angle_for(element), 2 * np.pi))
-    # What rounding leaves just below a full turn is the rising zero.
-    return 0.0 if math.isclose(turn, 2 * math.pi) else turn
 
 
 def _knowledge(value: float, time: float, gap: float, steady: float) -> str:

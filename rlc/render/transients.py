@@ -66,16 +66,10 @@ class _Trace(NamedTuple):
     words: str
     kind: str
     peak: str
-    worst_angle: str
 
 
-_CURRENT = _Trace(
-    "current", "current", "current", "peak_current", "worst_closing_angle_current"
-)  # fmt: skip
-_VOLTAGE = _Trace(
-    "capacitor", "capacitor voltage", "voltage", "peak_capacitor_voltage",
-    "worst_closing_angle_capacitor_voltage",
-)  # fmt: skip
+_CURRENT = _Trace("current", "current", "current", "peak_current")
+_VOLTAGE = _Trace("capacitor", "capacitor voltage", "voltage", "peak_capacitor_voltage")
 
 
 class _Span(NamedTuple):
@@ -121,7 +115,7 @@ def switch_on(
     span = _span(case, _MOST_CYCLES)
     figure, axes = panels(2, title, cautions)
     for panel, trace in zip(axes, (_CURRENT, _VOLTAGE), strict=True):
-        angle = _closing_angle(case, trace)
+        angle = case.closing_angle_for(trace.element)
         curve = _waveform(case, trace, span.time, angle).ravel()
         panel.plot(span.time, curve, label="nominal" if batch else None, **NOMINAL)
         extent = [0.0, float(np.min(curve)), float(np.max(curve))]
@@ -165,7 +159,7 @@ def state_plane(case: Case, cautions: Sequence[str] = (), title: str = "") -> Fi
         One panel: voltage at the capacitor's terminals [V] across, loop current [A] up.
     """
     span = _span(case, _READABLE_CYCLES)
-    angle = _closing_angle(case, _CURRENT)
+    angle = case.closing_angle_for(_CURRENT.element)
     figure, (panel,) = panels(1, title, cautions)
     across, up = (
         _waveform(case, trace, span.time, angle).ravel() for trace in (_VOLTAGE, _CURRENT)
@@ -181,13 +175,6 @@ def state_plane(case: Case, cautions: Sequence[str] = (), title: str = "") -> Fi
     legend_above(panel, _closed_at(case, _CURRENT, angle))
     fit_height(figure, 4.8)
     return figure
-
-
-def _closing_angle(case: Case, trace: _Trace) -> Any:
-    """As given, or the worst one for what is drawn, as the register names it [rad]."""
-    if case.source.worst_angle:
-        return REGISTER[trace.worst_angle](case)
-    return case.source.closing_angle
 
 
 def _closed_at(case: Case, trace: _Trace, angle: Any) -> str:
@@ -242,7 +229,7 @@ def _band(
     batch: Case, trace: _Trace, time: Array, nominal_angle: Any, nominal: Array
 ) -> tuple[Array, Array]:
     """Lowest and highest value over the batch at each time, the nominal included."""
-    angle = _closing_angle(batch, trace)
+    angle = batch.closing_angle_for(trace.element)
     rest = not np.any(batch.capacitor_voltage) and not np.any(batch.initial_current)
     if batch.source.worst_angle and rest:
         # from rest half a turn only changes the sign: take the one next to the nominal

@@ -160,10 +160,18 @@ class Case:
         )
 
     def closing_angle_for(self, element: str) -> Array:
-        """The closing angle: as given, or the worst one for this element [rad]."""
+        """The closing angle: as given, or the worst one for this element [rad].
+
+        The worst one is within a turn from the rising zero, from rest within half a turn: the
+        other half only changes signs. Where a peak is only approached every angle is as bad.
+        """
         if self.source.closing_angle is not None:
             return self.source.closing_angle
-        return self.peak(element).angle
+        at_rest = not np.any(self.capacitor_voltage) and not np.any(self.initial_current)
+        turn = np.pi if at_rest else 2 * np.pi
+        angle: Array = np.mod(self.peak(element).angle, turn)
+        # What rounding leaves just below a turn is the zero itself.
+        return np.where(turn - angle < 1e-12, 0.0, angle)
 
     def waveforms(self, time: Any, closing_angle: Any = None) -> Waveforms:
         """The switch-on at given times.

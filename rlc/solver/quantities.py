@@ -152,12 +152,7 @@ def _peak_time(case: Case, element: str) -> Array:
 def _worst_angle(case: Case, element: str) -> Array:
     if not case.source.worst_angle:
         return np.full(case.loop.shape, np.nan)
-    angle: Array = case.peak(element).angle
-    if not np.any(case.capacitor_voltage) and not np.any(case.initial_current):
-        angle = np.mod(angle, np.pi)
-        # What rounding leaves just below half a turn is the zero itself.
-        angle = np.where(np.pi - angle < 1e-12, 0.0, angle)
-    return angle
+    return np.where(np.isfinite(case.peak(element).time), case.closing_angle_for(element), np.nan)
 
 
 def _resistor_power(case: Case, at: At) -> Any:
@@ -339,14 +334,14 @@ _ROWS: tuple[Quantity, ...] = (
     ),
     Quantity(
         "worst_closing_angle_current", "phi_wi", "angle", "switch-on",
-        "from the source's rising zero; modulo half a turn from rest",
+        "from the source's rising zero; modulo half a turn from rest; none if only approached",
         "Closing angle of the largest current; only with closing angle \"worst\".",
         "90 deg - arg Y_i(t_i)", _SEARCH,
         lambda c, at, across: _worst_angle(c, "current"),
     ),
     Quantity(
         "worst_closing_angle_capacitor_voltage", "phi_wC", "angle", "switch-on",
-        "from the source's rising zero; modulo half a turn from rest",
+        "from the source's rising zero; modulo half a turn from rest; none if only approached",
         "Closing angle of the largest capacitor voltage; only with closing angle \"worst\".",
         "90 deg - arg Y_C(t_C)", _SEARCH,
         lambda c, at, across: _worst_angle(c, "capacitor"),
