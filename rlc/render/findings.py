@@ -40,8 +40,12 @@ SMALL_ENERGY = 0.35
 
 # Rounding may lift a value that is exactly at its limit: 50 V rms is stored as a peak.
 _ROUNDING = 1e-9
-# Above this quality factor one search takes seconds; other closings are then left out.
-_SEARCHED_QUALITY = 1e6
+# Above this quality factor, which no real loop has, one search takes seconds.
+_SEARCHED_QUALITY = 1e5
+# At resonance a sharp loop's rotating and free parts come to S (1 - exp(-a t)) and
+# k S exp(-a t): no closing angle and no charge below S lifts their sum by a per cent, and
+# being flat it takes long to search. As shares of the bandwidth:
+_SHARP_QUALITY, _AT_RESONANCE = 100.0, 0.05
 
 
 def peak_of(case: Case, element: str) -> float:
@@ -182,8 +186,14 @@ class Findings:
     @property
     def searched(self) -> bool:
         """Whether other closings of a sine are looked at."""
-        quick = math.isinf(self.quality) or self.quality <= _SEARCHED_QUALITY
-        return self.sine and self.level > 0 and quick
+        if not (self.sine and self.level):
+            return False
+        if math.isinf(self.quality):
+            return True
+        eq = self.case.equation
+        away = abs(2 * math.pi * float(self.case.source.frequency) - float(eq.natural))
+        flat = self.quality > _SHARP_QUALITY and away < _AT_RESONANCE * float(eq.gamma)
+        return self.quality <= _SEARCHED_QUALITY and not flat
 
     @cached_property
     def worst_closing(self) -> Case:
