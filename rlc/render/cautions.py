@@ -130,7 +130,7 @@ def _stored_energy(found: Findings) -> str:
     burns = "a short circuit across it sparks, welds contacts and burns" if found.burns else ""
     return (
         f"Peak voltage on the capacitor: {found.charge}. The energy in it is then"
-        f" {found.energy}: {' and '.join(filter(None, (hurts, burns)))}."
+        f" {found.energy}: {', and '.join(filter(None, (hurts, burns)))}."
     )
 
 
