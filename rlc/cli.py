@@ -3,6 +3,7 @@
 from __future__ import annotations
 
 import json
+import os
 from dataclasses import replace
 from pathlib import Path
 from typing import TYPE_CHECKING, Annotated, Literal
@@ -47,6 +48,8 @@ TARGET_FAILS = 3
 
 def main() -> None:
     """Run the command line."""
+    # The largest product here is of 4 by 4 matrices; starting threads for it takes longer.
+    os.environ.setdefault("OPENBLAS_NUM_THREADS", "1")
     app()
 
 
@@ -70,7 +73,7 @@ def check(
     from rlc.solver.quantities import REGISTER
 
     loaded = read_sheet(sheet, flags)
-    found = review(loaded, REGISTER, judge(loaded, loaded.sheet.targets(), samples, seed))
+    found = review(loaded, REGISTER, judge(loaded, loaded.inputs.targets, samples, seed))
     pieces = [*_loop(found), *_steady(found), *_switch_on(found), *_spread(found)]
     pictures = ("frequency-response", "switch-on", "state-plane", "spread")
     show(found, pieces, pictures, Output(as_json, plots, suffix))
@@ -245,9 +248,9 @@ def _partial(sheet: Path | None, flags: dict[str, str], groups: tuple[str, ...])
 def _loop(found: Review) -> list[Table | str]:
     from rlc.render import tables
 
-    sheet = found.loaded.sheet
+    inputs = found.loaded.inputs
     return [
-        tables.loop(found.case, sheet.parts(), sheet.tolerances()),
+        tables.loop(found.case, inputs.parts, inputs.tolerances),
         tables.source(found.case),
         tables.frequencies(found.case, found.quantities),
         tables.quantities("Loop quantities", found.quantities, "loop"),

@@ -20,7 +20,7 @@ from rlc.front.flags import Flag
 if TYPE_CHECKING:
     from rich.table import Table
 
-    from rlc.front.validate import Loaded
+    from rlc.front.inputs import Loaded
     from rlc.review import Review
 
 BAD_INPUT = 2
@@ -106,7 +106,7 @@ def with_flags(*flags: Flag) -> Callable[[Callable[..., None]], Callable[..., No
 
 def read_sheet(sheet: Path | None, flags: dict[str, str]) -> Loaded:
     """Read the sheet and say on stderr what was replaced and what looks like a slip."""
-    from rlc.front.validate import load
+    from rlc.front.inputs import load
 
     loaded = load(sheet, flags)
     for each in loaded.document.replacements:
@@ -128,7 +128,7 @@ def show(
     if output.as_json:
         typer.echo(json.dumps(found.document(), indent=2, allow_nan=False))
         return
-    heading = [found.loaded.sheet.title] * bool(found.loaded.sheet.title)
+    heading = [found.loaded.inputs.title] * bool(found.loaded.inputs.title)
     if found.loaded.document.name:
         heading.append(f"Sheet: {found.loaded.document.name}")
     heading += [

@@ -10,7 +10,7 @@ from typing import TYPE_CHECKING, Any
 from rlc import __version__
 from rlc.errors import InputError
 from rlc.front.flags import SAMPLES, SEED
-from rlc.front.validate import Loaded, load
+from rlc.front.inputs import Loaded, load
 from rlc.render import machine
 from rlc.render.cautions import Caution, cautions
 from rlc.solver.case import Case
@@ -71,7 +71,7 @@ class Review:
         """Everything in it as one JSON document, in SI units."""
         loaded, batch = self.loaded, self.spread
         found: dict[str, Any] = {
-            "title": loaded.sheet.title,
+            "title": loaded.inputs.title,
             "sheet": loaded.document.name or None,
             "version": __version__,
         }
@@ -79,7 +79,7 @@ class Review:
             found |= {"seed": batch.seed, "samples": batch.count}
         if loaded.document.replacements:
             found["replaced"] = [each._asdict() for each in loaded.document.replacements]
-        found["loop"] = machine.loop(self.case, loaded.sheet.parts())
+        found["loop"] = machine.loop(self.case, loaded.inputs.parts)
         found["quantities"] = machine.quantities(self.quantities)
         if batch is not None:
             limited = [each for each in self.outcomes if each.target.limited]
@@ -99,9 +99,9 @@ class Review:
         """
         from rlc.render import plots
 
-        title = self.loaded.sheet.title or "Series loop"
+        title = self.loaded.inputs.title or "Series loop"
         beside = tuple(caution.text for caution in self.cautions)
-        limits = self.loaded.sheet.targets()
+        limits = self.loaded.inputs.targets
         batch = self.spread.case if self.spread and self.spread.parts else None
 
         def histogram(outcome: Outcome) -> Callable[[], Figure]:
@@ -152,14 +152,14 @@ def check(
         If the sheet or a value cannot be used.
     """
     loaded = load(path, flags)
-    return review(loaded, REGISTER, judge(loaded, loaded.sheet.targets(), samples, seed))
+    return review(loaded, REGISTER, judge(loaded, loaded.inputs.targets, samples, seed))
 
 
 def judge(
     loaded: Loaded, targets: Iterable[Target], samples: int, seed: int
 ) -> tuple[Spread, tuple[Outcome, ...]]:
     """Put the sheet's parts through their spread, and each target through that."""
-    batch = spread(loaded.sheet.case(), loaded.sheet.parts(), samples, seed)
+    batch = spread(loaded.inputs.case, loaded.inputs.parts, samples, seed)
     return batch, tuple(batch.outcome(target) for target in targets)
 
 
@@ -179,21 +179,19 @@ def review(
     judged : tuple, optional
         What :func:`judge` gave.
     """
-    case = loaded.sheet.case()
+    case = loaded.inputs.case
     batch, outcomes = judged or (None, ())
     worst = {
         outcome.target.quantity: outcome.worst_high
         for outcome in outcomes
         if outcome.target.at is None and outcome.target.across is None
     }
-    return Review(
-        loaded,
-        case,
-        {name: float(REGISTER[name](case)) for name in names},
-        batch,
-        outcomes,
-        cautions(case, loaded.sheet.ratings(), worst),
-    )
+    quantities = {name: float(REGISTER[name](case)) for name in names}
+    asked = {*quantities, *(outcome.target.quantity for outcome in outcomes)}
+    # Other closings matter to an answer about the switch-on, and cost a search each.
+    closings = any(REGISTER[name].group == "switch-on" for name in asked)
+    told = cautions(case, loaded.inputs.ratings, worst, closings=closings)
+    return Review(loaded, case, quantities, batch, outcomes, told)
 
 
 def names_in(*groups: str) -> tuple[str, ...]:
@@ -209,7 +207,7 @@ def asked_targets(loaded: Loaded, names: Iterable[str]) -> tuple[Target, ...]:
     InputError
         If a name is not in the register.
     """
-    targets = loaded.sheet.targets()
+    targets = loaded.inputs.targets
     named = tuple(names)
     unknown = [name for name in named if name not in REGISTER]
     if unknown:

@@ -37,7 +37,7 @@ def test_help_loads_nothing_that_it_does_not_need() -> None:
 
 
 def test_steady_from_flags_loads_no_library_for_other_jobs() -> None:
-    assert not loaded(*STEADY) & {"scipy", "matplotlib", "pint", "jinja2"}
+    assert not loaded(*STEADY) & {"scipy", "matplotlib", "pint", "pydantic"}
 
 
 def test_check_as_a_process() -> None:

@@ -11,7 +11,7 @@ from pathlib import Path
 from typing import Any, NamedTuple
 
 from rlc.errors import InputError, SheetError
-from rlc.front.flags import FLAGS, SOURCE_LEVELS, TOLERANCE_FLAGS
+from rlc.front.flags import FLAGS, SOURCE_LEVELS, TOLERANCE_FLAGS, Flag
 
 #: A sheet is a page or two; anything far beyond is some other file.
 LARGEST_SHEET = 256 * 1024
@@ -99,26 +99,13 @@ def read_document(path: str | Path) -> Document:
     return Document(str(path), data, _key_lines(text))
 
 
-def with_flags(document: Document, given: Mapping[str, str]) -> Document:
-    """Put the values of flags in place of those of the sheet.
+def _levels(given: Mapping[str, str]) -> list[Flag]:
+    return [flag for flag in FLAGS if flag.key in SOURCE_LEVELS and flag.option in given]
 
-    Parameters
-    ----------
-    document : Document
-        A sheet, or an empty document.
-    given : mapping of str to str
-        Option, such as ``--resistance``, to its text.
 
-    Returns
-    -------
-    Document
-
-    Raises
-    ------
-    InputError
-        If flags contradict each other.
-    """
-    levels = [flag for flag in FLAGS if flag.key in SOURCE_LEVELS and flag.option in given]
+def check_flags(given: Mapping[str, str]) -> None:
+    """Raise InputError if flags contradict each other."""
+    levels = _levels(given)
     if len(levels) > 1:
         named = " and ".join(flag.option for flag in levels)
         raise InputError(named, None, "are given together", "A source has one of them")
@@ -126,6 +113,23 @@ def with_flags(document: Document, given: Mapping[str, str]) -> Document:
         for option in ("--frequency", "--closing-angle"):
             if option in given:
                 raise InputError(option, given[option], "does not go with --source-dc")
+
+
+def with_flags(document: Document, given: Mapping[str, str]) -> Document:
+    """Put the values of flags in place of those of the sheet.
+
+    Parameters
+    ----------
+    document : Document
+        A sheet.
+    given : mapping of str to str
+        Option, such as ``--resistance``, to its text.
+
+    Returns
+    -------
+    Document
+    """
+    levels = _levels(given)
     data, options = deepcopy(document.data), dict(document.options)
     replacements = []
     for flag in FLAGS + TOLERANCE_FLAGS:
@@ -140,9 +144,8 @@ def with_flags(document: Document, given: Mapping[str, str]) -> Document:
             old = _replace_source(data, SOURCE_LEVELS[flag.key], old)
         table[flag.key] = given[flag.option]
         options[(flag.table, flag.key)] = flag.option
-        if document.name:
-            key = f"{flag.table}.{flag.key}"
-            replacements.append(Replacement(key, flag.option, old, given[flag.option]))
+        key = f"{flag.table}.{flag.key}"
+        replacements.append(Replacement(key, flag.option, old, given[flag.option]))
     return Document(document.name, data, document.lines, options, tuple(replacements))
 
 

@@ -4,6 +4,8 @@ from __future__ import annotations
 
 from typing import NamedTuple
 
+from rlc.front.door import Door
+
 #: Random units unless stated otherwise: enough to tell 99.9 % from 99 %, at seconds of work.
 SAMPLES = 2000
 SEED = 1
@@ -18,6 +20,8 @@ class Flag(NamedTuple):
         As typed on the command line.
     table, key : str
         Where the value stands in a sheet.
+    door : Door
+        How its text is read; of a tolerance, how the value itself is read.
     help : str
         What it is, with an example.
     """
@@ -25,47 +29,63 @@ class Flag(NamedTuple):
     option: str
     table: str
     key: str
+    door: Door
     help: str
 
 
+_OHMS, _VOLTS, _ABOVE = Door("resistance", "zero"), Door("voltage"), Door("voltage", "above zero")
+_R, _L, _C = _OHMS, Door("inductance", "above zero"), Door("capacitance", "above zero")
+
 FLAGS: tuple[Flag, ...] = (
-    Flag("--resistance", "resistor", "value", 'Resistor, "12 ohm" or 4R7.'),
-    Flag("--inductance", "inductor", "value", 'Inductor, "33 mH".'),
-    Flag("--capacitance", "capacitor", "value", 'Capacitor, "1 uF" or 4n7.'),
-    Flag("--winding-resistance", "inductor", "winding_resistance", "Of the inductor's winding."),
-    Flag("--series-resistance", "capacitor", "series_resistance", "Inside the capacitor."),
-    Flag("--load", "load", "resistance", "Resistance across the capacitor."),
-    Flag("--source-rms", "source", "rms", 'Sine source, rms: "230 V".'),
-    Flag("--source-amplitude", "source", "amplitude", 'Sine source, peak: "325 V".'),
-    Flag("--source-dc", "source", "voltage", 'Constant source, stepped on: "24 V".'),
-    Flag("--frequency", "source", "frequency", 'Of a sine source, "50 Hz".'),
-    Flag("--source-resistance", "source", "resistance", "Inside the source."),
-    Flag("--source-inductance", "source", "inductance", "Inside the source."),
+    Flag("--resistance", "resistor", "value", _R, 'Resistor, "12 ohm" or 4R7.'),
+    Flag("--inductance", "inductor", "value", _L, 'Inductor, "33 mH".'),
+    Flag("--capacitance", "capacitor", "value", _C, 'Capacitor, "1 uF" or 4n7.'),
     Flag(
-        "--closing-angle", "switch_on", "closing_angle",
+        "--winding-resistance", "inductor", "winding_resistance", _OHMS,
+        "Of the inductor's winding.",
+    ),
+    Flag(
+        "--series-resistance", "capacitor", "series_resistance", _OHMS, "Inside the capacitor.",
+    ),
+    Flag(
+        "--load", "load", "resistance", Door("resistance", "above zero"),
+        "Resistance across the capacitor.",
+    ),
+    Flag("--source-rms", "source", "rms", _ABOVE, 'Sine source, rms: "230 V".'),
+    Flag("--source-amplitude", "source", "amplitude", _ABOVE, 'Sine source, peak: "325 V".'),
+    Flag("--source-dc", "source", "voltage", _VOLTS, 'Constant source, stepped on: "24 V".'),
+    Flag(
+        "--frequency", "source", "frequency", Door("frequency", "above zero"),
+        'Of a sine source, "50 Hz".',
+    ),
+    Flag("--source-resistance", "source", "resistance", _OHMS, "Inside the source."),
+    Flag(
+        "--source-inductance", "source", "inductance", Door("inductance", "zero"),
+        "Inside the source.",
+    ),
+    Flag(
+        "--closing-angle", "switch_on", "closing_angle", Door("angle", word="worst"),
         'Of a sine at closing, from its rising zero: "30 deg", or worst.',
     ),
     Flag(
-        "--capacitor-voltage", "switch_on", "capacitor_voltage",
+        "--capacitor-voltage", "switch_on", "capacitor_voltage", _VOLTS,
         "On the capacitor before closing.",
     ),
-    Flag("--initial-current", "switch_on", "initial_current", "In the loop at closing."),
+    Flag(
+        "--initial-current", "switch_on", "initial_current", Door("current"),
+        "In the loop at closing.",
+    ),
 )  # fmt: skip
 
 #: The flags of `rlc spread` and `rlc check` alone.
 TOLERANCE_FLAGS: tuple[Flag, ...] = (
-    Flag("--resistance-tolerance", "resistor", "tolerance", 'Of the resistor, "1 %" or J.'),
-    Flag("--inductance-tolerance", "inductor", "tolerance", 'Of the inductor, "10 %".'),
-    Flag("--capacitance-tolerance", "capacitor", "tolerance", 'Of the capacitor, "-20 % / +80 %".'),
-)
+    Flag("--resistance-tolerance", "resistor", "tolerance", _R, 'Of the resistor, "1 %" or J.'),
+    Flag("--inductance-tolerance", "inductor", "tolerance", _L, 'Of the inductor, "10 %".'),
+    Flag(
+        "--capacitance-tolerance", "capacitor", "tolerance", _C,
+        'Of the capacitor, "-20 % / +80 %".',
+    ),
+)  # fmt: skip
 
 #: Of these a source has one; each says what kind of source it is.
 SOURCE_LEVELS = {"rms": "sine", "amplitude": "sine", "voltage": "dc"}
-
-
-def option_for(table: str, key: str) -> str:
-    """The flag that stands for a value of a sheet, or nothing."""
-    for flag in FLAGS + TOLERANCE_FLAGS:
-        if (flag.table, flag.key) == (table, key):
-            return flag.option
-    return ""

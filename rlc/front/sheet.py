@@ -2,73 +2,27 @@
 
 from __future__ import annotations
 
-from dataclasses import dataclass
 from typing import Annotated, Any, ClassVar, Literal
 
 from pydantic import (
     BaseModel,
     ConfigDict,
     Field,
-    GetCoreSchemaHandler,
     ValidationInfo,
     field_validator,
     model_validator,
 )
-from pydantic_core import CoreSchema, core_schema
 
 from rlc.errors import InputError
-from rlc.front.units import Tolerance, read, read_tolerance
+from rlc.front.door import Door
+from rlc.front.inputs import Inputs
+from rlc.front.units import Tolerance, read_tolerance
 from rlc.solver.case import Case
 from rlc.solver.loop import ELEMENTS, Loop, make_loop
 from rlc.solver.quantities import REGISTER
 from rlc.solver.source import Source, constant, sine
 from rlc.solver.spread import Distribution, Part
 from rlc.solver.targets import Ratings, Target
-
-
-@dataclass(frozen=True)
-class Door:
-    """Reads a text as an SI value of one kind.
-
-    Attributes
-    ----------
-    kind : str
-        Key of :data:`rlc.front.units.KINDS`.
-    least : {"any", "zero", "above zero"}
-        Lower limit.
-    word : str
-        A word that stands for None, such as "worst".
-    """
-
-    kind: str
-    least: Literal["any", "zero", "above zero"] = "any"
-    word: str = ""
-
-    def __get_pydantic_core_schema__(self, _: Any, __: GetCoreSchemaHandler) -> CoreSchema:
-        return core_schema.no_info_plain_validator_function(self.open)
-
-    def open(self, text: Any) -> float | None:
-        """Read one value; raises InputError."""
-        if self.word and text == self.word:
-            return None
-        try:
-            value = _typed(text, self.kind)
-        except InputError as error:
-            hint = error.hint + (f' or "{self.word}"' if self.word else "")
-            raise InputError("", text, error.rule, hint) from None
-        if self.least == "zero" and value < 0:
-            raise InputError("", text, "must be zero or more")
-        if self.least == "above zero" and value <= 0:
-            raise InputError("", text, "must be more than zero")
-        return value
-
-
-def _typed(text: Any, kind: str) -> float:
-    """Read a value as a sheet has it: a text, or a bare number where no unit is missing."""
-    if isinstance(text, int | float) and not isinstance(text, bool) and kind in ("number", "ratio"):
-        text = repr(text)
-    return read(text, kind, "").value
-
 
 Ohms = Annotated[float, Door("resistance", "zero")]
 OhmsAbove = Annotated[float, Door("resistance", "above zero")]
@@ -206,7 +160,7 @@ class TargetTable(Table):
             # The quantity's name is the error to mend first.
             return None
         if info.field_name != "at":
-            return _typed(text, entry.kind)
+            return Door(entry.kind).open(text)
         if entry.at is None:
             raise InputError("", text, f"{entry.name} is not asked for at a stated value")
         return Door(entry.at, "above zero").open(text)
@@ -252,8 +206,7 @@ class Sheet(Table):
             raise InputError("", title, "must be one line of printable characters")
         return title
 
-    def loop(self) -> Loop:
-        """The nominal loop."""
+    def _loop(self) -> Loop:
         return make_loop(
             resistance=self.resistor.value,
             inductance=self.inductor.value,
@@ -265,8 +218,7 @@ class Sheet(Table):
             source_inductance=self.source.inductance,
         )
 
-    def driven_by(self) -> Source:
-        """The source, with its closing angle."""
+    def _source(self) -> Source:
         if isinstance(self.source, Dc):
             return constant(self.source.voltage)
         amplitude = self.source.amplitude
@@ -275,35 +227,27 @@ class Sheet(Table):
             amplitude = self.source.rms * 2**0.5
         return sine(amplitude, self.source.frequency, self.switch_on.closing_angle)
 
-    def case(self) -> Case:
-        """The nominal switch-on."""
+    def inputs(self) -> Inputs:
+        """The solver's objects."""
         states = self.switch_on
-        return Case(
-            self.loop(),
-            self.driven_by(),
-            states.capacitor_voltage,  # type: ignore[arg-type]
-            states.initial_current,  # type: ignore[arg-type]
-        )
-
-    def parts(self) -> tuple[Part, ...]:
-        """Resistor, inductor and capacitor with their limits."""
-        return self.resistor.part(), self.inductor.part(), self.capacitor.part()
-
-    def tolerances(self) -> dict[str, str]:
-        """Tolerances as they were typed, by field of the loop."""
-        rows: tuple[Toleranced, ...] = (self.resistor, self.inductor, self.capacitor)
-        return {row.field: row.tolerance.text for row in rows if row.tolerance}
-
-    def ratings(self) -> Ratings:
-        """What the parts are made for."""
-        return Ratings(
+        parts: tuple[Toleranced, ...] = (self.resistor, self.inductor, self.capacitor)
+        ratings = Ratings(
             resistor_power=self.resistor.rated_power,
             inductor_current=self.inductor.rated_current,
             inductor_saturation=self.inductor.saturation_current,
             capacitor_voltage=self.capacitor.rated_voltage,
             capacitor_voltage_rms=self.capacitor.rated_voltage_rms,
         )
-
-    def targets(self) -> tuple[Target, ...]:
-        """The sheet's targets, then its ratings."""
-        return tuple(row.target() for row in self.target) + self.ratings().targets()
+        return Inputs(
+            self.title,
+            Case(
+                self._loop(),
+                self._source(),
+                states.capacitor_voltage,  # type: ignore[arg-type]
+                states.initial_current,  # type: ignore[arg-type]
+            ),
+            tuple(part.part() for part in parts),
+            {part.field: part.tolerance.text for part in parts if part.tolerance},
+            ratings,
+            tuple(row.target() for row in self.target) + ratings.targets(),
+        )

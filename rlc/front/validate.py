@@ -5,15 +5,16 @@ from __future__ import annotations
 from collections.abc import Iterator, Mapping
 from difflib import get_close_matches
 from pathlib import Path
-from typing import Any, NamedTuple, get_args
+from typing import Any, get_args
 
 from pydantic import BaseModel, ValidationError
 
 from rlc.errors import InputError, SheetError
 from rlc.front.document import Document, KeyPath, read_document, with_flags
-from rlc.front.flags import option_for
+from rlc.front.door import Door
+from rlc.front.inputs import Loaded
 from rlc.front.marking import note_on
-from rlc.front.sheet import Dc, Door, Sheet, Sine, Table
+from rlc.front.sheet import Dc, Sheet, Sine, Table
 from rlc.solver.quantities import REGISTER
 
 _SOURCES: dict[str, type[Table]] = {"dc": Dc, "sine": Sine}
@@ -36,33 +37,15 @@ _SINE = 'kind = "sine", rms = "24 V", frequency = "50 Hz"'
 _LEVEL = 'Write rms = "24 V" or amplitude = "34 V"'
 
 
-class Loaded(NamedTuple):
-    """A sheet that can be worked with.
-
-    Attributes
-    ----------
-    sheet : Sheet
-        Its values.
-    document : Document
-        Where they came from.
-    notes : tuple of str
-        Values that were taken, but look like slips.
-    """
-
-    sheet: Sheet
-    document: Document
-    notes: tuple[str, ...]
-
-
-def load(path: str | Path | None = None, flags: Mapping[str, str] | None = None) -> Loaded:
-    """Read a sheet, flags, or a sheet with flags in place of some of its values.
+def read_sheet(path: str | Path, flags: Mapping[str, str]) -> Loaded:
+    """Read a sheet, with flags in place of some of its values.
 
     Parameters
     ----------
-    path : str or Path, optional
+    path : str or Path
         The sheet.
-    flags : mapping of str to str, optional
-        Option, such as ``--resistance``, to its text.
+    flags : mapping of str to str
+        Option, such as ``--resistance``, to its text; they do not contradict each other.
 
     Returns
     -------
@@ -72,10 +55,8 @@ def load(path: str | Path | None = None, flags: Mapping[str, str] | None = None)
     ------
     SheetError
         With everything that is wrong with the sheet.
-    InputError
-        If flags contradict each other.
     """
-    document = with_flags(Document() if path is None else read_document(path), flags or {})
+    document = with_flags(read_document(path), flags)
     problems = dict(_contradictions(document.data))
     try:
         sheet = Sheet.model_validate(document.data)
@@ -88,19 +69,13 @@ def load(path: str | Path | None = None, flags: Mapping[str, str] | None = None)
         raise SheetError(
             document.name, tuple(_placed(at, problems[at], document) for at in ordered)
         )
-    return Loaded(sheet, document, tuple(_notes(sheet, document)))
+    return Loaded(sheet.inputs(), document, tuple(_notes(sheet, document)))
 
 
 def _placed(at: KeyPath, found: InputError, document: Document) -> tuple[int | None, InputError]:
     """The error with its line, under the name by which the user knows the value."""
-    name = document.options.get(at, "")
-    if not name and not document.name:
-        name = option_for(str(at[0]), str(at[-1])) if len(at) == 2 else ""
-        if at == ("source",):
-            name = "--source-rms, --source-amplitude or --source-dc"
-    if not name:
-        steps = (f"[{part + 1}]" if isinstance(part, int) else f".{part}" for part in at)
-        name = "".join(steps).lstrip(".")
+    steps = (f"[{part + 1}]" if isinstance(part, int) else f".{part}" for part in at)
+    name = document.options.get(at) or "".join(steps).lstrip(".")
     if found.name and found.name != at[-1]:
         name += f": {found.name}"
     line = None if at in document.options else document.line_of(at)
@@ -149,7 +124,7 @@ def _problem(error: Any, document: Document) -> tuple[KeyPath, InputError]:
             value = value.get(cause.name) if isinstance(value, dict) else None
         return at, InputError(cause.name, value, cause.rule, cause.hint)
     if kind == "missing":
-        return _missing(at, document)
+        return _missing(at)
     if kind == "extra_forbidden":
         return at, InputError("", value, *_unknown(at, document.data))
     if kind.startswith("union_tag"):
@@ -165,14 +140,12 @@ def _problem(error: Any, document: Document) -> tuple[KeyPath, InputError]:
     return at, InputError("", value, error["msg"][:1].lower() + error["msg"][1:])
 
 
-def _missing(at: KeyPath, document: Document) -> tuple[KeyPath, InputError]:
+def _missing(at: KeyPath) -> tuple[KeyPath, InputError]:
     if at[-1] in _TABLES and at[-1] != "source" and len(at) == 1:
         at = (*at, "value")
     example = _EXAMPLES.get(".".join(str(part) for part in at), "")
     if at == ("source",):
-        hint = f"Write [source] and below it {_SINE}" if document.name else ""
-    elif not document.name or at[0] == "target":
-        hint = f"For example {example}" if example else ""
+        hint = f"Write [source] and below it {_SINE}"
     else:
         hint = f"Write below [{at[0]}] {at[-1]} = {example}" if example else ""
     return at, InputError("", None, "is missing", hint)

@@ -64,6 +64,8 @@ def cautions(
     case: Case,
     ratings: Ratings = _NO_RATINGS,
     worst: Mapping[str, float] | None = None,
+    *,
+    closings: bool = True,
 ) -> tuple[Caution, ...]:
     """Cautions that this loop calls for, the most hazardous first.
 
@@ -76,6 +78,9 @@ def cautions(
     worst : mapping of str to float, optional
         Highest value over the parts' tolerances, by name in the register of quantities [SI
         unit of the quantity]. Where one is missing or not a number, the nominal value stands.
+    closings : bool
+        Whether other closings than the one asked for are compared: the worst angles, and
+        closing onto a charged capacitor.
 
     Returns
     -------
@@ -88,7 +93,8 @@ def cautions(
     searches are made: at the worst closing angles, and onto a charged capacitor.
     """
     found = Findings(case, ratings, worst or {})
-    told = ((name, rule(found)) for name, rule in _RULES)
+    rules = (row for row in _RULES if closings or row[0] not in _CLOSINGS)
+    told = ((name, rule(found)) for name, rule in rules)
     return tuple(Caution(name, text) for name, text in told if text)
 
 
@@ -378,6 +384,7 @@ def _deference(found: Findings) -> str:
 
 _REACTIVE = ("capacitor", "inductor")
 _WATCHED = (("current", "current", "current"), ("capacitor", "capacitor voltage", "voltage"))
+_CLOSINGS = ("closing-angle", "trapped-charge")
 
 #: Identifier and rule of each caution, the most hazardous first.
 _RULES: tuple[tuple[str, Callable[[Findings], str]], ...] = (

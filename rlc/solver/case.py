@@ -20,6 +20,9 @@ from rlc.solver.steady import SteadyState, steady_state
 
 Array = NDArray[np.float64]
 
+_PEAKED = ("current", "capacitor", "inductor", "dielectric")
+_FEW_LOOPS = 16
+
 
 @dataclass(frozen=True)
 class Waveforms:
@@ -132,32 +135,40 @@ class Case:
         With the worst closing angle asked for, each element has its own.
         """
         if element not in self._peaks:
-            self._peaks[element] = self._find_peak(element)
+            # A search costs about the same for a few signals as for one.
+            few = element in _PEAKED and self.loop.resistance.size <= _FEW_LOOPS
+            self._peaks.update(self._find_peaks(_PEAKED if few else (element,)))
         return self._peaks[element]
 
-    def _find_peak(self, element: str) -> Peak:
+    def _find_peaks(self, elements: tuple[str, ...]) -> dict[str, Peak]:
         if self.source.kind == "dc":
-            return constant_source_peak(self.equation, self.constant_signal(element))
-        shape = self.shape
+            return {
+                element: constant_source_peak(self.equation, self.constant_signal(element))
+                for element in elements
+            }
+        shape = (len(elements), *self.shape)
 
         def flat(value: Any) -> Any:
             return np.broadcast_to(value, shape).reshape(-1)
 
-        rotating, fixed = self.signals(element)
+        def stacked(signals: tuple[Signal, ...]) -> Signal:
+            together = (
+                np.stack([np.broadcast_to(part, self.shape) for part in parts])
+                for parts in zip(*signals, strict=True)
+            )
+            return Signal(*(flat(part) for part in together))
+
+        rotating, fixed = zip(*(self.signals(element) for element in elements), strict=True)
         angle = self.source.closing_angle
         found = sine_peak(
             equation_of(self.loop.map(flat)),
             flat(angular(self.source.frequency)[0]),
-            Signal(*(flat(part) for part in rotating)),
-            Signal(*(flat(part) for part in fixed)),
+            stacked(rotating),
+            stacked(fixed),
             None if angle is None else flat(angle),
         )
-        return Peak(
-            found.value.reshape(shape),
-            found.time.reshape(shape),
-            found.gap.reshape(shape),
-            found.angle.reshape(shape),
-        )
+        parts = (part.reshape(shape) for part in (found.value, found.time, found.gap, found.angle))
+        return {element: Peak(*each) for element, *each in zip(elements, *parts, strict=True)}
 
     def closing_angle_for(self, element: str) -> Array:
         """The closing angle: as given, or the worst one for this element [rad].

@@ -14,8 +14,7 @@ from rlc.solver.peaks import first_extremum
 
 Array = NDArray[np.float64]
 
-_NODES, _WEIGHTS = np.polynomial.legendre.leggauss(16)
-_ITERATIONS = 100
+_NODES, _ITERATIONS = 16, 100
 
 
 def capacitor_transient(case: Case) -> tuple[Array, Array, Array]:
@@ -177,9 +176,11 @@ def let_through(case: Case, until: Any) -> Array:
     doublings = max(0, int(np.ceil(np.log2(np.max(turns, initial=1.0)))))
     span = until / 2.0**doublings
     columns = equation_of(case.loop.column())
-    times = span[..., np.newaxis] * (_NODES + 1) / 2
+    # Not at module level: the nodes cost more time than a whole steady state.
+    nodes, weights = np.polynomial.legendre.leggauss(_NODES)
+    times = span[..., np.newaxis] * (nodes + 1) / 2
     row = _current_row(columns, frequency[..., np.newaxis], times)
-    gram = np.einsum("...ni,...nj,n->...ij", row, row, _WEIGHTS)
+    gram = np.einsum("...ni,...nj,n->...ij", row, row, weights)
     gram = gram * span[..., np.newaxis, np.newaxis] / 2
     for k in range(doublings):
         step = _propagator(eq, frequency, span * 2.0**k)

@@ -11,7 +11,9 @@ import pytest
 
 from rlc.errors import InputError, SheetError
 from rlc.front.document import LARGEST_SHEET
-from rlc.front.validate import load
+from rlc.front.flags import FLAGS, TOLERANCE_FLAGS
+from rlc.front.inputs import load
+from rlc.front.marking import KINDS
 
 GOOD = """\
 title = "Buoy light"
@@ -71,8 +73,9 @@ def problems(folder: Path, text: str) -> list[str]:
 
 
 def test_every_value_arrives_in_si_units(tmp_path: Path) -> None:
-    sheet = load(write(tmp_path, GOOD)).sheet
-    loop, source, case = sheet.loop(), sheet.driven_by(), sheet.case()
+    inputs = load(write(tmp_path, GOOD)).inputs
+    case = inputs.case
+    loop, source = case.loop, case.source
     assert (loop.resistance, loop.inductance, loop.capacitance) == (12.0, 33e-3, 1e-6)
     assert (loop.winding_resistance, loop.series_resistance) == (2.2, 0.1)
     assert (loop.source_resistance, loop.source_inductance) == (0.5, 10e-6)
@@ -81,11 +84,11 @@ def test_every_value_arrives_in_si_units(tmp_path: Path) -> None:
     assert source.frequency == 880.0
     assert source.closing_angle == pytest.approx(math.pi / 6, rel=1e-15)
     assert (case.capacitor_voltage, case.initial_current) == (-5.0, 0.01)
-    limits = {part.field: (part.low, part.high) for part in sheet.parts()}
+    limits = {part.field: (part.low, part.high) for part in inputs.parts}
     assert limits["resistance"] == pytest.approx((11.88, 12.12), rel=1e-15)
     assert limits["inductance"] == pytest.approx((32.5e-3, 33.5e-3), rel=1e-15)
     assert limits["capacitance"] == pytest.approx((0.8e-6, 1.8e-6), rel=1e-15)
-    first, second, *ratings = sheet.targets()
+    first, second, *ratings = inputs.targets
     assert (first.quantity, first.maximum, first.goal) == ("bandwidth", 80.0, 0.99)
     assert (second.across, second.at, second.maximum) == ("resistor", 300.0, 0.03)
     assert {(each.rating, each.quantity, each.maximum) for each in ratings} == {
@@ -98,8 +101,8 @@ def test_every_value_arrives_in_si_units(tmp_path: Path) -> None:
 
 
 def test_worst_closing_angle_is_a_word(tmp_path: Path) -> None:
-    sheet = load(write(tmp_path, GOOD.replace("30 deg", "worst"))).sheet
-    assert sheet.driven_by().worst_angle
+    inputs = load(write(tmp_path, GOOD.replace("30 deg", "worst"))).inputs
+    assert inputs.case.source.worst_angle
 
 
 def test_all_errors_come_at_once_each_with_its_line(tmp_path: Path) -> None:
@@ -271,7 +274,7 @@ def test_a_directory_a_missing_file_and_one_without_permission(
 def test_a_byte_order_mark_is_no_error(tmp_path: Path) -> None:
     path = tmp_path / "sheet.toml"
     path.write_text(GOOD, encoding="utf-8-sig")
-    assert load(path).sheet.title == "Buoy light"
+    assert load(path).inputs.title == "Buoy light"
 
 
 def test_lines_are_found_in_dotted_inline_and_multiline_toml(tmp_path: Path) -> None:
@@ -287,7 +290,7 @@ def test_lines_are_found_in_dotted_inline_and_multiline_toml(tmp_path: Path) -> 
 
 def test_a_slip_that_may_be_meant_gets_a_note(tmp_path: Path) -> None:
     loaded = load(write(tmp_path, GOOD.replace('"33 mH"', '"10 MH"').replace('"0.5 mH"', '"5 %"')))
-    assert loaded.sheet.inductor.value == 10e6
+    assert loaded.inputs.case.loop.inductance == 10e6
     assert [note.split(":")[0] for note in loaded.notes] == ["inductor.value"]
 
 
@@ -307,14 +310,14 @@ def test_flags_alone_make_the_same_loop_as_a_sheet(tmp_path: Path) -> None:
         "--capacitor-voltage": "-5 V",
         "--initial-current": "10 mA",
     }
-    assert repr(load(None, flags).sheet.case()) == repr(load(write(tmp_path, GOOD)).sheet.case())
+    assert repr(load(None, flags).inputs.case) == repr(load(write(tmp_path, GOOD)).inputs.case)
 
 
 def test_a_flag_replaces_a_value_and_is_named_in_errors(tmp_path: Path) -> None:
     path = write(tmp_path, GOOD)
     loaded = load(path, {"--resistance": "15 ohm", "--source-amplitude": "10 V"})
-    assert loaded.sheet.resistor.value == 15.0
-    assert loaded.sheet.driven_by().amplitude == 10.0
+    assert loaded.inputs.case.loop.resistance == 15.0
+    assert loaded.inputs.case.source.amplitude == 10.0
     assert [(each.key, each.old, each.new) for each in loaded.document.replacements] == [
         ("resistor.value", "12 ohm", "15 ohm"),
         ("source.amplitude", "24 V", "10 V"),
@@ -325,10 +328,10 @@ def test_a_flag_replaces_a_value_and_is_named_in_errors(tmp_path: Path) -> None:
 
 
 def test_a_dc_flag_turns_a_sine_sheet_into_dc(tmp_path: Path) -> None:
-    sheet = load(write(tmp_path, GOOD), {"--source-dc": "48 V"}).sheet
-    assert sheet.driven_by().kind == "dc"
-    assert sheet.driven_by().amplitude == 48.0
-    assert sheet.loop().source_resistance == 0.5
+    case = load(write(tmp_path, GOOD), {"--source-dc": "48 V"}).inputs.case
+    assert case.source.kind == "dc"
+    assert case.source.amplitude == 48.0
+    assert case.loop.source_resistance == 0.5
 
 
 def test_flags_that_contradict_each_other() -> None:
@@ -342,7 +345,32 @@ def test_flags_that_are_missing_are_named_as_flags() -> None:
     with pytest.raises(SheetError) as caught:
         load(None, {"--resistance": "1 ohm", "--source-rms": "1 V"})
     assert str(caught.value).splitlines() == [
-        '--inductance: is missing. For example "33 mH"',
-        '--capacitance: is missing. For example "1 uF"',
+        '--inductance: is missing. For example "10 mH"',
+        '--capacitance: is missing. For example "4.7 uF"',
         '--frequency: is missing. For example "50 Hz"',
     ]
+
+
+def test_a_flag_and_its_key_in_the_sheet_pass_the_same_door(tmp_path: Path) -> None:
+    """Each flag once beside a sheet and once alone, with texts that some doors refuse."""
+    sine = {"--source-rms": "24 V", "--frequency": "880 Hz"}
+    beside = {
+        "rms": {"--frequency": "880 Hz"},
+        "amplitude": {"--frequency": "880 Hz"},
+        "voltage": {},
+    }
+    parts = {"--resistance": "12 ohm", "--inductance": "33 mH", "--capacitance": "1u0"}
+    path = write(tmp_path, GOOD)
+    for flag in FLAGS + TOLERANCE_FLAGS:
+        unit = "%" if flag.key == "tolerance" else KINDS[flag.door.kind].symbol
+        for number in ("-1", "0", "1"):
+            given = {flag.option: f"{number} {unit}"}
+            alone = parts | beside.get(flag.key, sine) | given
+            said = []
+            for sheet, flags in ((path, given), (None, alone)):
+                try:
+                    load(sheet, flags)
+                    said.append("")
+                except SheetError as error:
+                    said.append(str(error).removeprefix(f"{path}: "))
+            assert said[0] == said[1]

@@ -1,0 +1,92 @@
+"""What a question comes down to: the solver's objects, wherever their values were written."""
+
+from __future__ import annotations
+
+from collections.abc import Mapping
+from dataclasses import dataclass
+from pathlib import Path
+from typing import NamedTuple
+
+from rlc.front.document import Document, check_flags
+from rlc.solver.case import Case
+from rlc.solver.spread import Part
+from rlc.solver.targets import Ratings, Target
+
+
+@dataclass(frozen=True)
+class Inputs:
+    """A loop with its source, and what is asked of it.
+
+    Attributes
+    ----------
+    title : str
+        One line, or empty.
+    case : Case
+        The nominal switch-on.
+    parts : tuple of Part
+        Resistor, inductor and capacitor with their limits.
+    tolerances : mapping of str to str
+        Tolerances as they were typed, by field of the loop.
+    ratings : Ratings
+        What the parts are made for.
+    targets : tuple of Target
+        The sheet's targets, then its ratings.
+    """
+
+    title: str
+    case: Case
+    parts: tuple[Part, ...]
+    tolerances: Mapping[str, str]
+    ratings: Ratings
+    targets: tuple[Target, ...]
+
+
+class Loaded(NamedTuple):
+    """Inputs, where they came from, and what was noticed on the way.
+
+    Attributes
+    ----------
+    inputs : Inputs
+        What to work with.
+    document : Document
+        The sheet; without a name if everything came from flags.
+    notes : tuple of str
+        Values that were taken, but look like slips.
+    """
+
+    inputs: Inputs
+    document: Document
+    notes: tuple[str, ...]
+
+
+def load(path: str | Path | None = None, flags: Mapping[str, str] | None = None) -> Loaded:
+    """Read a sheet, flags, or a sheet with flags in place of some of its values.
+
+    Parameters
+    ----------
+    path : str or Path, optional
+        The sheet.
+    flags : mapping of str to str, optional
+        Option, such as ``--resistance``, to its text.
+
+    Returns
+    -------
+    Loaded
+
+    Raises
+    ------
+    SheetError
+        With everything that is wrong with the sheet, or with the flags if there is none.
+    InputError
+        If flags contradict each other.
+    """
+    given = flags or {}
+    check_flags(given)
+    if path is None:
+        from rlc.front.one_off import read_flags
+
+        return read_flags(given)
+    # The models of the sheet take longer to load than a one-off question takes to answer.
+    from rlc.front.validate import read_sheet
+
+    return read_sheet(path, given)
