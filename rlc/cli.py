@@ -108,8 +108,13 @@ def switch_on(
     suffix: Suffix = "png",
 ) -> None:
     """Show the switch-on: true peaks, settling, let-through."""
+    from rlc.render import tables
+    from rlc.solver.extrema import first_extrema
+
     found = _partial(sheet, flags, ("loop", "switch-on"))
-    pieces = [*_loop(found), *_switch_on(found)]
+    extrema = first_extrema(found.case)
+    found = replace(found, extrema=extrema)
+    pieces = [*_loop(found), *_switch_on(found), tables.extrema(extrema, found.case)]
     show(found, pieces, ("switch-on", "state-plane"), Output(as_json, plots, suffix))
 
 

@@ -14,6 +14,7 @@ from rlc.front.inputs import Loaded, load
 from rlc.render import machine
 from rlc.render.cautions import Caution, cautions
 from rlc.solver.case import Case
+from rlc.solver.extrema import Extrema
 from rlc.solver.quantities import REGISTER
 from rlc.solver.spread import Outcome, Spread, spread
 from rlc.solver.sweep import Sweep
@@ -52,6 +53,8 @@ class Review:
         What belongs beside the numbers.
     sweep : Sweep or None
         The frequency response, if it was asked for.
+    extrema : Extrema or None
+        The first turning points of the switch-on, if they were asked for.
     """
 
     loaded: Loaded
@@ -61,6 +64,7 @@ class Review:
     outcomes: tuple[Outcome, ...]
     cautions: tuple[Caution, ...]
     sweep: Sweep | None = None
+    extrema: Extrema | None = None
 
     @property
     def targets_hold(self) -> bool:
@@ -87,6 +91,8 @@ class Review:
             found["spread"] = [machine.spread(outcome) for outcome in self.outcomes]
         if self.sweep is not None:
             found["sweep"] = machine.sweep(self.sweep)
+        if self.extrema is not None:
+            found["extrema"] = machine.extrema(self.extrema)
         return found | {"cautions": machine.cautions(self.cautions)}
 
     def pictures(self, names: Iterable[str]) -> dict[str, Callable[[], Figure]]:

@@ -10,6 +10,7 @@ from typing import Any
 from rlc.front.marking import KINDS
 from rlc.render.cautions import Caution
 from rlc.solver.case import Case
+from rlc.solver.extrema import Extrema
 from rlc.solver.loop import Loop
 from rlc.solver.quantities import REGISTER, Quantity
 from rlc.solver.spread import Outcome, Part
@@ -106,6 +107,20 @@ def sweep(found: Sweep) -> dict[str, Any]:
         name: [number(value) for value in values]
         for name, values in ({"frequency": found.frequency} | columns).items()
     }
+
+
+def extrema(found: Extrema) -> list[dict[str, Any]]:
+    """Turning points in time order, and which of the two signals turns."""
+    rows = zip(found.time, found.current, found.capacitor_voltage, found.of, strict=True)
+    return [
+        {
+            "time": number(time),
+            "current": number(current),
+            "capacitor_voltage": number(voltage),
+            "of": "current" if of == "current" else "capacitor_voltage",
+        }
+        for time, current, voltage, of in rows
+    ]
 
 
 def register(rows: Iterable[Quantity]) -> list[dict[str, Any]]:

@@ -21,6 +21,7 @@ from rich.text import Text
 from rlc.front.marking import show
 from rlc.render.cautions import Caution
 from rlc.solver.case import Case
+from rlc.solver.extrema import Extrema
 from rlc.solver.loop import ELEMENTS
 from rlc.solver.quantities import REGISTER, Quantity
 from rlc.solver.search import PROVED_GAP
@@ -39,6 +40,8 @@ _ELSEWHERE = {
     "peak_inductor_voltage", "worst_closing_angle_current", "worst_closing_angle_capacitor_voltage",
 }  # fmt: skip
 _NO_ANGLE = 1e-12
+_SAME = 1e-9
+_WORDS = {"current": "current", "capacitor": "capacitor voltage"}
 _PEAKS = (("current", "current"), ("capacitor", "voltage"), ("inductor", "voltage"))
 
 
@@ -221,6 +224,21 @@ def peaks(case: Case) -> Table:
             show(amplitude, kind),
             _knowledge(float(peak.value), float(peak.time), float(peak.gap), amplitude),
         )
+    return table
+
+
+def extrema(found: Extrema, case: Case) -> Table:
+    """The first turning points, and which of them is the largest of all."""
+    angle = f", closed at {show(found.angle, 'angle')}" if case.source.kind == "sine" else ""
+    table = _table(f"First extrema{angle}", "time", "current", "capacitor voltage", "", words=0)
+    for time, current, voltage, of in zip(
+        found.time, found.current, found.capacitor_voltage, found.of, strict=True
+    ):
+        peak, value = case.peak(of), current if of == "current" else voltage
+        governs = math.isclose(abs(value), float(peak.value), rel_tol=_SAME)
+        words = f"{'largest' if governs else 'turn of the'} {_WORDS[of]}"
+        table.add_row(show(time, "time"), show(current, "current"), show(voltage, "voltage"), words)
+    table.columns[-1].justify = "left"
     return table
 
 

@@ -20,7 +20,7 @@ from rlc.solver.steady import SteadyState, steady_state
 
 Array = NDArray[np.float64]
 
-_PEAKED = ("current", "capacitor", "inductor", "dielectric")
+_PEAKED = ("current", "current_rate", "capacitor", "inductor", "dielectric")
 _FEW_LOOPS = 16
 
 
@@ -28,7 +28,8 @@ _FEW_LOOPS = 16
 class Waveforms:
     """The switch-on in time; all arrays share one shape, times on the last axis.
 
-    ``current`` [A] is the loop's; the voltages [V] are across the parts' terminals.
+    ``current`` [A] is the loop's; the voltages [V] are across the parts' terminals. The last
+    two are slopes, [A/s] and [V/s]; they follow from the states, without any difference in time.
     """
 
     time: Array
@@ -37,6 +38,8 @@ class Waveforms:
     resistor_voltage: Array
     inductor_voltage: Array
     capacitor_voltage: Array
+    current_rate: Array
+    capacitor_voltage_rate: Array
 
 
 @dataclass(frozen=True)
@@ -219,6 +222,8 @@ class Case:
             w = loop.weights(element)
             return w.capacitor_voltage * state + w.current * current + w.source * source
 
+        terminals, rate = loop.weights("capacitor"), across("current_rate")
+        a, b, _, _ = eq.matrix
         return Waveforms(
             np.broadcast_to(time, current.shape),
             source,
@@ -226,4 +231,6 @@ class Case:
             across("resistor"),
             across("inductor"),
             across("capacitor"),
+            rate,
+            terminals.capacitor_voltage * (a * state + b * current) + terminals.current * rate,
         )

@@ -138,14 +138,17 @@ class Loop:
 
         Parameters
         ----------
-        element : {"current", "resistor", "inductor", "capacitor", "dielectric"}
-            ``current`` is the loop current [A]. The voltages are those across the part's
-            terminals [V]: the inductor's includes its winding resistance, the capacitor's
-            its series resistance; ``dielectric`` is the voltage behind the latter.
+        element : {"current", "current_rate", "resistor", "inductor", "capacitor", "dielectric"}
+            ``current`` is the loop current [A], ``current_rate`` its slope [A/s]. The voltages
+            are those across the part's terminals [V]: the inductor's includes its winding
+            resistance, the capacitor's its series resistance; ``dielectric`` is the voltage
+            behind the latter.
         """
         zero, one = np.zeros(self.shape), np.ones(self.shape)
         if element == "current":
             return Weights(zero, one, zero)
+        if element == "current_rate":
+            return Weights(*self.state_matrix()[2:], one / self.total_inductance)
         if element == "resistor":
             return Weights(zero, self.resistance, zero)
         if element == "dielectric":

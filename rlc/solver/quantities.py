@@ -136,6 +136,12 @@ def _ringing(case: Case) -> Array:
     return np.where(eq.underdamped, eq.root[0] / (2 * np.pi), np.nan)
 
 
+def _beat(case: Case) -> Any:
+    if case.source.kind == "dc":
+        return np.nan
+    return np.abs(case.source.frequency - _ringing(case))
+
+
 def _until(case: Case, at: At) -> Array:
     if at is not None:
         return let_through(case, at)
@@ -331,6 +337,23 @@ _ROWS: tuple[Quantity, ...] = (
         "peak magnitude over all time, at the terminals",
         "Largest inductor voltage from closing on.", "max |v_L(t)|", _SEARCH,
         lambda c, at, across: c.peak("inductor").value,
+    ),
+    Quantity(
+        "peak_rate_of_rise", "(di/dt)_max", "current_rate", "switch-on",
+        "peak magnitude over all time", "Largest rate of change of the current from closing on.",
+        "max |di/dt|; V/L at closing for a step from rest", _SEARCH,
+        lambda c, at, across: c.peak("current_rate").value,
+    ),
+    Quantity(
+        "current_frequency_product", "i_max f_r", "current_rate", "switch-on",
+        "peak current times hertz; none if overdamped",
+        "Peak current times ringing frequency, by which switching devices are rated.",
+        "i_max f_r", _FREE, lambda c, at, across: c.peak("current").value * _ringing(c),
+    ),
+    Quantity(
+        "beat_frequency", "f_b", "frequency", "switch-on", "none if overdamped or dc",
+        "Distance of source and ringing frequency, at which their sum swells and fades.",
+        "|f - f_r|", _FREE, lambda c, at, across: _beat(c),
     ),
     Quantity(
         "worst_closing_angle_current", "phi_wi", "angle", "switch-on",

@@ -147,6 +147,7 @@ POWERS = {
     "apparent_power": (-1, 0, 2),
     "let_through": (-2, -1, 2),
     "energy": (-1, -1, 2),
+    "current_rate": (-1, 1, 1),
 }
 
 
@@ -179,7 +180,12 @@ def test_scaling_by_anything_scales_the_waveforms(case, factors):
 
 SOURCES = [constant(10.0), sine(10.0, 0.11, 0.7), sine(10.0, 0.25, None)]
 NAMED = {"ids": lambda value: value.kind if isinstance(value, Source) else None}
-RINGING_ONLY = {"ringing_frequency", "logarithmic_decrement"}
+RINGING_ONLY = {
+    "ringing_frequency",
+    "logarithmic_decrement",
+    "beat_frequency",
+    "current_frequency_product",
+}
 SMOOTH = sorted(set(REGISTER) - RINGING_ONLY)
 
 
