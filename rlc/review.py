@@ -196,7 +196,8 @@ def review(
     asked = {*quantities, *(outcome.target.quantity for outcome in outcomes)}
     # Other closings matter to an answer about the switch-on, and cost a search each.
     closings = any(REGISTER[name].group == "switch-on" for name in asked)
-    told = cautions(case, loaded.inputs.ratings, worst, closings=closings)
+    inputs = loaded.inputs
+    told = cautions(case, inputs.ratings, worst, fuse=inputs.fuse, closings=closings)
     return Review(loaded, case, quantities, batch, outcomes, told)
 
 

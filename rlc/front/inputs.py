@@ -10,7 +10,7 @@ from typing import NamedTuple
 from rlc.front.document import Document, check_flags
 from rlc.solver.case import Case
 from rlc.solver.spread import Part
-from rlc.solver.targets import Ratings, Target
+from rlc.solver.targets import Fuse, Ratings, Target
 
 
 @dataclass(frozen=True)
@@ -31,6 +31,8 @@ class Inputs:
         What the parts are made for.
     targets : tuple of Target
         The sheet's targets, then its ratings.
+    fuse : Fuse or None
+        What the let-through of a switch-on has to pass.
     """
 
     title: str
@@ -39,6 +41,7 @@ class Inputs:
     tolerances: Mapping[str, str]
     ratings: Ratings
     targets: tuple[Target, ...]
+    fuse: Fuse | None = None
 
 
 class Loaded(NamedTuple):

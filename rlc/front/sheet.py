@@ -22,7 +22,7 @@ from rlc.solver.loop import ELEMENTS, Loop, make_loop
 from rlc.solver.quantities import REGISTER
 from rlc.solver.source import Source, constant, sine
 from rlc.solver.spread import Distribution, Part
-from rlc.solver.targets import Ratings, Target
+from rlc.solver.targets import MOST_OPERATIONS, Fuse, Ratings, Target
 
 Ohms = Annotated[float, Door("resistance", "zero")]
 OhmsAbove = Annotated[float, Door("resistance", "above zero")]
@@ -114,6 +114,13 @@ class LoadTable(Table):
     resistance: OhmsAbove
 
 
+class FuseTable(Table):
+    """``[fuse]``: what melts it at once, and how often the switch closes in its life."""
+
+    melting_let_through: Annotated[float, Door("let_through", "above zero")]
+    operations: int = Field(ge=1, le=MOST_OPERATIONS, strict=True)
+
+
 class Dc(Table):
     """``[source]`` with kind = "dc"."""
 
@@ -196,6 +203,7 @@ class Sheet(Table):
     capacitor: Capacitor
     source: Annotated[Dc | Sine, Field(discriminator="kind")]
     load: LoadTable | None = None
+    fuse: FuseTable | None = None
     switch_on: SwitchOn = Field(default_factory=SwitchOn)
     target: tuple[TargetTable, ...] = ()
 
@@ -238,16 +246,20 @@ class Sheet(Table):
             capacitor_voltage=self.capacitor.rated_voltage,
             capacitor_voltage_rms=self.capacitor.rated_voltage_rms,
         )
+        case = Case(
+            self._loop(),
+            self._source(),
+            states.capacitor_voltage,  # type: ignore[arg-type]
+            states.initial_current,  # type: ignore[arg-type]
+        )
+        fuse = Fuse(self.fuse.melting_let_through, self.fuse.operations) if self.fuse else None
+        rated = ratings.targets() + ((fuse.target(case),) if fuse else ())
         return Inputs(
             self.title,
-            Case(
-                self._loop(),
-                self._source(),
-                states.capacitor_voltage,  # type: ignore[arg-type]
-                states.initial_current,  # type: ignore[arg-type]
-            ),
+            case,
             tuple(part.part() for part in parts),
             {part.field: part.tolerance.text for part in parts if part.tolerance},
             ratings,
-            tuple(row.target() for row in self.target) + ratings.targets(),
+            tuple(row.target() for row in self.target) + rated,
+            fuse,
         )

@@ -32,6 +32,8 @@ _EXAMPLES = {
     "source.voltage": '"24 V"',
     "source.frequency": '"50 Hz"',
     "load.resistance": '"10 kohm"',
+    "fuse.melting_let_through": '"0.9 A^2 s"',
+    "fuse.operations": "10000",
 }
 _SINE = 'kind = "sine", rms = "24 V", frequency = "50 Hz"'
 _LEVEL = 'Write rms = "24 V" or amplitude = "34 V"'
@@ -137,7 +139,7 @@ def _problem(error: Any, document: Document) -> tuple[KeyPath, InputError]:
     if kind in ("model_type", "model_attributes_type", "tuple_type"):
         line = f"[[{at[0]}]]" if at[0] == "target" else f"[{at[0]}]"
         return at, InputError("", value, f"must be a table, with a line {line} above its keys")
-    return at, InputError("", value, error["msg"][:1].lower() + error["msg"][1:])
+    return at, InputError("", value, error["msg"].replace("Input should be", "must be"))
 
 
 def _missing(at: KeyPath) -> tuple[KeyPath, InputError]:

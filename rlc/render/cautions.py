@@ -16,7 +16,7 @@ from rlc.render.findings import ELV_AC_PEAK, ELV_DC, Findings, Size, exceeds, pe
 from rlc.solver.case import Case
 from rlc.solver.quantities import REGISTER
 from rlc.solver.steady import half_power_frequencies
-from rlc.solver.targets import Ratings
+from rlc.solver.targets import Fuse, Ratings
 
 # NEC 460.6: 50 V or less within 1 min, for capacitors up to 1000 V (600 V in older editions);
 # above, 5 min in the California Code of Regulations, Title 8, section 2893: both confirmed.
@@ -39,7 +39,6 @@ CONTACT_CURRENT = 1.0  # what small contacts, connectors and fuses are made for 
 ARC_ENERGY = 1e-3  # in the inductance, when the loop is opened [J]
 NOTABLE_RISE = 1.01  # smaller differences between two closings are not worth a sentence
 
-_LET_THROUGH_TIME_CONSTANTS = 5.0
 _SAME_ANGLE = math.radians(1.0)
 _NO_RATINGS = Ratings()
 
@@ -65,6 +64,7 @@ def cautions(
     ratings: Ratings = _NO_RATINGS,
     worst: Mapping[str, float] | None = None,
     *,
+    fuse: Fuse | None = None,
     closings: bool = True,
 ) -> tuple[Caution, ...]:
     """Cautions that this loop calls for, the most hazardous first.
@@ -78,6 +78,8 @@ def cautions(
     worst : mapping of str to float, optional
         Highest value over the parts' tolerances, by name in the register of quantities [SI
         unit of the quantity]. Where one is missing or not a number, the nominal value stands.
+    fuse : Fuse, optional
+        What the let-through has to pass.
     closings : bool
         Whether other closings than the one asked for are compared: the worst angles, and
         closing onto a charged capacitor.
@@ -92,7 +94,7 @@ def cautions(
     Voltages and currents are peak values unless rms is said. Under a sine up to four more peak
     searches are made: at the worst closing angles, and onto a charged capacitor.
     """
-    found = Findings(case, ratings, worst or {})
+    found = Findings(case, ratings, worst or {}, fuse)
     rules = (row for row in _RULES if closings or row[0] not in _CLOSINGS)
     told = ((name, rule(found)) for name, rule in rules)
     return tuple(Caution(name, text) for name, text in told if text)
@@ -258,7 +260,7 @@ def _inrush(found: Findings) -> str:
     amplitude = f" (steady amplitude {show(steady, 'current')})" if found.sine else ""
     told = [
         f"Peak current at switch-on: {peak}{amplitude}."
-        f" Contacts, connectors and fuses carry it{_let_through(found)}."
+        f" Contacts, connectors and fuses carry it{found.let_through}."
     ]
     if found.ratings.inductor_saturation is None:
         told.append(
@@ -268,18 +270,18 @@ def _inrush(found: Findings) -> str:
     return " ".join(told)
 
 
-def _let_through(found: Findings) -> str:
-    """The end of a sentence on what a fuse lets through, where that is bounded."""
-    entry, case = REGISTER["let_through"], found.case
-    passed, when = float(entry(case)), "over all time"
-    if found.sine:
-        when = "in the first source period"
-    elif math.isinf(passed) and math.isfinite(found.quality):
-        until = _LET_THROUGH_TIME_CONSTANTS * float(REGISTER["time_constant"](case))
-        passed, when = float(entry(case, until)), f"in the first {show(until, 'time')}"
-    if not math.isfinite(passed):
+def _fuse(found: Findings) -> str:
+    fuse = found.fuse
+    if fuse is None:
         return ""
-    return f"; the let-through is {show(passed, 'let_through')} {when}"
+    target = fuse.target(found.case)
+    passed = show(float(target.values(found.case)), "let_through")
+    melting = show(fuse.melting_let_through, "let_through")
+    return (
+        f"The fuse melts at {melting}; the let-through of one switch-on is {passed}. For"
+        f" {fuse.operations} operations practice allows {show(fuse.share, 'ratio')} of what"
+        f" melts it, {show(target.maximum, 'let_through')}: the maker's pulse curve governs."
+    )
 
 
 def _interrupting(found: Findings) -> str:
@@ -399,6 +401,7 @@ _RULES: tuple[tuple[str, Callable[[Findings], str]], ...] = (
     ("resonance", _resonance),
     ("saturation", _saturation),
     ("inrush", _inrush),
+    ("fuse", _fuse),
     ("closing-angle", _closing_angle),
     ("trapped-charge", _trapped_charge),
     ("model-limits", _model_limits),

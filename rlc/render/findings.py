@@ -19,7 +19,7 @@ from rlc.solver.case import Case
 from rlc.solver.loop import Loop
 from rlc.solver.quantities import REGISTER
 from rlc.solver.source import Source
-from rlc.solver.targets import Ratings
+from rlc.solver.targets import Fuse, Ratings
 
 # Upper limits of extra-low voltage, IEC 61140 and IEC 61558-1: confirmed.
 ELV_AC_RMS = 50.0
@@ -42,6 +42,7 @@ SMALL_ENERGY = 0.35
 _ROUNDING = 1e-9
 # Above this quality factor, which no real loop has, one search takes seconds.
 _SEARCHED_QUALITY = 1e5
+_LET_THROUGH_TIME_CONSTANTS = 5.0
 # At resonance a sharp loop's rotating and free parts come to S (1 - exp(-a t)) and
 # k S exp(-a t): no closing angle and no charge below S lifts their sum by a per cent, and
 # being flat it takes long to search. As shares of the bandwidth:
@@ -79,6 +80,7 @@ class Findings:
     case: Case
     ratings: Ratings
     worst: Mapping[str, float]
+    fuse: Fuse | None = None
 
     @property
     def loop(self) -> Loop:
@@ -220,3 +222,17 @@ class Findings:
             return math.nan
         name = "current" if element == "current" else "capacitor_voltage"
         return float(REGISTER[f"worst_closing_angle_{name}"](self.worst_closing))
+
+    @property
+    def let_through(self) -> str:
+        """The end of a sentence on what a fuse lets through, where that is bounded."""
+        entry, case = REGISTER["let_through"], self.case
+        passed, when = float(entry(case)), "over all time"
+        if self.sine:
+            when = "in the first source period"
+        elif math.isinf(passed) and math.isfinite(self.quality):
+            until = _LET_THROUGH_TIME_CONSTANTS * float(REGISTER["time_constant"](case))
+            passed, when = float(entry(case, until)), f"in the first {show(until, 'time')}"
+        if not math.isfinite(passed):
+            return ""
+        return f"; the let-through is {show(passed, 'let_through')} {when}"

@@ -199,6 +199,21 @@ def test_all_errors_come_at_once_each_with_its_line(tmp_path: Path) -> None:
             'distribution = "triangular"',
             "2: resistor: distribution = 'triangular': needs a tolerance",
         ),
+        (
+            "[source]",
+            '[fuse]\nmelting_let_through = "2 A"\noperations = 10\n[source]',
+            "21: fuse.melting_let_through = '2 A': is in A, a unit of current",
+        ),
+        (
+            "[source]",
+            '[fuse]\nmelting_let_through = "2 A^2 s"\noperations = 200000\n[source]',
+            "22: fuse.operations = 200000: must be less than or equal to 100000",
+        ),
+        (
+            "[source]",
+            '[fuse]\nmelting_let_through = "2 A^2 s"\n[source]',
+            "20: fuse.operations: is missing. Write below [fuse] operations = 10000",
+        ),
         ('"Buoy light"', '"a\\u001b[31mb"', "1: title = 'a\\x1b[31mb': must be one line"),
         ("[switch_on]", "[switch_on", "26: is no TOML: expected ']' at the end of a table"),
     ],

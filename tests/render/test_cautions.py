@@ -6,9 +6,10 @@ import pytest
 from hand import holds, loop, lossless, printed, resonant, slow, told
 from scipy.integrate import solve_ivp
 
+from rlc.render.cautions import cautions
 from rlc.solver.case import Case
 from rlc.solver.source import constant, sine
-from rlc.solver.targets import Ratings
+from rlc.solver.targets import Fuse, Ratings
 
 ROOT2 = math.sqrt(2)
 
@@ -344,3 +345,20 @@ def test_inrush_speaks_of_notable_currents_only():
     assert "inrush" in told(Case(lossless(1e-6, 1e-6), constant(1.01)))
     # started at its resonance a loop creeps up to its steady amplitude: no inrush
     assert "inrush" not in told(resonant(10, 100.0))
+
+
+def test_a_fuse_is_held_against_the_let_through_of_one_switch_on():
+    # C V^2/(2 R) = 100 uF * 24^2 / (2 * 0.1 ohm) = 0.288 A^2 s.
+    case = Case(loop(resistance=0.1, inductance=1e-6, capacitance=100e-6), constant(24.0))
+    (text,) = [each.text for each in cautions(case, fuse=Fuse(0.9, 10_000)) if each.id == "fuse"]
+    assert holds(text, "A^2 s", 0.288)
+    assert holds(text, "A^2 s", 0.29 * 0.9)
+    assert "the maker's pulse curve governs" in text
+    assert "fuse" not in told(case)
+
+
+def test_other_closings_are_left_out_where_they_were_not_asked_for():
+    case = Case(loop(resistance=0.1, inductance=1e-3, capacitance=100e-6), sine(325.0, 50.0))
+    every = {each.id for each in cautions(case)}
+    some = {each.id for each in cautions(case, closings=False)}
+    assert every - some == {"closing-angle", "trapped-charge"}

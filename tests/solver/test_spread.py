@@ -14,7 +14,7 @@ from rlc.solver.loop import make_loop
 from rlc.solver.quantities import REGISTER
 from rlc.solver.source import constant, sine
 from rlc.solver.spread import Part, spread, yield_interval
-from rlc.solver.targets import Ratings, Target
+from rlc.solver.targets import Fuse, Ratings, Target
 
 RESISTOR = Part("resistance", 10.0, 9.0, 12.0)
 INDUCTOR = Part("inductance", 1e-3, 0.8e-3, 1.1e-3)
@@ -206,3 +206,23 @@ def test_targets_refuse_what_makes_no_sense() -> None:
         Target("bandwith", maximum=1.0)
     with pytest.raises(InputError, match="is above max"):
         Target("bandwidth", minimum=2.0, maximum=1.0)
+
+
+@pytest.mark.parametrize(
+    ("operations", "share"),
+    [(1, 0.48), (100, 0.48), (1000, 0.38), (10_000, 0.29), (100_000, 0.22), (31_623, 0.255)],
+)
+def test_a_fuse_allows_less_for_more_pulses(operations: int, share: float) -> None:
+    """Common practice in fuse makers' guides, no source; half way in the logarithm, half way."""
+    fuse = Fuse(0.5, operations)
+    target = fuse.target(nominal())
+    assert fuse.share == pytest.approx(share, abs=1e-6)
+    assert target.maximum == pytest.approx(share * 0.5, abs=1e-6)
+    assert (target.quantity, target.at) == ("let_through", None)
+
+
+def test_a_fuse_in_a_loop_with_a_load_is_held_against_the_pulse_alone() -> None:
+    loaded = make_loop(resistance=10.0, inductance=1e-3, capacitance=1e-6, load_resistance=1e4)
+    target = Fuse(0.5, 100).target(Case(loaded, constant(5.0)))
+    # Five time constants of 2/gamma, gamma = R/L + 1/(R_load C).
+    assert target.at == pytest.approx(5 * 2 / (1e4 + 100), rel=1e-12)
