@@ -17,20 +17,11 @@ import numpy as np
 from numpy.typing import NDArray
 
 from rlc.errors import InputError
+from rlc.solver import results
 from rlc.solver.case import Case
 from rlc.solver.loop import ELEMENTS
-from rlc.solver.steady import (
-    SteadyState,
-    capacitor_voltage_maximum,
-    half_power_frequencies,
-)
-from rlc.solver.transient import (
-    let_through,
-    logarithmic_decrement,
-    overshoot,
-    settling_time,
-    total_let_through,
-)
+from rlc.solver.steady import capacitor_voltage_maximum, half_power_frequencies
+from rlc.solver.transient import logarithmic_decrement, overshoot, settling_time
 
 Array = NDArray[np.float64]
 At = float | Array | None
@@ -114,57 +105,6 @@ class Quantity:
         return np.broadcast_to(value, np.broadcast_shapes(shape, value.shape))
 
 
-def _steady(case: Case, at: At) -> SteadyState:
-    return case.steady if at is None else case.steady_at(at)
-
-
-def _phasor_current(case: Case, at: At) -> Any:
-    return np.abs(case.source.amplitude) * _steady(case, at).current
-
-
-def _rms(case: Case, phasor: Any) -> Any:
-    return np.abs(phasor) * np.abs(case.source.amplitude) * case.source.rms_per_amplitude
-
-
-def _apparent(case: Case, at: At) -> Any:
-    """Complex power, real plus j reactive, from rms values."""
-    return np.conj(_steady(case, at).current) * case.source.rms**2
-
-
-def _ringing(case: Case) -> Array:
-    eq = case.equation
-    return np.where(eq.underdamped, eq.root[0] / (2 * np.pi), np.nan)
-
-
-def _beat(case: Case) -> Any:
-    if case.source.kind == "dc":
-        return np.nan
-    return np.abs(case.source.frequency - _ringing(case))
-
-
-def _until(case: Case, at: At) -> Array:
-    if at is not None:
-        return let_through(case, at)
-    if case.source.kind == "dc":
-        return total_let_through(case)
-    return let_through(case, 1.0 / case.source.frequency)
-
-
-def _peak_time(case: Case, element: str) -> Array:
-    time = case.peak(element).time
-    return np.where(np.isfinite(time), time, np.nan)
-
-
-def _worst_angle(case: Case, element: str) -> Array:
-    if not case.source.worst_angle:
-        return np.full(case.loop.shape, np.nan)
-    return np.where(np.isfinite(case.peak(element).time), case.closing_angle_for(element), np.nan)
-
-
-def _resistor_power(case: Case, at: At) -> Any:
-    return _rms(case, _steady(case, at).current) ** 2 * case.loop.resistance
-
-
 _ROWS: tuple[Quantity, ...] = (
     Quantity(
         "natural_frequency", "f_0", "frequency", "loop", "undamped",
@@ -176,7 +116,7 @@ _ROWS: tuple[Quantity, ...] = (
         "ringing_frequency", "f_r", "frequency", "loop", "damped; none if overdamped",
         "Frequency at which the loop rings after a disturbance.",
         "sqrt(omega_0^2 - gamma^2/4)/(2 pi)", _FREE,
-        lambda c, at, across: _ringing(c),
+        lambda c, at, across: results.ringing(c),
     ),
     Quantity(
         "damping_ratio", "zeta", "number", "loop", "1 is critical",
@@ -189,20 +129,22 @@ _ROWS: tuple[Quantity, ...] = (
         lambda c, at, across: 0.5 / c.equation.damping_ratio,
     ),
     Quantity(
-        "bandwidth", "B", "frequency", "loop", "half power",
+        "bandwidth", "B", "frequency", "loop", "half power, all losses and the load included",
         "Distance of the two half-power frequencies.", "gamma/(2 pi); without a load R/(2 pi L)",
         _AC, lambda c, at, across: c.equation.gamma / (2 * np.pi),
     ),
     Quantity(
-        "lower_half_power_frequency", "f_1", "frequency", "loop", "half power",
-        "Frequency below resonance at which the current is 1/sqrt(2) of its maximum"
-        " (with a load: the equation's power response).",
+        "lower_half_power_frequency", "f_1", "frequency", "loop",
+        "half power of the capacitor's own current",
+        "Frequency below resonance at which the capacitor's own current, without a load the"
+        " loop's, is 1/sqrt(2) of its maximum.",
         "f_0^2/f_2", _AC, lambda c, at, across: half_power_frequencies(c.equation)[0],
     ),
     Quantity(
-        "upper_half_power_frequency", "f_2", "frequency", "loop", "half power",
-        "Frequency above resonance at which the current is 1/sqrt(2) of its maximum"
-        " (with a load: the equation's power response).",
+        "upper_half_power_frequency", "f_2", "frequency", "loop",
+        "half power of the capacitor's own current",
+        "Frequency above resonance at which the capacitor's own current, without a load the"
+        " loop's, is 1/sqrt(2) of its maximum.",
         "(sqrt(omega_0^2 + gamma^2/4) + gamma/2)/(2 pi)", _AC,
         lambda c, at, across: half_power_frequencies(c.equation)[1],
     ),
@@ -212,17 +154,16 @@ _ROWS: tuple[Quantity, ...] = (
         lambda c, at, across: np.sqrt(c.loop.total_inductance / c.loop.capacitance),
     ),
     Quantity(
-        "time_constant", "tau", "time", "loop", "of the ringing's envelope",
-        "Time in which the ringing falls to 1/e.", "2/gamma; without a load 2 L/R", _FREE,
-        lambda c, at, across: 2.0 / c.equation.gamma,
+        "time_constant", "tau", "time", "loop", "of the envelope; overdamped: of the slow part",
+        "Time in which what lasts longest of the transient falls to 1/e.",
+        "2/gamma, without a load 2 L/R; overdamped 1/|s_1|", _FREE,
+        lambda c, at, across: results.time_constant(c),
     ),
     Quantity(
         "logarithmic_decrement", "Lambda", "number", "loop", "natural logarithm",
         "Logarithm of the ratio of one swing to the next on the same side.",
         "gamma/(2 f_r)", _FREE,
-        lambda c, at, across: np.where(
-            c.equation.underdamped, logarithmic_decrement(c.equation), np.nan
-        ),
+        lambda c, at, across: np.where(results.rings(c), logarithmic_decrement(c.equation), np.nan),
     ),
     Quantity(
         "capacitor_voltage_maximum_frequency", "f_C", "frequency", "loop", "zero if none",
@@ -234,81 +175,84 @@ _ROWS: tuple[Quantity, ...] = (
         "impedance", "|Z|", "resistance", "steady", "magnitude",
         "Magnitude of all that the source's inner voltage meets, its own impedance included.",
         "|R + j(omega L - 1/(omega C))| without a load", _AC,
-        lambda c, at, across: np.abs(_steady(c, at).impedance), "frequency",
+        lambda c, at, across: np.abs(results.steady_at(c, at).impedance), "frequency",
     ),
     Quantity(
         "impedance_phase", "arg Z", "angle", "steady", "positive: inductive",
         "Angle by which the source voltage leads the current.", "arg Z", _AC,
-        lambda c, at, across: np.angle(_steady(c, at).impedance), "frequency",
+        lambda c, at, across: np.angle(results.steady_at(c, at).impedance), "frequency",
     ),
     Quantity(
         "current", "I", "current", "steady", "rms", "Loop current.", "V/|Z|", _AC,
-        lambda c, at, across: _rms(c, _steady(c, at).current), "frequency",
+        lambda c, at, across: results.rms(c, results.steady_at(c, at).current), "frequency",
     ),
     Quantity(
         "current_amplitude", "I_pk", "current", "steady", "peak, steady state",
         "Amplitude of the loop current when the transient has died.", "V_pk/|Z|", _AC,
-        lambda c, at, across: np.abs(_phasor_current(c, at)), "frequency",
+        lambda c, at, across: np.abs(results.phasor_current(c, at)), "frequency",
     ),
     Quantity(
         "current_phase", "phi_i", "angle", "steady", "negative: the current lags the source",
         "Phase of the current against the source.", "-arg Z", _AC,
-        lambda c, at, across: np.angle(_steady(c, at).current), "frequency",
+        lambda c, at, across: np.angle(results.steady_at(c, at).current), "frequency",
     ),
     Quantity(
         "resistor_voltage", "V_R", "voltage", "steady", "rms", "Voltage across the resistor.",
-        "R I", _AC, lambda c, at, across: _rms(c, _steady(c, at).resistor), "frequency",
+        "R I", _AC, lambda c, at, across: results.rms(c, results.steady_at(c, at).resistor),
+        "frequency",
     ),
     Quantity(
         "inductor_voltage", "V_L", "voltage", "steady", "rms, winding resistance included",
         "Voltage across the inductor's terminals.", "|R_w + j omega L| I", _AC,
-        lambda c, at, across: _rms(c, _steady(c, at).inductor), "frequency",
+        lambda c, at, across: results.rms(c, results.steady_at(c, at).inductor), "frequency",
     ),
     Quantity(
         "capacitor_voltage", "V_C", "voltage", "steady", "rms, series resistance included",
         "Voltage across the capacitor's terminals.", "|r + 1/(j omega C)| I without a load",
-        _AC, lambda c, at, across: _rms(c, _steady(c, at).capacitor), "frequency",
+        _AC, lambda c, at, across: results.rms(c, results.steady_at(c, at).capacitor), "frequency",
     ),
     Quantity(
         "capacitor_voltage_amplitude", "V_C,pk", "voltage", "steady", "peak, steady state",
         "Amplitude of the capacitor's terminal voltage when the transient has died.",
         "sqrt(2) V_C for a sine", _AC,
-        lambda c, at, across: np.abs(c.source.amplitude * _steady(c, at).capacitor), "frequency",
+        lambda c, at, across: np.abs(c.source.amplitude * results.steady_at(c, at).capacitor),
+        "frequency",
     ),
     Quantity(
         "resistor_power", "P_R", "power", "steady", "mean", "Heat in the resistor alone.",
-        "R I^2", _AC, lambda c, at, across: _resistor_power(c, at), "frequency",
+        "R I^2", _AC, lambda c, at, across: results.resistor_power(c, at), "frequency",
     ),
     Quantity(
         "real_power", "P", "power", "steady", "mean, all losses of the loop",
         "Power that the source delivers.", "V I cos(phi_i)", _AC,
-        lambda c, at, across: np.real(_apparent(c, at)), "frequency",
+        lambda c, at, across: np.real(results.apparent(c, at)), "frequency",
     ),
     Quantity(
         "reactive_power", "Q_r", "reactive_power", "steady", "positive: inductive",
         "Reactive power that the source delivers.", "-V I sin(phi_i)", _AC,
-        lambda c, at, across: np.imag(_apparent(c, at)), "frequency",
+        lambda c, at, across: np.imag(results.apparent(c, at)), "frequency",
     ),
     Quantity(
         "apparent_power", "S", "apparent_power", "steady", "rms times rms",
         "Source voltage times current.", "V I", _AC,
-        lambda c, at, across: np.abs(_apparent(c, at)), "frequency",
+        lambda c, at, across: np.abs(results.apparent(c, at)), "frequency",
     ),
     Quantity(
         "power_factor", "cos phi", "number", "steady", "unsigned; see current_phase",
         "Real over apparent power.", "P/S", _AC,
-        lambda c, at, across: np.real(_apparent(c, at)) / np.abs(_apparent(c, at)), "frequency",
+        lambda c, at, across: np.real(results.apparent(c, at)) / np.abs(results.apparent(c, at)),
+        "frequency",
     ),
     Quantity(
         "voltage_magnification", "m", "number", "steady", "amplitude over amplitude",
         "Capacitor voltage over source voltage; near Q at resonance.", "|V_C/V|", _AC,
-        lambda c, at, across: np.abs(_steady(c, at).capacitor), "frequency",
+        lambda c, at, across: np.abs(results.steady_at(c, at).capacitor), "frequency",
     ),
     Quantity(
         "gain", "|H|", "number", "steady", "amplitude over amplitude",
         "Voltage across the named element (the capacitor if none is named) over the source's.",
         "|V_element/V|", _AC,
-        lambda c, at, across: np.abs(_steady(c, at).across(across or "capacitor")),
+        lambda c, at, across: np.abs(results.steady_at(c, at).across(across or "capacitor")),
         "frequency", True,
     ),
     Quantity(
@@ -319,7 +263,7 @@ _ROWS: tuple[Quantity, ...] = (
     Quantity(
         "peak_current_time", "t_i", "time", "switch-on", "none if only approached",
         "When the largest current flows.", "arg max |i(t)|", _SEARCH,
-        lambda c, at, across: _peak_time(c, "current"),
+        lambda c, at, across: results.peak_time(c, "current"),
     ),
     Quantity(
         "peak_capacitor_voltage", "v_C,max", "voltage", "switch-on",
@@ -330,7 +274,7 @@ _ROWS: tuple[Quantity, ...] = (
     Quantity(
         "peak_capacitor_voltage_time", "t_C", "time", "switch-on", "none if only approached",
         "When the capacitor voltage is largest.", "arg max |v_C(t)|", _SEARCH,
-        lambda c, at, across: _peak_time(c, "capacitor"),
+        lambda c, at, across: results.peak_time(c, "capacitor"),
     ),
     Quantity(
         "peak_inductor_voltage", "v_L,max", "voltage", "switch-on",
@@ -348,49 +292,53 @@ _ROWS: tuple[Quantity, ...] = (
         "current_frequency_product", "i_max f_r", "current_rate", "switch-on",
         "peak current times hertz; none if overdamped",
         "Peak current times ringing frequency, by which switching devices are rated.",
-        "i_max f_r", _FREE, lambda c, at, across: c.peak("current").value * _ringing(c),
+        "i_max f_r", _FREE, lambda c, at, across: c.peak("current").value * results.ringing(c),
     ),
     Quantity(
         "beat_frequency", "f_b", "frequency", "switch-on", "none if overdamped or dc",
         "Distance of source and ringing frequency, at which their sum swells and fades.",
-        "|f - f_r|", _FREE, lambda c, at, across: _beat(c),
+        "|f - f_r|", _FREE, lambda c, at, across: results.beat(c),
     ),
     Quantity(
         "worst_closing_angle_current", "phi_wi", "angle", "switch-on",
-        "from the source's rising zero; modulo half a turn from rest; none if only approached",
+        "from the source's rising zero, from rest within half a turn; none if all are as bad",
         "Closing angle of the largest current; only with closing angle \"worst\".",
         "90 deg - arg Y_i(t_i)", _SEARCH,
-        lambda c, at, across: _worst_angle(c, "current"),
+        lambda c, at, across: results.worst_angle(c, "current"),
     ),
     Quantity(
         "worst_closing_angle_capacitor_voltage", "phi_wC", "angle", "switch-on",
-        "from the source's rising zero; modulo half a turn from rest; none if only approached",
+        "from the source's rising zero, from rest within half a turn; none if all are as bad",
         "Closing angle of the largest capacitor voltage; only with closing angle \"worst\".",
         "90 deg - arg Y_C(t_C)", _SEARCH,
-        lambda c, at, across: _worst_angle(c, "capacitor"),
+        lambda c, at, across: results.worst_angle(c, "capacitor"),
     ),
     Quantity(
         "overshoot", "o", "ratio", "switch-on", "share of the step, or of the steady amplitude",
         "How far the capacitor voltage passes its steady state.",
-        "exp(-pi zeta/sqrt(1 - zeta^2)) for a step from rest", _STEP,
+        "exp(-pi zeta/sqrt(1 - zeta^2)) for a step from rest without series resistance", _STEP,
         lambda c, at, across: overshoot(c),
     ),
     Quantity(
-        "settling_time", "t_s", "time", "switch-on", "band 2 % unless stated with at",
+        "settling_time", "t_s", "time", "switch-on",
+        "band 2 % unless stated with at, of the step or the steady amplitude; worst angle:"
+        " that of the capacitor voltage",
         "Last time at which the capacitor voltage's transient is at or outside the band.",
-        "last t with |v_C - steady| >= band * steady amplitude", _STEP,
+        "last t with |v_C - steady| >= band * (step or steady amplitude)", _STEP,
         lambda c, at, across: settling_time(c, SETTLING_BAND if at is None else at), "ratio",
     ),
     Quantity(
         "let_through", "J", "let_through", "switch-on",
-        "to the stated time; else over all time (dc) or the first source period (sine)",
+        "to the stated time; else over all time (dc) or the first source period (sine); worst"
+        " angle: its own",
         "Integral of the squared current, what a fuse or contact must pass.",
         "integral of i^2 dt; C V^2/(2 R) for a step from rest without a load", _STEP,
-        lambda c, at, across: _until(c, at), "time",
+        lambda c, at, across: results.until(c, at), "time",
     ),
     Quantity(
-        "stored_energy", "W", "energy", "switch-on", "at the largest capacitor voltage",
-        "Largest energy stored in the capacitor.", "C v_max^2/2", _FREE,
+        "stored_energy", "W", "energy", "switch-on",
+        "at the largest voltage behind the series resistance",
+        "Largest energy stored in the capacitor.", "C v^2/2, v behind the series resistance", _FREE,
         lambda c, at, across: c.loop.capacitance * c.peak("dielectric").value ** 2 / 2,
     ),
 )  # fmt: skip

@@ -143,9 +143,7 @@ class Outcome:
         A value that does not exist is not inside; a share is enough when the lower end of its
         interval reaches the goal.
         """
-        if not self.target.kept(self.nominal):
-            return "fails"
-        if np.all(self.target.kept([self.worst_low, self.worst_high])):
+        if np.all(self.target.kept([self.nominal, self.worst_low, self.worst_high])):
             return "holds"
         goal, share = self.target.goal, self.share
         enough = goal is not None and share is not None and share.low >= goal

@@ -15,20 +15,21 @@ from rlc.solver.peaks import first_extremum
 Array = NDArray[np.float64]
 
 _NODES, _ITERATIONS = 16, 100
+_ANGLES, _NEWTON_STEPS = 256, 4
 
 
 def capacitor_transient(case: Case) -> tuple[Array, Array, Array]:
-    """Value and slope at closing of the capacitor voltage's free part, and its steady amplitude.
+    """Value and slope at closing of the capacitor voltage's free part, and what it settles on.
 
-    Where the closing angle is the worst one, it is that of the largest capacitor voltage.
+    The last is the steady amplitude of a sine, or the step from the voltage at closing to the
+    final one, whose size the free part has. Where the closing angle is the worst one, it is that
+    of the largest capacitor voltage.
     """
     rotating, fixed = case.signals("capacitor")
     turn = np.exp(1j * case.closing_angle_for("capacitor"))
-    return (
-        np.imag(turn * rotating.value) + np.real(fixed.value),
-        np.imag(turn * rotating.slope) + np.real(fixed.slope),
-        np.abs(rotating.steady),
-    )
+    value = np.imag(turn * rotating.value) + np.real(fixed.value)
+    slope = np.imag(turn * rotating.slope) + np.real(fixed.slope)
+    return value, slope, np.abs(value if case.source.kind == "dc" else rotating.steady)
 
 
 def settling_time(case: Case, band: float | Array = 0.02) -> Array:
@@ -39,14 +40,15 @@ def settling_time(case: Case, band: float | Array = 0.02) -> Array:
     case : Case
         One switch-on or a batch.
     band : float
-        Half width of the band, as a share of the steady amplitude (of the final value for a
-        constant source) [1].
+        Half width of the band, as a share of the steady amplitude; for a constant source of the
+        step from the voltage at closing to the final one [1].
 
     Returns
     -------
     Array
         The last moment at which the free part is at or outside the band: infinite without
-        losses, zero if it is never outside, nan if the steady state is zero or unbounded.
+        losses, zero if it is never outside, nan if there is no step, or if the steady state is
+        zero or unbounded.
     """
     value, slope, steady = np.broadcast_arrays(*capacitor_transient(case))
     with np.errstate(invalid="ignore"):
@@ -164,7 +166,7 @@ def let_through(case: Case, until: Any) -> Array:
     Parameters
     ----------
     case : Case
-        One switch-on or a batch; with the worst closing angle, that of the largest current.
+        One switch-on or a batch; with the worst closing angle, the one that lets through most.
     until : array_like
         End of the integral, zero or more; broadcasts against the batch [s].
     """
@@ -185,19 +187,46 @@ def let_through(case: Case, until: Any) -> Array:
     for k in range(doublings):
         step = _propagator(eq, frequency, span * 2.0**k)
         gram = gram + np.swapaxes(step, -1, -2) @ gram @ step
-    angle = case.closing_angle_for("current")
-    amplitude = case.source.amplitude
-    start = np.stack(
-        np.broadcast_arrays(
-            case.capacitor_voltage + np.zeros(shape),
-            case.initial_current,
-            amplitude * np.sin(angle),
-            amplitude * np.cos(angle),
-        ),
-        axis=-1,
+    amplitude = np.broadcast_to(case.source.amplitude, shape)
+    rest = np.zeros(shape)
+    states = np.stack(
+        [case.capacitor_voltage + rest, case.initial_current + rest, rest, rest], axis=-1
     )
-    passed: Array = np.einsum("...i,...ij,...j->...", start, gram, start)
-    return passed
+    # In the closing angle the integral is a constant and waves of one and two turns.
+    own = np.einsum("...i,...ij,...j->...", states, gram, states)
+    once = 2 * amplitude[..., np.newaxis] * np.einsum("...i,...ij->...j", states, gram)[..., 2:]
+    in_phase, quadrature = (gram[..., k, k] * amplitude**2 for k in (2, 3))
+    mixed = gram[..., 2, 3] * amplitude**2
+    waves = (once[..., 1], once[..., 0], (quadrature - in_phase) / 2, mixed)
+    level = own + (in_phase + quadrature) / 2
+    angle = case.source.closing_angle
+    passed: Array = level + (_wave(waves, angle) if angle is not None else _highest_wave(waves))
+    return np.maximum(passed, 0.0)
+
+
+def _wave(waves: tuple[Array, ...], angle: Array) -> Any:
+    cosine, sine, double_cosine, double_sine = waves
+    return (
+        cosine * np.cos(angle)
+        + sine * np.sin(angle)
+        + double_cosine * np.cos(2 * angle)
+        + double_sine * np.sin(2 * angle)
+    )
+
+
+def _highest_wave(waves: tuple[Array, ...]) -> Any:
+    """Largest value over a turn: on a grid, then by Newton's method."""
+    columns = tuple(np.asarray(wave)[..., np.newaxis] for wave in waves)
+    grid = np.linspace(0, 2 * np.pi, _ANGLES, endpoint=False)
+    best = grid[np.argmax(_wave(columns, grid), axis=-1)]
+    cosine, sine, double_cosine, double_sine = waves
+    for _ in range(_NEWTON_STEPS):
+        slope = _wave((sine, -cosine, 2 * double_sine, -2 * double_cosine), best)
+        bend = -_wave((cosine, sine, 4 * double_cosine, 4 * double_sine), best)
+        with np.errstate(divide="ignore", invalid="ignore"):
+            step = np.where(bend < 0, slope / bend, 0.0)
+        best = best - np.clip(step, -2 * np.pi / _ANGLES, 2 * np.pi / _ANGLES)
+    return np.maximum(_wave(waves, best), np.max(_wave(columns, grid), axis=-1))
 
 
 def _current_row(eq: Equation, frequency: Array, time: Array) -> Array:

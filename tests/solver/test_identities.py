@@ -207,6 +207,9 @@ def test_nothing_jumps_at_critical_damping(source, states, name):
     near_root = name.endswith("_time") or "worst" in name
     allowed = np.sqrt(PROVED_GAP) if near_root and source.kind == "sine" else 100 * step
     allowed = allowed if source.kind == "dc" else max(allowed, 2 * PROVED_GAP)
+    if name == "time_constant":
+        # The slow root leaves the double one as zeta - sqrt(zeta^2 - 1), about sqrt(2 step).
+        allowed = 1.1 * np.sqrt(2 * step)
     assert abs(below - critical) <= allowed * max(abs(critical), 1.0)
     assert abs(above - critical) <= allowed * max(abs(critical), 1.0)
 

@@ -160,7 +160,9 @@ def test_verdicts() -> None:
     # 99 % of the samples hold, so the interval's lower end is below 99 %.
     assert verdict("bandwidth", most, 0.99) == "fails"
     assert verdict("bandwidth", most, None) == "fails"
-    assert verdict("bandwidth", np.nextafter(middle, 0), 0.01) == "fails"
+    # The nominal unit is one of many: where some may miss, so may it.
+    assert verdict("bandwidth", np.nextafter(middle, 0), 0.01) == "holds by yield"
+    assert verdict("bandwidth", np.nextafter(middle, 0), None) == "fails"
 
 
 def test_a_quantity_that_does_not_exist_for_every_unit_fails() -> None:

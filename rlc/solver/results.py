@@ -1,0 +1,81 @@
+"""What the register's rows compute, where one expression does not say it."""
+
+from __future__ import annotations
+
+from typing import Any
+
+import numpy as np
+from numpy.typing import NDArray
+
+from rlc.solver.case import Case
+from rlc.solver.steady import SteadyState
+from rlc.solver.transient import let_through, total_let_through
+
+Array = NDArray[np.float64]
+
+# A damping ratio of one but for two units in the last place.
+_CRITICAL = np.sqrt(4 * np.finfo(np.float64).eps)
+
+
+def steady_at(case: Case, at: Any) -> SteadyState:
+    return case.steady if at is None else case.steady_at(at)
+
+
+def phasor_current(case: Case, at: Any) -> Any:
+    return np.abs(case.source.amplitude) * steady_at(case, at).current
+
+
+def rms(case: Case, phasor: Any) -> Any:
+    return np.abs(phasor) * np.abs(case.source.amplitude) * case.source.rms_per_amplitude
+
+
+def apparent(case: Case, at: Any) -> Any:
+    """Complex power, real plus j reactive, from rms values."""
+    return np.conj(steady_at(case, at).current) * case.source.rms**2
+
+
+def rings(case: Case) -> Any:
+    """Whether it rings by more than the rounding of parts that are meant to be critical."""
+    eq = case.equation
+    return eq.underdamped & (eq.root[0] > _CRITICAL * eq.natural)
+
+
+def ringing(case: Case) -> Array:
+    return np.where(rings(case), case.equation.root[0] / (2 * np.pi), np.nan)
+
+
+def beat(case: Case) -> Any:
+    if case.source.kind == "dc":
+        return np.nan
+    return np.abs(case.source.frequency - ringing(case))
+
+
+def time_constant(case: Case) -> Any:
+    eq = case.equation
+    return 1.0 / np.where(eq.underdamped, eq.damping, eq.slow)
+
+
+def until(case: Case, at: Any) -> Array:
+    if at is not None:
+        return let_through(case, at)
+    if case.source.kind == "dc":
+        return total_let_through(case)
+    return let_through(case, 1.0 / case.source.frequency)
+
+
+def peak_time(case: Case, element: str) -> Array:
+    time = case.peak(element).time
+    return np.where(np.isfinite(time), time, np.nan)
+
+
+def worst_angle(case: Case, element: str) -> Array:
+    if not case.source.worst_angle:
+        return np.full(case.loop.shape, np.nan)
+    time = case.peak(element).time
+    # Where it is only approached, or is the state at closing, every angle is as bad.
+    some = np.isfinite(time) & (time > 0)
+    return np.where(some, case.closing_angle_for(element), np.nan)
+
+
+def resistor_power(case: Case, at: Any) -> Any:
+    return rms(case, steady_at(case, at).current) ** 2 * case.loop.resistance
