@@ -126,7 +126,7 @@ def sweep(
     sheet: Sheet = None,
     start: Annotated[str | None, typer.Option(metavar="VALUE", help="First frequency.")] = None,
     stop: Annotated[str | None, typer.Option(metavar="VALUE", help="Last frequency.")] = None,
-    points: Annotated[int, typer.Option(help="Steps between them, of equal ratio.")] = 25,
+    points: Annotated[int, typer.Option(help="Rows at equal ratios between them.")] = 25,
     as_json: Json = False,
     plots: Plots = None,
     suffix: Suffix = "png",
@@ -220,12 +220,9 @@ def quantities(
     With a name: its unit, convention, definition, formula and published source.
     """
     from rlc.render import machine, tables
-    from rlc.review import unknown_quantity
-    from rlc.solver.quantities import REGISTER
+    from rlc.solver.quantities import REGISTER, lookup
 
-    if name is not None and name not in REGISTER:
-        raise unknown_quantity(name, "NAME")
-    rows = list(REGISTER.values()) if name is None else [REGISTER[name]]
+    rows = list(REGISTER.values()) if name is None else [lookup(name, "NAME")]
     if as_json:
         typer.echo(json.dumps({"quantities": machine.register(rows)}, indent=2))
     else:

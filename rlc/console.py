@@ -61,6 +61,10 @@ def guarded(command: Callable[..., None]) -> Callable[..., None]:
         except BrokenPipeError:
             # Whoever read the output has seen enough; nothing may be flushed at exit.
             os.dup2(os.open(os.devnull, os.O_WRONLY), sys.stdout.fileno())
+        except OSError as error:
+            typer.echo(f"The answer cannot be written: {error.strerror}", err=True)
+            os.dup2(os.open(os.devnull, os.O_WRONLY), sys.stdout.fileno())
+            raise typer.Exit(BAD_INPUT) from None
 
     return call
 
@@ -105,13 +109,10 @@ def with_flags(*flags: Flag) -> Callable[[Callable[..., None]], Callable[..., No
 
 
 def read_sheet(sheet: Path | None, flags: dict[str, str]) -> Loaded:
-    """Read the sheet and say on stderr what was replaced and what looks like a slip."""
+    """Read the sheet and say on stderr what looks like a slip."""
     from rlc.front.inputs import load
 
     loaded = load(sheet, flags)
-    for each in loaded.document.replacements:
-        old = "nothing" if each.old is None else f'"{each.old}"'
-        typer.echo(f'{each.option} replaces {each.key}: {old} by "{each.new}"', err=True)
     for note in loaded.notes:
         typer.echo(f"Note: {note}", err=True)
     return loaded
@@ -131,10 +132,7 @@ def show(
     heading = [found.loaded.inputs.title] * bool(found.loaded.inputs.title)
     if found.loaded.document.name:
         heading.append(f"Sheet: {found.loaded.document.name}")
-    heading += [
-        f"Replaced: {each.key} = {each.new} (sheet: {each.old or 'nothing'})"
-        for each in found.loaded.document.replacements
-    ]
+    heading += [f"Changed: {change}" for change in found.loaded.document.changes]
     tables.write(terminal_width(), *heading, *pieces, *tables.cautions(found.cautions))
 
 
@@ -149,11 +147,11 @@ def _save(found: Review, pictures: Iterable[str], directory: Path, suffix: str) 
     drawn = {
         directory / f"{name}.{suffix}": draw for name, draw in found.pictures(pictures).items()
     }
-    for path in drawn:
-        if path.exists():
-            rule = f"would overwrite {path}"
-            raise InputError("--plots", str(directory), rule, "Name another directory")
     try:
+        for path in drawn:
+            if path.exists():
+                rule = f"would overwrite {path}"
+                raise InputError("--plots", str(directory), rule, "Name another directory")
         directory.mkdir(parents=True, exist_ok=True)
     except OSError as error:
         raise InputError("--plots", str(directory), f"cannot be made: {error.strerror}") from None

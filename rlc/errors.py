@@ -48,8 +48,10 @@ class SheetError(RlcError, ValueError):
         super().__init__(path, problems)
 
     def __str__(self) -> str:
-        places = (f"{self.path}:{line}" if line else self.path for line, _ in self.problems)
-        return "\n".join(
-            f"{place}: {error}" if place else str(error)
-            for place, (_, error) in zip(places, self.problems, strict=True)
-        )
+        return "\n".join(f"{self._place(line, error)}{error}" for line, error in self.problems)
+
+    def _place(self, line: int | None, error: InputError) -> str:
+        # What was wrong on the command line is not in the sheet.
+        if not self.path or error.name.startswith("--"):
+            return ""
+        return f"{self.path}:{line}: " if line else f"{self.path}: "

@@ -8,14 +8,13 @@ from pathlib import Path
 from typing import TYPE_CHECKING, Any
 
 from rlc import __version__
-from rlc.errors import InputError
 from rlc.front.flags import SAMPLES, SEED
 from rlc.front.inputs import Loaded, load
 from rlc.render import machine
 from rlc.render.cautions import Caution, cautions
 from rlc.solver.case import Case
 from rlc.solver.extrema import Extrema
-from rlc.solver.quantities import REGISTER
+from rlc.solver.quantities import REGISTER, lookup
 from rlc.solver.spread import Outcome, Spread, spread
 from rlc.solver.sweep import Sweep
 from rlc.solver.targets import Target
@@ -69,7 +68,8 @@ class Review:
     @property
     def targets_hold(self) -> bool:
         """Whether no target fails; a quantity without limits is no target."""
-        return all(outcome.verdict != "fails" for outcome in self.outcomes)
+        limited = (outcome for outcome in self.outcomes if outcome.target.limited)
+        return all(outcome.verdict != "fails" for outcome in limited)
 
     def document(self) -> dict[str, Any]:
         """Everything in it as one JSON document, in SI units."""
@@ -81,8 +81,8 @@ class Review:
         }
         if batch is not None:
             found |= {"seed": batch.seed, "samples": batch.count}
-        if loaded.document.replacements:
-            found["replaced"] = [each._asdict() for each in loaded.document.replacements]
+        if loaded.document.changes:
+            found["changed"] = [change._asdict() for change in loaded.document.changes]
         found["loop"] = machine.loop(self.case, loaded.inputs.parts)
         found["quantities"] = machine.quantities(self.quantities)
         if batch is not None:
@@ -124,7 +124,7 @@ class Review:
         }
         asked = list(names)
         found = {name: drawn[name] for name in asked if name in drawn}
-        if "spread" in asked and batch is not None:
+        if "spread" in asked and self.spread is not None and self.spread.count:
             for index, outcome in enumerate(self.outcomes, start=1):
                 found[f"spread-{index}-{outcome.target.quantity}"] = histogram(outcome)
         return found
@@ -216,20 +216,10 @@ def asked_targets(loaded: Loaded, names: Iterable[str]) -> tuple[Target, ...]:
     """
     targets = loaded.inputs.targets
     named = tuple(names)
-    unknown = [name for name in named if name not in REGISTER]
-    if unknown:
-        raise unknown_quantity(unknown[0], "--quantity")
+    for name in named:
+        lookup(name, "--quantity")
     if named:
         limited = {target.quantity for target in targets}
         extra = tuple(Target(name) for name in named if name not in limited)
         return tuple(target for target in targets if target.quantity in named) + extra
     return targets or tuple(Target(name) for name in USUAL)
-
-
-def unknown_quantity(name: str, where: str) -> InputError:
-    """The error for a name that is not in the register, with the nearest one that is."""
-    from difflib import get_close_matches
-
-    near = get_close_matches(name, REGISTER, 1)
-    hint = f'Did you mean "{near[0]}"?' if near else 'The names: "rlc quantities"'
-    return InputError(where, name, "is not in the register of quantities", hint)

@@ -7,6 +7,7 @@ import tomllib
 from collections.abc import Mapping
 from copy import deepcopy
 from dataclasses import dataclass, field
+from difflib import get_close_matches
 from pathlib import Path
 from typing import Any, NamedTuple
 
@@ -22,16 +23,24 @@ _NAME = r"""(?:[A-Za-z0-9_-]+|"[^"]*"|'[^']*')"""
 _DOTTED = rf"{_NAME}(?:\s*\.\s*{_NAME})*"
 _HEADER = re.compile(rf"\s*(\[\[?)\s*({_DOTTED})\s*\]")
 _KEY = re.compile(rf"\s*({_DOTTED})\s*=(.*)")
+_TUPLE = re.compile(r"\('(\w+)',\)")
 _WHERE = re.compile(r" \(at line (\d+), column (\d+)\)$")
 
 
-class Replacement(NamedTuple):
-    """A value of the sheet that a flag has replaced; `old` is None if the sheet had none."""
+class Change(NamedTuple):
+    """What a flag has done to one key of the sheet; None where there is no value."""
 
-    key: str
     option: str
+    key: str
     old: Any
-    new: str
+    new: str | None
+
+    def __str__(self) -> str:
+        if self.old is None:
+            return f'{self.option} adds {self.key} = "{self.new}"'
+        if self.new is None:
+            return f'{self.option} drops {self.key} = "{self.old}"'
+        return f'{self.option} replaces {self.key} = "{self.old}" by "{self.new}"'
 
 
 @dataclass(frozen=True)
@@ -48,15 +57,15 @@ class Document:
         Line number of each key path.
     options : dict
         The flag that a value came from, by key path.
-    replacements : tuple of Replacement
-        What flags have changed in a sheet.
+    changes : tuple of Change
+        What flags have done to a sheet.
     """
 
     name: str = ""
     data: dict[str, Any] = field(default_factory=dict)
     lines: dict[KeyPath, int] = field(default_factory=dict)
     options: dict[KeyPath, str] = field(default_factory=dict)
-    replacements: tuple[Replacement, ...] = ()
+    changes: tuple[Change, ...] = ()
 
     def line_of(self, path: KeyPath) -> int | None:
         """Line of a key, or of the nearest table around it."""
@@ -88,7 +97,7 @@ def read_document(path: str | Path) -> Document:
         data = tomllib.loads(text)
     except tomllib.TOMLDecodeError as error:
         where = _WHERE.search(str(error))
-        rule = _WHERE.sub("", str(error)).rstrip(".")
+        rule = _TUPLE.sub(r"[\1]", _WHERE.sub("", str(error)).rstrip("."))
         column = f", in column {where[2]}" if where else ""
         rule = f"is no TOML: {rule[:1].lower()}{rule[1:]}{column}"
         hint = 'Each line is a [table], or a key with a value in quotes: value = "12 ohm"'
@@ -104,7 +113,19 @@ def _levels(given: Mapping[str, str]) -> list[Flag]:
 
 
 def check_flags(given: Mapping[str, str]) -> None:
-    """Raise InputError if flags contradict each other."""
+    """Raise InputError if a flag is unknown, or if flags contradict each other.
+
+    Parameters
+    ----------
+    given : mapping of str to str
+        Option, such as ``--resistance``, to its text.
+    """
+    known = [flag.option for flag in FLAGS + TOLERANCE_FLAGS]
+    for option in given:
+        if option not in known:
+            near = get_close_matches(option, known, 1)
+            hint = f'Did you mean "{near[0]}"?' if near else ""
+            raise InputError(option, given[option], "is no flag for a value of a sheet", hint)
     levels = _levels(given)
     if len(levels) > 1:
         named = " and ".join(flag.option for flag in levels)
@@ -131,7 +152,7 @@ def with_flags(document: Document, given: Mapping[str, str]) -> Document:
     """
     levels = _levels(given)
     data, options = deepcopy(document.data), dict(document.options)
-    replacements = []
+    changes: list[Change] = []
     for flag in FLAGS + TOLERANCE_FLAGS:
         if flag.option not in given:
             continue
@@ -139,26 +160,30 @@ def with_flags(document: Document, given: Mapping[str, str]) -> Document:
         if not isinstance(table, dict):
             # An error of the sheet, reported as such when its values are read.
             continue
-        old = table.get(flag.key)
-        if flag in levels:
-            old = _replace_source(data, SOURCE_LEVELS[flag.key], old)
-        table[flag.key] = given[flag.option]
+        old, new = table.get(flag.key), given[flag.option]
+        table[flag.key] = new
         options[(flag.table, flag.key)] = flag.option
-        key = f"{flag.table}.{flag.key}"
-        replacements.append(Replacement(key, flag.option, old, given[flag.option]))
-    return Document(document.name, data, document.lines, options, tuple(replacements))
+        changes.append(Change(flag.option, f"{flag.table}.{flag.key}", old, new))
+        if flag in levels:
+            changes += _other_source(data, flag)
+    return Document(document.name, data, document.lines, options, tuple(changes))
 
 
-def _replace_source(data: dict[str, Any], kind: str, old: Any) -> Any:
-    """Make room for another level, and for another kind of source; return the level it had."""
-    table = data["source"]
-    had = [table.pop(key) for key in SOURCE_LEVELS if key in table]
-    table["kind"] = kind
+def _other_source(data: dict[str, Any], level: Flag) -> list[Change]:
+    """Drop what does not go with the level that a flag has given, and say so."""
+    kind, source, switch_on = SOURCE_LEVELS[level.key], data["source"], data.get("switch_on")
+    useless = [("source", key) for key in SOURCE_LEVELS if key != level.key]
     if kind == "dc":
-        table.pop("frequency", None)
-        if isinstance(data.get("switch_on"), dict):
-            data["switch_on"].pop("closing_angle", None)
-    return old if old is not None or not had else had[0]
+        useless += [("source", "frequency"), ("switch_on", "closing_angle")]
+    changes = []
+    if source.get("kind") not in (None, kind):
+        changes.append(Change(level.option, "source.kind", source["kind"], kind))
+    source["kind"] = kind
+    for table, key in useless:
+        holder = source if table == "source" else switch_on
+        if isinstance(holder, dict) and key in holder:
+            changes.append(Change(level.option, f"{table}.{key}", holder.pop(key), None))
+    return changes
 
 
 def _whole(path: str | Path, rule: str, hint: str = "") -> SheetError:

@@ -48,6 +48,9 @@ def read_flags(given: Mapping[str, str]) -> Loaded:
         With every flag that is missing or cannot be read.
     """
     problems: list[InputError] = []
+    if not given:
+        hint = "Name one, or give at least these flags"
+        problems.append(InputError("", None, "no sheet is named", hint))
     values: dict[str, Any] = {}
     notes: list[str] = []
     for flag in FLAGS:
@@ -111,9 +114,12 @@ def _case(values: Mapping[str, Any]) -> Case:
     if "--source-dc" in values:
         source = constant(values["--source-dc"])
     else:
-        rms = values.get("--source-rms")
-        amplitude = values["--source-amplitude"] if rms is None else rms * 2**0.5
-        source = sine(amplitude, values["--frequency"], values.get("--closing-angle", 0.0))
+        source = sine(
+            values.get("--source-amplitude"),
+            values["--frequency"],
+            values.get("--closing-angle", 0.0),
+            rms=values.get("--source-rms"),
+        )
     return Case(
         loop, source, values.get("--capacitor-voltage", 0.0), values.get("--initial-current", 0.0)
     )

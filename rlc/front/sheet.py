@@ -169,8 +169,8 @@ class TargetTable(Table):
         if info.field_name != "at":
             return Door(entry.kind).open(text)
         if entry.at is None:
-            raise InputError("", text, f"{entry.name} is not asked for at a stated value")
-        return Door(entry.at, "above zero").open(text)
+            entry.refuse(text, None, "")
+        return Door(entry.at or "", "above zero").open(text)
 
     @field_validator("goal")
     @classmethod
@@ -182,8 +182,7 @@ class TargetTable(Table):
     @model_validator(mode="after")
     def _agrees(self) -> TargetTable:
         entry = REGISTER[self.quantity]
-        if self.across is not None and not entry.across:
-            raise InputError("across", self.across, f"{entry.name} does not name an element")
+        entry.refuse(None, self.across, "")
         if self.min is None and self.max is None:
             raise InputError("min or max", None, "is missing")
         self.target()
@@ -229,11 +228,8 @@ class Sheet(Table):
     def _source(self) -> Source:
         if isinstance(self.source, Dc):
             return constant(self.source.voltage)
-        amplitude = self.source.amplitude
-        if amplitude is None:
-            assert self.source.rms is not None
-            amplitude = self.source.rms * 2**0.5
-        return sine(amplitude, self.source.frequency, self.switch_on.closing_angle)
+        level, angle = self.source, self.switch_on.closing_angle
+        return sine(level.amplitude, level.frequency, angle, rms=level.rms)
 
     def inputs(self) -> Inputs:
         """The solver's objects."""

@@ -119,7 +119,7 @@ def to_si(value: object, kind: str, name: str) -> float | NDArray[np.float64]:
 
     Parameters
     ----------
-    value : str, int, float, numpy scalar, numpy.ndarray or pint quantity
+    value : str, int, float, numpy scalar, numpy.ndarray, list, tuple or pint quantity
         Text as for `read`; numbers already in SI [unit of `kind`]; or a quantity from any pint
         registry. Any shape.
     kind, name : str
@@ -139,6 +139,8 @@ def to_si(value: object, kind: str, name: str) -> float | NDArray[np.float64]:
     if isinstance(value, str):
         return read(value, kind, name).value
     refuse = _refuser(name, value, kind)
+    if isinstance(value, list | tuple):
+        value = np.array(value)
     if all(hasattr(value, part) for part in ("magnitude", "units", "to")):
         value = _converted(value, kind, refuse)
     known = (int, float, Decimal, np.integer, np.floating)
@@ -202,8 +204,11 @@ def read_tolerance(text: str, kind: str, name: str, nominal: float | None = None
         found = _letter(line, kind, nominal, refuse)
     else:
         found = _offsets(line, kind, name, refuse)
-    part = abs(nominal or math.inf) if kind in VALUE_LETTERS else math.inf
-    if found.low <= (-1.0 if found.relative else -part):
+    known = nominal is not None and kind in VALUE_LETTERS
+    part = abs(nominal) if nominal is not None and known else math.inf
+    reaches = found.low <= (-1.0 if found.relative else -part)
+    # A value of zero may stay zero; only a wire has one.
+    if reaches and not (part == 0 and found.low == 0):
         raise refuse("would let the value reach zero")
     return found
 

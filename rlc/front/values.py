@@ -8,20 +8,19 @@ from typing import Any
 import numpy as np
 from numpy.typing import NDArray
 
-from rlc.errors import InputError
 from rlc.front.units import to_si
 from rlc.solver import case as _case
 from rlc.solver import loop as _loop
 from rlc.solver import source as _source
 from rlc.solver.case import Waveforms
-from rlc.solver.quantities import REGISTER
+from rlc.solver.quantities import lookup
 from rlc.solver.source import Source
 from rlc.solver.steady import SteadyState
 
 Array = NDArray[np.float64]
 
 
-@dataclass(frozen=True)
+@dataclass(frozen=True, eq=False)
 class Loop(_loop.Loop):
     """One series loop, or an array of them.
 
@@ -51,14 +50,11 @@ class Loop(_loop.Loop):
         for field in fields(_loop.Loop):
             value = getattr(self, field.name)
             kind = field.name.rsplit("_", 1)[-1]
-            # No load is the only infinite value that means something.
-            if not (field.name == "load_resistance" and _is_infinite(value)):
-                object.__setattr__(self, field.name, to_si(value, kind, field.name))
+            if field.name == "load_resistance" and isinstance(value, float | np.ndarray):
+                # Infinite for none, which no text can say; the solver checks the range.
+                continue
+            object.__setattr__(self, field.name, to_si(value, kind, field.name))
         super().__post_init__()
-
-
-def _is_infinite(value: Any) -> bool:
-    return isinstance(value, float) and value == float("inf")
 
 
 def constant(voltage: Any) -> Source:
@@ -91,18 +87,16 @@ def sine(
     InputError
         If both or neither of `rms` and `amplitude` are given, or a value cannot be read.
     """
-    if (rms is None) == (amplitude is None):
-        raise InputError("rms, amplitude", None, "one of them is given, not both or neither")
-    if amplitude is None:
-        peak = np.sqrt(2.0) * to_si(rms, "voltage", "rms")
-    else:
-        peak = to_si(amplitude, "voltage", "amplitude")
     worst = isinstance(closing_angle, str) and closing_angle == "worst"
-    angle = None if worst else to_si(closing_angle, "angle", "closing_angle")
-    return _source.sine(peak, to_si(frequency, "frequency", "frequency"), angle)
+    return _source.sine(
+        None if amplitude is None else to_si(amplitude, "voltage", "amplitude"),
+        to_si(frequency, "frequency", "frequency"),
+        None if worst else to_si(closing_angle, "angle", "closing_angle"),
+        rms=None if rms is None else to_si(rms, "voltage", "rms"),
+    )
 
 
-@dataclass(frozen=True)
+@dataclass(frozen=True, eq=False)
 class Case(_case.Case):
     """One switch-on, or a batch of them: a loop, its source, its states at closing.
 
@@ -155,8 +149,6 @@ class Case(_case.Case):
         InputError
             If there is no such quantity, or it is not asked for like this.
         """
-        if name not in REGISTER:
-            raise InputError("name", name, "is not in the register of quantities")
-        entry = REGISTER[name]
+        entry = lookup(name, "name")
         place = at if at is None or entry.at is None else to_si(at, entry.at, "at")
         return entry(self, place, across)

@@ -22,9 +22,10 @@ Array = NDArray[np.float64]
 
 _PEAKED = ("current", "current_rate", "capacitor", "inductor", "dielectric")
 _FEW_LOOPS = 16
+_ANGLE = 1e-12
 
 
-@dataclass(frozen=True)
+@dataclass(frozen=True, eq=False)
 class Waveforms:
     """The switch-on in time; all arrays share one shape, times on the last axis.
 
@@ -42,7 +43,7 @@ class Waveforms:
     capacitor_voltage_rate: Array
 
 
-@dataclass(frozen=True)
+@dataclass(frozen=True, eq=False)
 class Case:
     """One switch-on, or a batch of them.
 
@@ -62,7 +63,7 @@ class Case:
     source: Source
     capacitor_voltage: Array = 0.0  # type: ignore[assignment]
     initial_current: Array = 0.0  # type: ignore[assignment]
-    _peaks: dict[str, Peak] = field(default_factory=dict, repr=False, compare=False)
+    _peaks: dict[str, Peak] = field(default_factory=dict, repr=False, init=False)
 
     def __post_init__(self) -> None:
         for name in ("capacitor_voltage", "initial_current"):
@@ -82,6 +83,11 @@ class Case:
             () if angle is None else np.shape(angle),
         )
 
+    @property
+    def at_rest(self) -> bool:
+        """Whether every loop closes without charge and current."""
+        return not (np.any(self.capacitor_voltage) or np.any(self.initial_current))
+
     @cached_property
     def equation(self) -> Equation:
         """The loop as the second-order equation."""
@@ -93,7 +99,9 @@ class Case:
         return self.steady_at(self.source.frequency)
 
     def steady_at(self, frequency: Any) -> SteadyState:
-        """The steady state at a stated frequency [Hz]."""
+        """The steady state at a stated frequency, zero or more [Hz]."""
+        if not np.all(np.asarray(frequency) >= 0):
+            raise InputError("frequency", frequency, "must be zero or more")
         return steady_state(self.loop, frequency, self.equation)
 
     def signals(self, element: str) -> tuple[Signal, Signal]:
@@ -181,11 +189,10 @@ class Case:
         """
         if self.source.closing_angle is not None:
             return self.source.closing_angle
-        at_rest = not np.any(self.capacitor_voltage) and not np.any(self.initial_current)
-        turn = np.pi if at_rest else 2 * np.pi
+        turn = np.pi if self.at_rest else 2 * np.pi
         angle: Array = np.mod(self.peak(element).angle, turn)
-        # What rounding leaves just below a turn is the zero itself.
-        return np.where(turn - angle < 1e-12, 0.0, angle)
+        # What rounding leaves beside the rising zero is the zero itself.
+        return np.where((angle < _ANGLE) | (turn - angle < _ANGLE), 0.0, angle)
 
     def waveforms(self, time: Any, closing_angle: Any = None) -> Waveforms:
         """The switch-on at given times.
@@ -198,6 +205,8 @@ class Case:
             Replaces the source's own; needed where that is the worst one [rad].
         """
         time = np.asarray(time, dtype=np.float64)
+        if not np.all(time >= 0):
+            raise InputError("time", float(np.min(time)), "must be zero or more")
         loop = self.loop.column()
         eq = equation_of(loop)
 

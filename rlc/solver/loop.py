@@ -16,6 +16,10 @@ Array = NDArray[np.float64]
 ELEMENTS = ("resistor", "inductor", "capacitor")
 
 
+#: Products of such values are still far from the ends of the floating-point range [SI units].
+BEYOND = 1e50
+
+
 class Weights(NamedTuple):
     """A voltage or current as a weighted sum of the two states and the source."""
 
@@ -24,7 +28,7 @@ class Weights(NamedTuple):
     source: Array
 
 
-@dataclass(frozen=True)
+@dataclass(frozen=True, eq=False)
 class Loop:
     r"""One series loop, or an array of them.
 
@@ -77,7 +81,14 @@ class Loop:
         values = [np.asarray(getattr(self, name), dtype=np.float64) for name in names]
         for name, value in zip(names, values, strict=True):
             _refuse_out_of_range(name, value)
-        for name, value in zip(names, np.broadcast_arrays(*values), strict=True):
+        try:
+            together = np.broadcast_arrays(*values)
+        except ValueError:
+            shapes = ", ".join(
+                f"{name} {value.shape}" for name, value in zip(names, values, strict=True)
+            )
+            raise InputError("shapes", None, f"do not go together: {shapes}") from None
+        for name, value in zip(names, together, strict=True):
             object.__setattr__(self, name, value)
 
     @property
@@ -165,15 +176,15 @@ class Loop:
 
 
 def _refuse_out_of_range(name: str, value: Array) -> None:
-    if name in ("inductance", "capacitance", "load_resistance"):
-        good = value > 0
-        rule = "must be more than zero"
-    else:
-        good = value >= 0
-        rule = "must be zero or more"
+    positive = name in ("inductance", "capacitance", "load_resistance")
+    good = (value > 0) if positive else (value >= 0)
+    rule = "must be more than zero" if positive else "must be zero or more"
     if name != "load_resistance":
         good &= np.isfinite(value)
         rule += " and finite"
+    if np.all(good):
+        good = (value == 0) | np.isinf(value) | ((value >= 1 / BEYOND) & (value <= BEYOND))
+        rule = f"is beyond any circuit; values lie from {1 / BEYOND:g} to {BEYOND:g} in SI units"
     if not np.all(good):
         raise InputError(name, float(value[~good].flat[0]), rule)
 

@@ -11,6 +11,7 @@ from __future__ import annotations
 
 from collections.abc import Callable
 from dataclasses import dataclass
+from difflib import get_close_matches
 from typing import Any, Literal
 
 import numpy as np
@@ -29,7 +30,7 @@ Across = str | None
 
 _AC = "OpenStax, University Physics vol. 2, sections 15.2 to 15.5"
 _FREE = "OpenStax, University Physics vol. 2, section 14.6"
-_STEP = "step response of the damped second-order equation; any text on linear systems"
+_STEP = "step response of a second-order system: K. Ogata, Modern Control Engineering (from memory)"
 _SEARCH = "steady state plus free motion; branch and bound over time, proved to 1e-9"
 
 SETTLING_BAND = 0.02
@@ -178,7 +179,7 @@ _ROWS: tuple[Quantity, ...] = (
         lambda c, at, across: np.abs(results.steady_at(c, at).impedance), "frequency",
     ),
     Quantity(
-        "impedance_phase", "arg Z", "angle", "steady", "positive: inductive",
+        "impedance_phase", "arg Z", "angle", "steady", "inductive if positive",
         "Angle by which the source voltage leads the current.", "arg Z", _AC,
         lambda c, at, across: np.angle(results.steady_at(c, at).impedance), "frequency",
     ),
@@ -192,7 +193,7 @@ _ROWS: tuple[Quantity, ...] = (
         lambda c, at, across: np.abs(results.phasor_current(c, at)), "frequency",
     ),
     Quantity(
-        "current_phase", "phi_i", "angle", "steady", "negative: the current lags the source",
+        "current_phase", "phi_i", "angle", "steady", "lags the source if negative",
         "Phase of the current against the source.", "-arg Z", _AC,
         lambda c, at, across: np.angle(results.steady_at(c, at).current), "frequency",
     ),
@@ -228,7 +229,7 @@ _ROWS: tuple[Quantity, ...] = (
         lambda c, at, across: np.real(results.apparent(c, at)), "frequency",
     ),
     Quantity(
-        "reactive_power", "Q_r", "reactive_power", "steady", "positive: inductive",
+        "reactive_power", "Q_r", "reactive_power", "steady", "inductive if positive",
         "Reactive power that the source delivers.", "-V I sin(phi_i)", _AC,
         lambda c, at, across: np.imag(results.apparent(c, at)), "frequency",
     ),
@@ -345,3 +346,25 @@ _ROWS: tuple[Quantity, ...] = (
 
 #: Name to quantity, in the order of tables.
 REGISTER: dict[str, Quantity] = {row.name: row for row in _ROWS}
+
+
+def lookup(name: str, where: str) -> Quantity:
+    """A quantity by its name.
+
+    Parameters
+    ----------
+    name : str
+        As in the register.
+    where : str
+        What asks for it; goes into the error.
+
+    Raises
+    ------
+    InputError
+        If there is none, with the nearest name that there is.
+    """
+    if name in REGISTER:
+        return REGISTER[name]
+    near = get_close_matches(name, REGISTER, 1)
+    hint = f'Did you mean "{near[0]}"?' if near else 'The names: "rlc quantities"'
+    raise InputError(where, name, "is not in the register of quantities", hint)

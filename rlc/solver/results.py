@@ -18,14 +18,17 @@ _CRITICAL = np.sqrt(4 * np.finfo(np.float64).eps)
 
 
 def steady_at(case: Case, at: Any) -> SteadyState:
+    """The steady state at a stated frequency [Hz], else at the source's."""
     return case.steady if at is None else case.steady_at(at)
 
 
 def phasor_current(case: Case, at: Any) -> Any:
+    """Phasor of the loop current for the source's level [A]."""
     return np.abs(case.source.amplitude) * steady_at(case, at).current
 
 
 def rms(case: Case, phasor: Any) -> Any:
+    """Rms value of a phasor per volt, for the source's level."""
     return np.abs(phasor) * np.abs(case.source.amplitude) * case.source.rms_per_amplitude
 
 
@@ -41,21 +44,25 @@ def rings(case: Case) -> Any:
 
 
 def ringing(case: Case) -> Array:
+    """Ringing frequency; not a number where nothing rings [Hz]."""
     return np.where(rings(case), case.equation.root[0] / (2 * np.pi), np.nan)
 
 
 def beat(case: Case) -> Any:
+    """Distance of source and ringing frequency [Hz]."""
     if case.source.kind == "dc":
         return np.nan
     return np.abs(case.source.frequency - ringing(case))
 
 
 def time_constant(case: Case) -> Any:
+    """Of the ringing's envelope, or of the slower of two decays [s]."""
     eq = case.equation
     return 1.0 / np.where(eq.underdamped, eq.damping, eq.slow)
 
 
 def until(case: Case, at: Any) -> Array:
+    """Let-through to a time [s], over all time, or over a source period [A^2 s]."""
     if at is not None:
         return let_through(case, at)
     if case.source.kind == "dc":
@@ -64,11 +71,13 @@ def until(case: Case, at: Any) -> Array:
 
 
 def peak_time(case: Case, element: str) -> Array:
+    """When a peak occurs; not a number where it is only approached [s]."""
     time = case.peak(element).time
     return np.where(np.isfinite(time), time, np.nan)
 
 
 def worst_angle(case: Case, element: str) -> Array:
+    """Worst closing angle; not a number if none was asked for or all are as bad [rad]."""
     if not case.source.worst_angle:
         return np.full(case.loop.shape, np.nan)
     time = case.peak(element).time
@@ -78,4 +87,5 @@ def worst_angle(case: Case, element: str) -> Array:
 
 
 def resistor_power(case: Case, at: Any) -> Any:
+    """Heat in the resistor alone [W]."""
     return rms(case, steady_at(case, at).current) ** 2 * case.loop.resistance

@@ -9,6 +9,7 @@ import numpy as np
 from numpy.typing import NDArray
 
 from rlc.errors import InputError
+from rlc.solver.loop import BEYOND
 
 Array = NDArray[np.float64]
 
@@ -49,6 +50,8 @@ class Source:
             value = np.asarray(given, dtype=np.float64)
             if not np.all(np.isfinite(value)):
                 raise InputError(name, given, "must be finite")
+            if np.any(np.abs(value) > BEYOND):
+                raise InputError(name, given, f"is beyond any circuit, more than {BEYOND:g}")
             object.__setattr__(self, name, value)
         if np.any(self.frequency < 0):
             raise InputError("frequency", float(np.min(self.frequency)), "must be zero or more")
@@ -80,10 +83,32 @@ def constant(voltage: float | Array) -> Source:
 
 
 def sine(
-    amplitude: float | Array, frequency: float | Array, closing_angle: float | Array | None = 0.0
+    amplitude: float | Array | None = None,
+    frequency: float | Array = 0.0,
+    closing_angle: float | Array | None = 0.0,
+    *,
+    rms: float | Array | None = None,
 ) -> Source:
-    """A sinusoid of given peak value [V], frequency [Hz] and closing angle [rad, None: worst]."""
+    """A sinusoid.
+
+    Parameters
+    ----------
+    amplitude, rms : array_like
+        Peak value or root mean square, one of them [V].
+    frequency : array_like
+        More than zero [Hz].
+    closing_angle : array_like or None
+        From the rising zero; None for the worst one [rad].
+
+    Raises
+    ------
+    InputError
+        If both or neither of `amplitude` and `rms` are given, or a value is out of range.
+    """
+    if (rms is None) == (amplitude is None):
+        raise InputError("rms, amplitude", None, "one of them is given, not both or neither")
     if not np.all(np.asarray(frequency) > 0):
         raise InputError("frequency", frequency, "a sine needs a frequency above zero")
+    peak = amplitude if rms is None else np.sqrt(2.0) * np.asarray(rms, dtype=np.float64)
     angle = None if closing_angle is None else np.asarray(closing_angle, dtype=np.float64)
-    return Source(np.asarray(amplitude, dtype=np.float64), np.asarray(frequency), angle)
+    return Source(np.asarray(peak, dtype=np.float64), np.asarray(frequency), angle)

@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+from collections.abc import Iterator
 from dataclasses import dataclass
 from itertools import product
 from typing import Any, Literal, NamedTuple
@@ -111,7 +112,8 @@ class Outcome:
     nominal : float
         With every part at its nominal value.
     worst_low, worst_high : float
-        Extremes over parts at their limits and all samples: searched, not proved.
+        Extremes over parts at their limits, resonances between them and all samples: searched,
+        not proved.
     minimum, maximum, mean, percent_1, percent_50, percent_99 : float
         Of the samples for which the quantity exists; nan without samples.
     samples : Array
@@ -158,7 +160,7 @@ class Spread:
     ----------
     case : Case
         The batch, shape (n,): the nominal loop first, then each part alone at its two limits,
-        then all corners, then the samples.
+        then all corners and the resonances with the source between the limits, then the samples.
     parts : tuple of Part
         What is spread; may be empty.
     count, seed : int
@@ -215,31 +217,66 @@ def spread(case: Case, parts: tuple[Part, ...], samples: int, seed: int) -> Spre
     InputError
         If `samples` or `seed` is out of range.
     """
-    if not 0 <= samples <= MOST_SAMPLES:
-        raise InputError("samples", samples, f"must be from 0 to {MOST_SAMPLES}")
-    if seed < 0:
-        raise InputError("seed", seed, "must be zero or more")
+    if not isinstance(samples, int) or not 0 <= samples <= MOST_SAMPLES:
+        raise InputError("samples", samples, f"must be a whole number from 0 to {MOST_SAMPLES}")
+    if not isinstance(seed, int) or seed < 0:
+        raise InputError("seed", seed, "must be a whole number, zero or more")
     spread_parts = tuple(part for part in parts if part.high > part.low)
     count = samples if spread_parts else 0
-    rows: dict[str, Array] = {}
-    corners = np.array(list(product((0, 1), repeat=len(spread_parts)))) if spread_parts else None
-    for index, part in enumerate(spread_parts):
-        singles = np.full(2 * len(spread_parts), part.nominal)
-        singles[2 * index : 2 * index + 2] = part.low, part.high
-        assert corners is not None
-        rows[part.field] = np.concatenate(
-            [
-                [part.nominal],
-                singles,
-                np.where(corners[:, index], part.high, part.low),
-                part.draw(count, (seed, index)),
-            ]
-        )
+    limits = _limits(case, spread_parts)
+    # Seeded by place among all parts: another part's tolerance changes no draw of this one.
+    rows: dict[str, Array] = {
+        part.field: np.concatenate([limits[part.field], part.draw(count, (seed, index))])
+        for index, part in enumerate(parts)
+        if part in spread_parts
+    }
     loop = case.loop
     values: dict[str, Any] = {name: getattr(loop, name) for name in loop.__dataclass_fields__}
     values.update(rows or {"resistance": np.array([loop.resistance])})
     batch = Case(Loop(**values), case.source, case.capacitor_voltage, case.initial_current)
     return Spread(batch, spread_parts, count, seed)
+
+
+def _limits(case: Case, parts: tuple[Part, ...]) -> dict[str, Array]:
+    """Nominal, each part alone at its limits, all corners, and resonances between the limits."""
+    nominal = {part.field: part.nominal for part in parts}
+    rows = [nominal]
+    rows += [nominal | {part.field: end} for part in parts for end in (part.low, part.high)]
+    ends = [(part.low, part.high) for part in parts]
+    rows += [dict(zip(nominal, corner, strict=True)) for corner in product(*ends)]
+    rows += list(_resonances(case, {part.field: part for part in parts}))
+    return {field: np.array([row[field] for row in rows]) for field in nominal}
+
+
+def _resonances(case: Case, parts: dict[str, Part]) -> Iterator[dict[str, float]]:
+    """Units in which the source's frequency is the resonance of inductance and capacitance.
+
+    A resonance inside the tolerances is worse than any corner, and corners miss it.
+    """
+    omega = 2 * np.pi * float(case.source.frequency)
+    if omega == 0:
+        return
+    known = {"resistance", "inductance", "capacitance"}
+    values = {
+        name: (part.low, part.nominal, part.high) if (part := parts.get(name)) else (fixed,)
+        for name in sorted(known)
+        for fixed in [float(getattr(case.loop, name))]
+    }
+    extra = float(case.loop.source_inductance)
+    for resistance, inductance in product(values["resistance"], values["inductance"]):
+        yield from _between(parts, resistance, inductance, 1 / (omega**2 * (inductance + extra)))
+    for resistance, capacitance in product(values["resistance"], values["capacitance"]):
+        yield from _between(parts, resistance, 1 / (omega**2 * capacitance) - extra, capacitance)
+
+
+def _between(
+    parts: dict[str, Part], resistance: float, inductance: float, capacitance: float
+) -> Iterator[dict[str, float]]:
+    """The unit, cut to the parts that are spread, if it lies between their limits."""
+    unit = {"resistance": resistance, "inductance": inductance, "capacitance": capacitance}
+    row = {field: unit[field] for field in parts}
+    if all(part.low <= row[field] <= part.high for field, part in parts.items()):
+        yield row
 
 
 def _statistics(drawn: Array) -> tuple[float, float, float, float, float, float]:

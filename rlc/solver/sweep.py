@@ -59,7 +59,8 @@ def sweep(case: Case, start: float | None, stop: float | None, points: int) -> S
     case : Case
         One loop.
     start, stop : float, optional
-        First and last frequency; a tenth and ten times the natural frequency if not given [Hz].
+        First and last frequency; if not given, a decade beyond the natural frequency and that of
+        the source [Hz].
     points : int
         How many even steps, 2 to 1e5.
 
@@ -68,9 +69,10 @@ def sweep(case: Case, start: float | None, stop: float | None, points: int) -> S
     InputError
         If the range is empty or `points` is out of range.
     """
-    natural = float(REGISTER["natural_frequency"](case))
-    first = natural / 10 if start is None else start
-    last = natural * 10 if stop is None else stop
+    sine = case.source.kind == "sine"
+    within = [float(REGISTER["natural_frequency"](case)), *[float(case.source.frequency)] * sine]
+    first = min(within) / 10 if start is None else start
+    last = max(within) * 10 if stop is None else stop
     if not 0 < first < last:
         raise InputError(
             "start", f"{first:g} Hz", f"must be above zero and below stop, {last:g} Hz"
@@ -78,7 +80,6 @@ def sweep(case: Case, start: float | None, stop: float | None, points: int) -> S
     if not 2 <= points <= MOST_POINTS:
         raise InputError("points", points, f"must be from 2 to {MOST_POINTS}")
     marks = {float(REGISTER[name](case)): REGISTER[name].symbol for name in _MARKED}
-    sine = case.source.kind == "sine"
     if sine:
         marks.setdefault(float(case.source.frequency), "source")
     marks = {place: name for place, name in marks.items() if first <= place <= last}

@@ -10,7 +10,7 @@ from numpy.typing import NDArray
 
 from rlc.errors import InputError
 from rlc.solver.case import Case
-from rlc.solver.quantities import REGISTER, Quantity
+from rlc.solver.quantities import REGISTER, Quantity, lookup
 
 Array = NDArray[np.float64]
 
@@ -45,8 +45,7 @@ class Target:
     rating: str = ""
 
     def __post_init__(self) -> None:
-        if self.quantity not in REGISTER:
-            raise InputError("quantity", self.quantity, "is not in the register of quantities")
+        lookup(self.quantity, "quantity")
         if None not in (self.minimum, self.maximum) and self.minimum > self.maximum:  # type: ignore[operator]
             raise InputError("min", self.minimum, "is above max")
 

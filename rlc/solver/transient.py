@@ -11,6 +11,7 @@ from rlc.solver.case import Case
 from rlc.solver.driven import driven_from_rest
 from rlc.solver.equation import Equation, angular, equation_of, kernels, phase
 from rlc.solver.peaks import first_extremum
+from rlc.solver.search import PROVED_GAP
 
 Array = NDArray[np.float64]
 
@@ -115,21 +116,23 @@ def _cross(eq: Equation, value: Array, slope: Array, band: Array, low: Array, hi
 
 
 def overshoot(case: Case) -> Array:
-    """How far the capacitor voltage passes its steady state, as a share of it.
+    """How far the capacitor voltage passes its steady state, as a share of it [1].
 
-    Constant source: the largest excursion beyond the final value, over the step from the
-    initial to the final value. Sine: the largest magnitude over the steady amplitude, less 1.
-    Zero if it never passes; nan if there is no step.
+    Constant source: the largest excursion beyond the final value, over the step from the voltage
+    at closing to the final one. Sine: the largest magnitude over the steady amplitude, less 1.
+    Zero if it never passes by more than a peak is known to; nan if there is no step.
     """
     if case.source.kind == "dc":
         _, values = case.extrema("capacitor")
         start, final = values[0], values[-1]
         with np.errstate(invalid="ignore", divide="ignore"):
             beyond = np.max((values - final) / (final - start), axis=0)
-        return np.where(final == start, np.nan, np.maximum(beyond, 0.0))
-    steady = np.abs(case.source.amplitude * case.steady.capacitor)
-    with np.errstate(invalid="ignore", divide="ignore"):
-        return np.maximum(case.peak("capacitor").value / steady - 1, 0.0)
+        beyond = np.where(final == start, np.nan, beyond)
+    else:
+        steady = np.abs(case.source.amplitude * case.steady.capacitor)
+        with np.errstate(invalid="ignore", divide="ignore"):
+            beyond = case.peak("capacitor").value / steady - 1
+    return np.where(beyond < PROVED_GAP, 0.0, beyond)
 
 
 def logarithmic_decrement(eq: Equation) -> Array:
