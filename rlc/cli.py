@@ -30,6 +30,7 @@ from rlc.front.flags import FLAGS, SAMPLES, SEED, TOLERANCE_FLAGS
 
 if TYPE_CHECKING:
     from rich.table import Table
+    from rich.text import Text
 
     from rlc.review import Review
 
@@ -220,15 +221,14 @@ def quantities(
     With a name: its unit, convention, definition, formula and published source.
     """
     from rlc.render import machine, tables
+    from rlc.render.layout import write
     from rlc.solver.quantities import REGISTER, lookup
 
     rows = list(REGISTER.values()) if name is None else [lookup(name, "NAME")]
     if as_json:
         typer.echo(json.dumps({"quantities": machine.register(rows)}, indent=2))
     else:
-        tables.write(
-            terminal_width(), tables.register() if name is None else tables.definition(rows[0])
-        )
+        write(terminal_width(), tables.register() if name is None else tables.definition(rows[0]))
 
 
 @app.callback(invoke_without_command=True)
@@ -247,7 +247,7 @@ def _partial(sheet: Path | None, flags: dict[str, str], groups: tuple[str, ...])
     return review(read_sheet(sheet, flags), names_in(*groups))
 
 
-def _loop(found: Review) -> list[Table | str]:
+def _loop(found: Review) -> list[Table | Text | str]:
     from rlc.render import tables
 
     inputs = found.loaded.inputs
@@ -259,16 +259,18 @@ def _loop(found: Review) -> list[Table | str]:
     ]
 
 
-def _steady(found: Review) -> list[Table | str]:
+def _steady(found: Review) -> list[Table | Text | str]:
     from rlc.render import tables
 
+    if found.case.source.kind == "dc":
+        return [tables.elements(found.case)]
     return [
         tables.elements(found.case),
         tables.quantities("Steady state", found.quantities, "steady"),
     ]
 
 
-def _switch_on(found: Review) -> list[Table | str]:
+def _switch_on(found: Review) -> list[Table | Text | str]:
     from rlc.render import tables
 
     return [
@@ -277,18 +279,20 @@ def _switch_on(found: Review) -> list[Table | str]:
     ]
 
 
-def _spread(found: Review) -> list[Table | str]:
+def _spread(found: Review) -> list[Table | Text | str]:
     from rlc.render import tables
 
     batch = found.spread
     assert batch is not None
+    shown: list[Table | Text | str] = []
     if not batch.parts:
-        shown: list[Table | str] = ["No part has a tolerance: there is no spread."]
+        shown.append("No part has a tolerance: there is no spread.")
     else:
-        shown = [
-            f"{batch.count} random units, seed {batch.seed}; worst case searched among corners"
-            " and samples, not proved.",
-            tables.spread(found.outcomes),
-        ]
+        shown.append(
+            f"{batch.count} random units, seed {batch.seed}; worst case searched among corners,"
+            " resonances between them and samples, not proved."
+        )
+        if found.outcomes and batch.count:
+            shown.append(tables.spread(found.outcomes))
     limited = [outcome for outcome in found.outcomes if outcome.target.limited]
-    return [*shown, tables.targets(limited)] if limited else shown
+    return [*shown, *([tables.targets(limited)] if limited else []), tables.summary(limited)]

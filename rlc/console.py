@@ -19,6 +19,7 @@ from rlc.front.flags import Flag
 
 if TYPE_CHECKING:
     from rich.table import Table
+    from rich.text import Text
 
     from rlc.front.inputs import Loaded
     from rlc.review import Review
@@ -119,10 +120,11 @@ def read_sheet(sheet: Path | None, flags: dict[str, str]) -> Loaded:
 
 
 def show(
-    found: Review, pieces: Iterable[Table | str], pictures: Iterable[str], output: Output
+    found: Review, pieces: Iterable[Table | Text | str], pictures: Iterable[str], output: Output
 ) -> None:
     """Save the pictures, then print the answer: as one JSON document, or as tables."""
     from rlc.render import tables
+    from rlc.render.layout import write
 
     if output.plots is not None:
         _save(found, pictures, output.plots, output.suffix)
@@ -133,7 +135,7 @@ def show(
     if found.loaded.document.name:
         heading.append(f"Sheet: {found.loaded.document.name}")
     heading += [f"Changed: {change}" for change in found.loaded.document.changes]
-    tables.write(terminal_width(), *heading, *pieces, *tables.cautions(found.cautions))
+    write(terminal_width(), *heading, *pieces, *tables.cautions(found.cautions))
 
 
 def terminal_width() -> int:

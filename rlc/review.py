@@ -85,6 +85,11 @@ class Review:
             found["changed"] = [change._asdict() for change in loaded.document.changes]
         found["loop"] = machine.loop(self.case, loaded.inputs.parts)
         found["quantities"] = machine.quantities(self.quantities)
+        groups = {REGISTER[name].group for name in self.quantities}
+        if "steady" in groups:
+            found["elements"] = machine.elements(self.case)
+        if "switch-on" in groups:
+            found["peaks"] = machine.peaks(self.case)
         if batch is not None:
             limited = [each for each in self.outcomes if each.target.limited]
             found["targets"] = [machine.target(outcome) for outcome in limited]

@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+import cmath
 import math
 from collections.abc import Iterable, Mapping
 from dataclasses import fields
@@ -9,11 +10,12 @@ from typing import Any
 
 from rlc.front.marking import KINDS
 from rlc.render.cautions import Caution
+from rlc.render.known import PEAKS, peak_of
 from rlc.solver.case import Case
 from rlc.solver.extrema import Extrema
-from rlc.solver.loop import Loop
+from rlc.solver.loop import ELEMENTS, Loop
 from rlc.solver.quantities import REGISTER, Quantity
-from rlc.solver.spread import Outcome, Part
+from rlc.solver.spread import CONFIDENCE, Outcome, Part
 from rlc.solver.sweep import Sweep
 
 # Where the unit that is printed is not the SI unit.
@@ -76,7 +78,13 @@ def target(outcome: Outcome) -> dict[str, Any]:
         "nominal": number(outcome.nominal),
         "worst_low": number(outcome.worst_low),
         "worst_high": number(outcome.worst_high),
-        "yield": share._asdict() if share else None,
+        "yield": {
+            "value": number(share and share.value),
+            "low": number(share and share.low),
+            "high": number(share and share.high),
+            "confidence": CONFIDENCE,
+        },
+        "margin": number(outcome.margin),
         "verdict": outcome.verdict,
     }
 
@@ -106,6 +114,32 @@ def sweep(found: Sweep) -> dict[str, Any]:
     return {
         name: [number(value) for value in values]
         for name, values in ({"frequency": found.frequency} | columns).items()
+    }
+
+
+def elements(case: Case) -> dict[str, Any]:
+    """Voltage across each part in steady state: amplitude [V], phase against the source [rad]."""
+    level = abs(float(case.source.amplitude))
+    phasors = {name: complex(case.steady.across(name)) for name in ELEMENTS}
+    return {
+        name: {"amplitude": number(level * abs(phasor)), "phase": number(cmath.phase(phasor))}
+        for name, phasor in phasors.items()
+    }
+
+
+def peaks(case: Case) -> dict[str, Any]:
+    """What is known of each peak of the switch-on."""
+    found = {element: peak_of(case, element) for element, _ in PEAKS}
+    return {
+        element: {
+            "value": number(peak.value),
+            "time": number(peak.time),
+            "closing_angle": number(peak.angle) if case.source.kind == "sine" else None,
+            "steady": number(peak.steady),
+            "gap": number(peak.gap),
+            "known": peak.known,
+        }
+        for element, peak in found.items()
     }
 
 

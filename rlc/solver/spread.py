@@ -145,11 +145,27 @@ class Outcome:
         A value that does not exist is not inside; a share is enough when the lower end of its
         interval reaches the goal.
         """
-        if np.all(self.target.kept([self.nominal, self.worst_low, self.worst_high])):
+        if not self.miss:
             return "holds"
         goal, share = self.target.goal, self.share
         enough = goal is not None and share is not None and share.low >= goal
         return "holds by yield" if enough else "fails"
+
+    @property
+    def margin(self) -> float:
+        """How far the nominal value is inside the nearest limit, as a share of that limit [1]."""
+        low, high = self.target.minimum, self.target.maximum
+        room = [(self.nominal - low) / abs(low)] if low else []
+        room += [(high - self.nominal) / abs(high)] if high else []
+        return min(room, default=np.nan)
+
+    @property
+    def miss(self) -> str:
+        """What is outside the limits: "nominal", "worst low", "worst high"; or nothing."""
+        for name in ("nominal", "worst_low", "worst_high"):
+            if not self.target.kept(getattr(self, name)):
+                return name.replace("_", " ")
+        return ""
 
 
 @dataclass(frozen=True)
