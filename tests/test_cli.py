@@ -10,6 +10,7 @@ from typing import Any
 import pytest
 from typer.testing import CliRunner, Result
 
+import rlc
 from rlc.cli import app
 from rlc.solver.quantities import REGISTER
 
@@ -104,19 +105,33 @@ def test_a_flag_beside_a_sheet_replaces_its_value_and_the_output_says_so() -> No
     sheet = EXAMPLES / "fog_signal.toml"
     result = run("steady", sheet, "--resistance", "20 ohm")
     assert result.exit_code == 0
-    assert "Replaced: resistor.value = 20 ohm (sheet: 10 ohm)" in result.stdout
-    assert '--resistance replaces resistor.value: "10 ohm" by "20 ohm"' in result.stderr
+    said = 'Changed: --resistance replaces resistor.value = "10 ohm" by "20 ohm"'
+    assert said in result.stdout.splitlines()
     found = document("steady", sheet, "--resistance", "20 ohm")
     assert found["loop"]["resistance"] == 20.0
-    assert found["replaced"] == [
-        {"key": "resistor.value", "option": "--resistance", "old": "10 ohm", "new": "20 ohm"}
+    assert found["changed"] == [
+        {"option": "--resistance", "key": "resistor.value", "old": "10 ohm", "new": "20 ohm"}
     ]
 
 
 def test_a_missed_target_exits_with_3() -> None:
-    result = run("check", EXAMPLES / "fog_signal.toml", "--resistance", "20 ohm", "--samples", "10")
-    assert result.exit_code == 3
-    assert "fails" in result.stdout
+    for command in ("check", "spread"):
+        result = run(
+            command, EXAMPLES / "fog_signal.toml", "--resistance", "20 ohm", "--samples", "10"
+        )
+        assert result.exit_code == 3
+        assert "fails" in result.stdout
+
+
+def test_a_quantity_without_limits_is_no_target() -> None:
+    overdamped = ["--resistance", "1 kohm", *DC[2:]]
+    result = run("spread", *overdamped, "--quantity", "ringing_frequency")
+    assert result.exit_code == 0
+    assert "nothing is judged" in result.stdout
+
+
+def test_version() -> None:
+    assert run("--version").stdout == f"rlc {rlc.__version__}\n"
 
 
 def test_worst_closing_angles_are_both_reported() -> None:
@@ -209,7 +224,7 @@ def test_other_picture_formats(tmp_path: Path, suffix: str, start: bytes) -> Non
         (["sweep", *SINE, "--start", "1 rad/s"], "--start = '1 rad/s': is an angular rate"),
         (["sweep", *SINE, "--start", "2 kHz", "--stop", "1 kHz"], "must be above zero and below"),
         (["sweep", *SINE, "--points", "1"], "points = 1: must be from 2 to 100000"),
-        (["spread", *SINE, "--samples", "-5"], "samples = -5: must be from 0 to 1000000"),
+        (["spread", *SINE, "--samples", "-5"], "samples = -5: must be a whole number from 0"),
         (["spread", *SINE, "--quantity", "bandwith"], 'Did you mean "bandwidth"?'),
         (["quantities", "gian"], 'Did you mean "gain"?'),
         (["new", "filter", "none/there.toml"], "cannot be written: No such file or directory"),

@@ -7,6 +7,8 @@ import subprocess
 import sys
 from pathlib import Path
 
+import pytest
+
 EXAMPLES = Path(__file__).parents[1] / "examples"
 STEADY = [
     "steady", "--resistance", "12 ohm", "--inductance", "33 mH", "--capacitance", "1u0",
@@ -55,6 +57,7 @@ def test_bad_input_as_a_process() -> None:
 
 def test_no_argument_shows_the_help() -> None:
     done = rlc()
+    assert done.returncode == 2
     assert "check" in done.stdout + done.stderr
     assert "Traceback" not in done.stderr
 
@@ -73,6 +76,16 @@ def test_a_closed_pipe_is_no_crash() -> None:
     assert "Traceback" not in process.stderr.read()
     process.stderr.close()
     process.wait(timeout=60)
+
+
+@pytest.mark.skipif(not Path("/dev/full").exists(), reason="needs a device that is always full")
+def test_a_full_disk_is_one_message() -> None:
+    with Path("/dev/full").open("w") as full:
+        done = subprocess.run(
+            [sys.executable, "-m", "rlc", *STEADY], stdout=full, stderr=subprocess.PIPE, text=True
+        )
+    assert done.returncode == 2
+    assert done.stderr == "The answer cannot be written: No space left on device\n"
 
 
 def test_output_in_an_encoding_without_our_signs() -> None:

@@ -9,6 +9,7 @@ import shutil
 from pathlib import Path
 from types import ModuleType
 
+import numpy as np
 import pytest
 from typer.testing import CliRunner
 
@@ -63,10 +64,14 @@ def test_pictures_are_those_that_the_script_draws(refresh: ModuleType, tmp_path:
     assert sorted(path.name for path in drawn) == sorted(path.name for path in kept.iterdir())
     for path in drawn:
         assert f"examples/pictures/{path.name}" in README
-        # Another version of the drawing library may move a letter, never the curves.
         new, old = imread(path), imread(kept / path.name)
-        assert abs(new.shape[0] - old.shape[0]) <= 20
         assert new.shape[1] == old.shape[1]
+        assert abs(new.shape[0] - old.shape[0]) <= 20
+        # Another version of the drawing library may move letters by a pixel, never the curves: of
+        # rows of pixels taken together, a tenth at most may differ by more than a shade.
+        rows = min(len(new), len(old))
+        shade = np.abs(new[:rows, :, :3] - old[:rows, :, :3]).mean(axis=2)
+        assert np.mean(shade > 0.3) < 0.1
         assert path.stat().st_size < 150_000
 
 

@@ -122,7 +122,7 @@ def _problem(error: Any, document: Document) -> tuple[KeyPath, InputError]:
     cause = error.get("ctx", {}).get("error")
     if isinstance(cause, InputError):
         # A rule between keys names the one to change; its value is shown as it was typed.
-        if cause.name:
+        if cause.name and cause.name != at[-1]:
             value = value.get(cause.name) if isinstance(value, dict) else None
         return at, InputError(cause.name, value, cause.rule, cause.hint)
     if kind == "missing":

@@ -218,7 +218,7 @@ def _verdict(outcome: Outcome) -> str:
 
 def summary(outcomes: Iterable[Outcome]) -> str:
     """How many targets hold, in one sentence."""
-    verdicts = [outcome.verdict for outcome in outcomes]
+    verdicts: list[str] = [outcome.verdict for outcome in outcomes]
     if not verdicts:
         return "No target and no rating is stated: nothing is judged."
     counts = ", ".join(f"{word} {verdicts.count(word)}" for word in _VERDICT_STYLE)

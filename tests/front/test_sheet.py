@@ -333,17 +333,26 @@ def test_a_flag_replaces_a_value_and_is_named_in_errors(tmp_path: Path) -> None:
     loaded = load(path, {"--resistance": "15 ohm", "--source-amplitude": "10 V"})
     assert loaded.inputs.case.loop.resistance == 15.0
     assert loaded.inputs.case.source.amplitude == 10.0
-    assert [(each.key, each.old, each.new) for each in loaded.document.replacements] == [
-        ("resistor.value", "12 ohm", "15 ohm"),
-        ("source.amplitude", "24 V", "10 V"),
+    assert [str(change) for change in loaded.document.changes] == [
+        '--resistance replaces resistor.value = "12 ohm" by "15 ohm"',
+        '--source-amplitude adds source.amplitude = "10 V"',
+        '--source-amplitude drops source.rms = "24 V"',
     ]
     with pytest.raises(SheetError) as caught:
         load(path, {"--resistance": "15"})
-    assert str(caught.value).startswith(f"{path}: --resistance = '15': has no unit")
+    assert str(caught.value).startswith("--resistance = '15': has no unit")
 
 
 def test_a_dc_flag_turns_a_sine_sheet_into_dc(tmp_path: Path) -> None:
-    case = load(write(tmp_path, GOOD), {"--source-dc": "48 V"}).inputs.case
+    loaded = load(write(tmp_path, GOOD), {"--source-dc": "48 V"})
+    case = loaded.inputs.case
+    assert [str(change) for change in loaded.document.changes] == [
+        '--source-dc adds source.voltage = "48 V"',
+        '--source-dc replaces source.kind = "sine" by "dc"',
+        '--source-dc drops source.rms = "24 V"',
+        '--source-dc drops source.frequency = "880 Hz"',
+        '--source-dc drops switch_on.closing_angle = "30 deg"',
+    ]
     assert case.source.kind == "dc"
     assert case.source.amplitude == 48.0
     assert case.loop.source_resistance == 0.5
@@ -354,6 +363,46 @@ def test_flags_that_contradict_each_other() -> None:
         load(None, {"--source-rms": "1 V", "--source-dc": "1 V"})
     with pytest.raises(InputError, match="--frequency = '50 Hz': does not go with --source-dc"):
         load(None, {"--source-dc": "1 V", "--frequency": "50 Hz"})
+
+
+def test_an_unknown_flag_is_refused_with_the_nearest_known() -> None:
+    with pytest.raises(InputError, match=r"is no flag .* Did you mean \"--resistance\"\?"):
+        load(None, {"--resistence": "1 ohm"})
+
+
+def test_nothing_at_all_asks_for_a_sheet() -> None:
+    with pytest.raises(SheetError) as caught:
+        load()
+    first, *rest = str(caught.value).splitlines()
+    assert first == "no sheet is named. Name one, or give at least these flags"
+    assert len(rest) == 4
+
+
+def test_a_part_of_zero_cannot_go_below_and_may_have_a_plus_side(tmp_path: Path) -> None:
+    zero = GOOD.replace('"12 ohm"', '"0 ohm"')
+    found = problems(tmp_path, zero.replace('"1 %"', '"0.5 ohm"'))
+    assert found == [
+        "4: resistor.tolerance = '0.5 ohm': would let the value reach zero."
+        ' Write for example "5 %" or "-20 % / +80 %"'
+    ]
+    inputs = load(write(tmp_path, zero.replace('"1 %"', '"-0 ohm / +0.5 ohm"'))).inputs
+    assert (inputs.parts[0].low, inputs.parts[0].high) == (0.0, 0.5)
+
+
+def test_distributions_arrive_with_their_sigmas(tmp_path: Path) -> None:
+    text = GOOD.replace('"1 %"', '"1 %"\ndistribution = "normal"\nsigmas = 2.5').replace(
+        '"0.5 mH"', '"0.5 mH"\ndistribution = "triangular"'
+    )
+    resistor, inductor, capacitor = load(write(tmp_path, text)).inputs.parts
+    assert (resistor.distribution, resistor.sigmas) == ("normal", 2.5)
+    assert inductor.distribution == "triangular"
+    assert capacitor.distribution == "uniform"
+
+
+@pytest.mark.parametrize("value", ["1e-300 H", "1e300 H"])
+def test_values_beyond_any_circuit_are_refused(tmp_path: Path, value: str) -> None:
+    with pytest.raises(InputError, match="is beyond any circuit"):
+        load(write(tmp_path, GOOD.replace('"33 mH"', f'"{value}"').replace('"0.5 mH"', '"5 %"')))
 
 
 def test_flags_that_are_missing_are_named_as_flags() -> None:

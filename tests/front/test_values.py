@@ -12,6 +12,7 @@ import pint
 import pytest
 
 import rlc
+from rlc.front import marking, units, values
 
 UNITS = pint.UnitRegistry()
 
@@ -85,5 +86,33 @@ def test_import_loads_nothing_slow() -> None:
 
 
 def test_the_example_in_the_package_runs() -> None:
-    assert doctest.testmod(rlc).failed == 0
-    assert doctest.testmod(rlc).attempted > 0
+    for module in (rlc, units, marking, values):
+        found = doctest.testmod(module)
+        assert found.failed == 0
+        assert found.attempted > 0
+
+
+def test_lists_arrays_and_no_load_in_some_loops() -> None:
+    loop = rlc.Loop(
+        resistance=[1.0, 2.0],
+        inductance="1 mH",
+        capacitance=1e-6,
+        load_resistance=np.array([np.inf, 50.0]),
+    )
+    assert loop.load_conductance.tolist() == [0.0, 0.02]
+    case = rlc.Case(loop, rlc.constant(5.0))
+    assert case.waveforms([0, 1e-6]).current.shape == (2, 2)
+    with pytest.raises(rlc.InputError, match="must be zero or more"):
+        case.waveforms([-1e-3])
+    with pytest.raises(rlc.InputError, match="must be zero or more"):
+        case.steady_at(-5.0)
+    with pytest.raises(rlc.InputError, match="do not go together"):
+        rlc.Loop(resistance=[1.0, 2.0], inductance=[1.0, 2.0, 3.0], capacitance=1.0)
+
+
+def test_check_refuses_flags_and_counts_that_make_no_sense() -> None:
+    with pytest.raises(rlc.InputError, match="is no flag"):
+        rlc.check(flags={"--resistence": "5 ohm"})
+    flags = {"--resistance": "5 ohm", "--inductance": "1 mH", "--capacitance": "1 uF"}
+    with pytest.raises(rlc.InputError, match="must be a whole number"):
+        rlc.check(flags=flags | {"--source-dc": "5 V"}, samples=5.5)  # type: ignore[arg-type]
