@@ -111,7 +111,7 @@ def with_flags(*flags: Flag) -> Callable[[Callable[..., None]], Callable[..., No
 
 def read_sheet(sheet: Path | None, flags: dict[str, str]) -> Loaded:
     """Read the sheet and say on stderr what looks like a slip."""
-    from rlc.front.inputs import load
+    from rlc.front.load import load
 
     loaded = load(sheet, flags)
     for note in loaded.notes:

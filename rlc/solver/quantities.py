@@ -329,7 +329,7 @@ _ROWS: tuple[Quantity, ...] = (
         lambda c, at, across: settling_time(c, SETTLING_BAND if at is None else at), "ratio",
     ),
     Quantity(
-        "let_through", "J", "let_through", "switch-on",
+        "let_through", "I^2 t", "let_through", "switch-on",
         "to the stated time; else over all time (dc) or the first source period (sine); worst"
         " angle: its own",
         "Integral of the squared current, what a fuse or contact must pass.",

@@ -12,7 +12,7 @@ import pytest
 from rlc.errors import InputError, SheetError
 from rlc.front.document import LARGEST_SHEET
 from rlc.front.flags import FLAGS, TOLERANCE_FLAGS
-from rlc.front.inputs import load
+from rlc.front.load import load
 from rlc.front.marking import KINDS
 
 GOOD = """\
