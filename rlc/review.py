@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+import math
 from collections.abc import Callable, Iterable, Mapping
 from dataclasses import dataclass
 from pathlib import Path
@@ -9,7 +10,8 @@ from typing import TYPE_CHECKING, Any
 
 from rlc import __version__
 from rlc.front.flags import SAMPLES, SEED
-from rlc.front.inputs import Loaded, load
+from rlc.front.inputs import Loaded
+from rlc.front.load import load
 from rlc.render import machine
 from rlc.render.cautions import Caution, cautions
 from rlc.solver.case import Case
@@ -202,7 +204,23 @@ def review(
     # Other closings matter to an answer about the switch-on, and cost a search each.
     closings = any(REGISTER[name].group == "switch-on" for name in asked)
     inputs = loaded.inputs
-    told = cautions(case, inputs.ratings, worst, fuse=inputs.fuse, closings=closings)
+    # Not the judged batch: a few loops, searched at once, tell what goes with what.
+    corners = spread(case, inputs.parts, 0, seed=1)
+    limits: dict[str, float] = {}
+    for target in inputs.targets:
+        plain = target.at is None and target.across is None and not target.rating
+        if target.maximum is not None and plain:
+            known = limits.get(target.quantity, math.inf)
+            limits[target.quantity] = min(known, target.maximum)
+    told = cautions(
+        case,
+        inputs.ratings,
+        worst,
+        fuse=inputs.fuse,
+        closings=closings,
+        corners=corners.case if corners.parts else None,
+        limits=limits,
+    )
     return Review(loaded, case, quantities, batch, outcomes, told)
 
 

@@ -11,8 +11,11 @@ import math
 from collections.abc import Callable, Mapping
 from dataclasses import dataclass
 
+import numpy as np
+
 from rlc.front.marking import show
-from rlc.render.findings import ELV_AC_PEAK, ELV_DC, Findings, Size, exceeds, peak_of
+from rlc.render.closings import closing_angle, trapped_charge
+from rlc.render.findings import ELV_AC_PEAK, ELV_DC, Findings, Size, exceeds
 from rlc.solver.case import Case
 from rlc.solver.quantities import REGISTER
 from rlc.solver.steady import half_power_frequencies
@@ -37,10 +40,9 @@ LOSSLESS_QUALITY = 1e3  # above it a resistance is probably missing on the sheet
 RESONANT_QUALITY = 1.0  # below it resonance magnifies nothing
 CONTACT_CURRENT = 1.0  # what small contacts, connectors and fuses are made for [A]
 ARC_ENERGY = 1e-3  # in the inductance, when the loop is opened [J]
-NOTABLE_RISE = 1.01  # smaller differences between two closings are not worth a sentence
 
-_SAME_ANGLE = math.radians(1.0)
-_NO_RATINGS = Ratings()
+_MINUTE = 60.0
+_NO_RATINGS, _NO_LIMITS = Ratings(), dict[str, float]()
 
 
 @dataclass(frozen=True)
@@ -66,6 +68,8 @@ def cautions(
     *,
     fuse: Fuse | None = None,
     closings: bool = True,
+    corners: Case | None = None,
+    limits: Mapping[str, float] = _NO_LIMITS,
 ) -> tuple[Caution, ...]:
     """Cautions that this loop calls for, the most hazardous first.
 
@@ -76,13 +80,19 @@ def cautions(
     ratings : Ratings
         What the parts are made for.
     worst : mapping of str to float, optional
-        Highest value over the parts' tolerances, by name in the register of quantities [SI
-        unit of the quantity]. Where one is missing or not a number, the nominal value stands.
+        Highest value over the parts' tolerances, samples included, by name in the register of
+        quantities [SI unit of the quantity]. It counts where it is above that of `corners`.
     fuse : Fuse, optional
         What the let-through has to pass.
     closings : bool
         Whether other closings than the one asked for are compared: the worst angles, and
         closing onto a charged capacitor.
+    corners : Case, optional
+        The same switch-on with the parts at their limits, shape (n,), from which the highest
+        values over the parts are computed. Without it no part has a tolerance.
+    limits : mapping of str to float, optional
+        Highest value that a target allows, by name in the register [SI unit of the quantity];
+        other closings are held against it.
 
     Returns
     -------
@@ -92,9 +102,10 @@ def cautions(
     Notes
     -----
     Voltages and currents are peak values unless rms is said. Under a sine up to four more peak
-    searches are made: at the worst closing angles, and onto a charged capacitor.
+    searches are made: at the worst closing angles, and onto a charged capacitor; these are of
+    the nominal case. The corners take one more.
     """
-    found = Findings(case, ratings, worst or {}, fuse)
+    found = Findings(case, ratings, worst or {}, fuse, corners, limits)
     rules = (row for row in _RULES if closings or row[0] not in _CLOSINGS)
     told = ((name, rule(found)) for name, rule in rules)
     return tuple(Caution(name, text) for name, text in told if text)
@@ -113,12 +124,11 @@ def _hazardous_source(found: Findings) -> str:
 def _extra_low_voltage(found: Findings) -> str:
     if found.hazardous_source:
         return ""
-    resistor = float(found.loop.resistance) * found.current.nominal
     limit = ELV_AC_PEAK if found.sine else ELV_DC
     peaks = (
         ("capacitor", found.capacitor),
         ("inductor", found.inductor),
-        ("resistor", Size(resistor, resistor, "voltage")),
+        ("resistor", found.resistor),
     )
     above = [f"{name} {size}" for name, size in peaks if exceeds(size.highest, limit)]
     if not above:
@@ -134,42 +144,55 @@ def _extra_low_voltage(found: Findings) -> str:
 def _stored_energy(found: Findings) -> str:
     if not (found.shocks or found.burns):
         return ""
-    hurts = "a shock hazard with the source off as well" if found.shocks else ""
-    burns = "a short circuit across it sparks, welds contacts and burns" if found.burns else ""
-    return (
-        f"Peak voltage on the capacitor: {found.charge}. The energy in it is then"
-        f" {found.energy}: {', and '.join(filter(None, (hurts, burns)))}."
-    )
+    told = [f"Peak voltage on the capacitor: {found.charge}. Energy in it: {found.energy}."]
+    burns = "short circuit across it sparks, welds contacts and burns."
+    if found.shocks:
+        more = f", and a {burns}" if found.burns else "."
+        told.append(f"It is a shock hazard with the source off as well{more}")
+    else:
+        told.append(f"A {burns}")
+    return " ".join(told)
 
 
 def _residual_voltage(found: Findings) -> str:
     if not (found.shocks or found.burns):
         return ""
-    charge, load = found.charge.highest, float(found.loop.load_resistance)
+    charge, load = found.charge, float(found.loop.load_resistance)
     prove = "prove it dead before touching it"
     if math.isinf(load):
-        held = show(charge, "voltage") if math.isfinite(charge) else "any voltage"
-        settled = show(found.steady("dielectric"), "voltage")
-        later = f" ({settled} if opened in steady state)" if found.level else ""
+        held = str(charge) if math.isfinite(charge.nominal) else "any voltage"
+        settled = f"; opened in steady state: {found.steady('dielectric')}" if found.level else ""
         return (
-            f"Once the loop is opened nothing discharges the capacitor: it may hold up to {held}"
-            f"{later} for a long time. Short it through a resistor and {prove}."
+            "Once the loop is opened nothing discharges the capacitor. It may hold for a long"
+            f" time: {held}{settled}. Short it through a resistor and {prove}."
         )
-    path = load + float(found.loop.series_resistance)
-    time_constant = path * float(found.loop.capacitance)
-    start = charge * load / path
     head = (
         f"Once the source is off, the load of {show(load, 'resistance')} discharges the capacitor"
     )
     tail = f" If the load comes off or fails, the charge stays: {prove}."
-    if not start > RESIDUAL_VOLTAGE:
-        return f"{head} with a time constant of {show(time_constant, 'time')}.{tail}"
-    time = time_constant * math.log(start / RESIDUAL_VOLTAGE)
-    allowed, rule = _TIMES_ALLOWED[float(found.case.source.rms) > _LOW_VOLTAGE]
+    path = load + float(found.loop.series_resistance)
+    start = Size(charge.nominal * load / path, charge.highest * load / path, "voltage")
+    if not start.highest > RESIDUAL_VOLTAGE:
+        time_constant = found.size(lambda case: path * case.loop.capacitance, "time")
+        return f"{head} with a time constant of {time_constant.told(_duration)}.{tail}"
+    time = found.discharge(RESIDUAL_VOLTAGE)
+    steady = float(REGISTER["capacitor_voltage"](found.case))
+    allowed, rule = _TIMES_ALLOWED[steady > _LOW_VOLTAGE]
+    takes = "this takes longer" if time.nominal > allowed else "this takes less"
+    if not time.nominal > allowed and time.highest > allowed:
+        takes = "over the parts this may take longer"
+    rms = " rms" if found.sine else ""
+    here = f"{found.nominal}{show(steady, 'voltage')}{rms} in steady state"
     return (
-        f"{head} from {show(start, 'voltage')} to 50 V in {show(time, 'time')}; for information,"
-        f" {rule}, and this takes {'longer' if time > allowed else 'less'}.{tail}"
+        f"{head} from its peak ({start}) to 50 V in {time.told(_duration)}. For information:"
+        f" {rule}; with {here}, {takes}.{tail}"
     )
+
+
+def _duration(seconds: float) -> str:
+    if not 2 * _MINUTE < seconds < math.inf:
+        return show(seconds, "time")
+    return f"{show(seconds / _MINUTE, 'number')} min"
 
 
 def _undamped(found: Findings) -> str:
@@ -191,55 +214,78 @@ def _undamped(found: Findings) -> str:
 
 def _capacitor_overvoltage(found: Findings) -> str:
     peak, ratings, told = found.capacitor, found.ratings, []
-    rms = found.size(
-        float(REGISTER["capacitor_voltage"](found.case)), "capacitor_voltage", "voltage"
-    )
     rated, rated_rms = ratings.capacitor_voltage, ratings.capacitor_voltage_rms
     if rated is not None and exceeds(peak.highest, rated):
         told.append(
             f"Peak capacitor voltage: {peak}, above the rated voltage of {show(rated, 'voltage')}."
         )
     elif rated is None and peak.highest > OVERSHOT * found.level > 0:
-        times = f" ({show(peak.nominal / found.level, 'number')} times the source's peak)"
+        source = "the source's peak" if found.sine else "the source"
         told.append(
-            f"Peak capacitor voltage: {peak}{times if math.isfinite(peak.nominal) else ''}."
+            f"Peak capacitor voltage: {_magnified(found, peak, f' {source}')}."
             " No voltage rating is stated for peaks; the part must withstand them."
         )
+    name = "capacitor_voltage"
+    rms = found.size(REGISTER[name], "voltage", {name: 1.0})
     if rated_rms is not None and exceeds(rms.highest, rated_rms):
         limit = show(rated_rms, "voltage")
-        told.append(f"Steady capacitor voltage: {rms} rms, above the rated {limit} rms.")
+        told.append(f"Steady capacitor voltage, rms: {rms}, above the rated {limit} rms.")
     return " ".join(told)
+
+
+def _magnified(found: Findings, size: Size, source: str = "") -> str:
+    """A voltage, and how many times the source's it is."""
+
+    def write(value: float) -> str:
+        if not math.isfinite(value):
+            return show(value, "voltage")
+        times = show(value / found.level, "number")
+        return f"{show(value, 'voltage')} ({times} times{source})"
+
+    return size.told(write)
 
 
 def _magnification(found: Findings) -> str:
     if not (found.sine and found.level):
         return ""
-    sizes = ((name, found.steady(name), found.steady_size(name)) for name in _REACTIVE)
+    sizes = ((name, found.steady(name)) for name in ("capacitor", "inductor"))
     told = [
-        f"{name} {show(nominal / found.level, 'number')} times ({size} peak)"
-        for name, nominal, size in sizes
-        if math.isfinite(nominal) and size.highest >= MAGNIFIED * found.level
+        f"{name} {_magnified(found, size)}"
+        for name, size in sizes
+        if math.isfinite(size.nominal) and size.highest >= MAGNIFIED * found.level
     ]
     if not told:
         return ""
     return (
-        f"In steady state more than the source's {show(found.level, 'voltage')} peak lies across"
-        f" parts of the loop: {'; '.join(told)}."
+        f"In steady state parts of the loop have more than the source's"
+        f" {show(found.level, 'voltage')} peak: {'; '.join(told)}."
     )
 
 
 def _resonance(found: Findings) -> str:
-    eq, frequency = found.case.equation, float(found.case.source.frequency)
-    lower, upper = (float(edge) for edge in half_power_frequencies(eq))
-    if not (found.sine and found.quality >= RESONANT_QUALITY and lower <= frequency <= upper):
+    if not (found.sine and found.quality >= RESONANT_QUALITY):
         return ""
-    band = f"{show(lower, 'frequency')} to {show(upper, 'frequency')}"
+    eq, frequency = found.case.equation, float(found.case.source.frequency)
+    nominal = tuple(float(edge) for edge in half_power_frequencies(eq))
+    lower, upper = half_power_frequencies(found.batch.equation)
+    reached = float(np.min(lower)), float(np.max(upper))
+    if not reached[0] <= frequency <= reached[1]:
+        return ""
+    whose = "" if math.isinf(found.loop.load_resistance) else " of the capacitor's current"
+    band, spread = f"{found.nominal}half-power band{whose}, {_range(nominal)}", ""
+    if not nominal[0] <= frequency <= nominal[1]:
+        band = f"half-power band{whose} over the parts, {_range(reached)}"
+        spread = f"; the nominal band, {_range(nominal)}, misses it"
     natural = show(float(eq.natural) / (2 * math.pi), "frequency")
     return (
-        f"The source's {show(frequency, 'frequency')} lies in the half-power band, {band}, around"
-        f" the resonance at {natural}. A small change of a part or of the frequency changes"
-        " current and voltages much."
+        f"The source's {show(frequency, 'frequency')} lies in the {band}, around the"
+        f" {found.nominal}resonance at {natural}{spread}. A small change of a part or of the"
+        " frequency changes current and voltages much."
     )
+
+
+def _range(edges: tuple[float, ...]) -> str:
+    return " to ".join(show(edge, "frequency") for edge in edges)
 
 
 def _saturation(found: Findings) -> str:
@@ -254,13 +300,12 @@ def _saturation(found: Findings) -> str:
 
 
 def _inrush(found: Findings) -> str:
-    peak, steady = found.current, found.steady("current")
-    if not (exceeds(peak.highest, CONTACT_CURRENT) and peak.highest > OVERSHOT * steady):
+    if not (exceeds(found.current.highest, CONTACT_CURRENT) and found.inrush > OVERSHOT):
         return ""
-    amplitude = f" (steady amplitude {show(steady, 'current')})" if found.sine else ""
+    steady = f" (steady amplitude: {found.steady('current')})" if found.sine else ""
     told = [
-        f"Peak current at switch-on: {peak}{amplitude}."
-        f" Contacts, connectors and fuses carry it{found.let_through}."
+        f"Peak current at switch-on: {found.current}{steady}."
+        f" Contacts, connectors and fuses carry it{_let_through(found)}."
     ]
     if found.ratings.inductor_saturation is None:
         told.append(
@@ -270,12 +315,25 @@ def _inrush(found: Findings) -> str:
     return " ".join(told)
 
 
+def _let_through(found: Findings) -> str:
+    """The end of a sentence on what a fuse lets through, where that is bounded."""
+    until = found.let_through_end
+    passed, when = found.let_through(until), "over all time"
+    if not math.isfinite(passed.nominal):
+        return ""
+    if found.sine:
+        when = "in the first source period"
+    elif until is not None:
+        when = f"in the first {show(until, 'time')}"
+    return f"; the let-through {when} is {passed}"
+
+
 def _fuse(found: Findings) -> str:
     fuse = found.fuse
     if fuse is None:
         return ""
     target = fuse.target(found.case)
-    passed = show(float(target.values(found.case)), "let_through")
+    passed = found.let_through(target.at)
     melting = show(fuse.melting_let_through, "let_through")
     return (
         f"The fuse melts at {melting}; the let-through of one switch-on is {passed}. For"
@@ -285,79 +343,12 @@ def _fuse(found: Findings) -> str:
 
 
 def _interrupting(found: Findings) -> str:
-    current = found.current.nominal
-    energy = 0.5 * float(found.loop.total_inductance) * current * current
-    if not exceeds(energy, ARC_ENERGY):
+    if not exceeds(found.inductive_energy.highest, ARC_ENERGY):
         return ""
     return (
-        f"The inductance stores {show(energy, 'energy')} at the peak current of"
-        f" {show(current, 'current')}. Opening the loop while current flows (a bouncing contact,"
-        " a blowing fuse) turns it into an arc and an overvoltage across the opening."
-    )
-
-
-def _closing_angle(found: Findings) -> str:
-    if not found.searched:
-        return ""
-    case, worst = found.case, found.worst_closing
-    angles = {element: found.worst_angle(element) for element in ("current", "capacitor")}
-    if case.source.closing_angle is None:
-        turn = math.pi if found.at_rest else 2 * math.pi
-        apart = (angles["current"] - angles["capacitor"] + turn / 2) % turn - turn / 2
-        if not abs(apart) > _SAME_ANGLE:
-            return ""
-        first, second = (show(angle, "angle", 3) for angle in angles.values())
-        return (
-            f"The largest current (closing at {first}) and the largest capacitor voltage (closing"
-            f" at {second}) belong to different closings; no single one shows both."
-        )
-    told = [
-        f"{words} {show(peak_of(worst, element), kind)}"
-        + (f" (at {show(angles[element], 'angle', 3)})" if math.isfinite(angles[element]) else "")
-        for element, words, kind in _WATCHED
-        if peak_of(worst, element) > NOTABLE_RISE * peak_of(case, element)
-    ]
-    if not told:
-        return ""
-    return (
-        f"The peaks hold for closing at {show(float(case.source.closing_angle), 'angle')}; an"
-        " uncontrolled switch closes anywhere. At the worst angle of each:"
-        f" {' and '.join(told)}, peak."
-    )
-
-
-def _trapped_charge(found: Findings) -> str:
-    case, told = found.case, []
-    trapped = float(case.capacitor_voltage)
-    if trapped and found.level:
-        told.append(
-            f"The peaks hold for a capacitor charged to {show(trapped, 'voltage')} at closing"
-        )
-        if found.sine:
-            told[0] += "; another charge changes them."
-        else:
-            other = Case(case.loop, case.source, -case.capacitor_voltage, case.initial_current)
-            told[0] += f"; with the opposite polarity {_peaks_of(other)}."
-    left = found.steady("dielectric")
-    if found.searched and math.isfinite(left) and left > 0:
-        again = found.reclosing(left)
-        if any(
-            peak_of(again, element) > NOTABLE_RISE * peak_of(found.worst_closing, element)
-            for element, _, _ in _WATCHED
-        ):
-            until = "" if math.isinf(found.loop.load_resistance) else " until the load drains it"
-            told.append(
-                f"Opening can leave {show(left, 'voltage')} on the capacitor{until}. Reclosing"
-                f" onto it at the worst angle of each, {_peaks_of(again)}."
-            )
-    return " ".join(told)
-
-
-def _peaks_of(case: Case) -> str:
-    """Both peaks of another closing, as the end of a sentence."""
-    return (
-        f"the current reaches {show(peak_of(case, 'current'), 'current')}"
-        f" and the capacitor voltage {show(peak_of(case, 'capacitor'), 'voltage')}, peak"
+        f"Peak current: {found.current}. Energy in the inductance: {found.inductive_energy}."
+        " Opening the loop while current flows (a bouncing contact, a blowing fuse) turns it into"
+        " an arc and an overvoltage across the opening."
     )
 
 
@@ -384,8 +375,6 @@ def _deference(found: Findings) -> str:
     )
 
 
-_REACTIVE = ("capacitor", "inductor")
-_WATCHED = (("current", "current", "current"), ("capacitor", "capacitor voltage", "voltage"))
 _CLOSINGS = ("closing-angle", "trapped-charge")
 
 #: Identifier and rule of each caution, the most hazardous first.
@@ -402,8 +391,8 @@ _RULES: tuple[tuple[str, Callable[[Findings], str]], ...] = (
     ("saturation", _saturation),
     ("inrush", _inrush),
     ("fuse", _fuse),
-    ("closing-angle", _closing_angle),
-    ("trapped-charge", _trapped_charge),
+    ("closing-angle", closing_angle),
+    ("trapped-charge", trapped_charge),
     ("model-limits", _model_limits),
     ("deference", _deference),
 )

@@ -7,10 +7,10 @@ means that such a page states the figure.
 from __future__ import annotations
 
 import math
-from collections.abc import Mapping
-from dataclasses import dataclass, replace
+from collections.abc import Callable, Mapping
+from dataclasses import dataclass, field, replace
 from functools import cached_property
-from typing import NamedTuple
+from typing import Any, NamedTuple
 
 import numpy as np
 
@@ -47,6 +47,7 @@ _LET_THROUGH_TIME_CONSTANTS = 5.0
 # k S exp(-a t): no closing angle and no charge below S lifts their sum by a per cent, and
 # being flat it takes long to search. As shares of the bandwidth:
 _SHARP_QUALITY, _AT_RESONANCE = 100.0, 0.05
+_NO_NAMES: Mapping[str, float] = {}
 
 
 def peak_of(case: Case, element: str) -> float:
@@ -62,15 +63,25 @@ class Size(NamedTuple):
     kind: str
 
     def __str__(self) -> str:
-        nominal, highest = show(self.nominal, self.kind), show(self.highest, self.kind)
+        return self.told(lambda value: show(value, self.kind))
+
+    def told(self, write: Callable[[float], str]) -> str:
+        """Both values, each as `write` puts it; one where they read the same."""
+        nominal, highest = write(self.nominal), write(self.highest)
         if nominal == highest:
             return nominal
-        return f"nominal {nominal}, up to {highest} over the parts"
+        bound = "" if math.isinf(self.highest) else "up to "
+        return f"nominal {nominal}, {bound}{highest} over the parts"
 
 
 def exceeds(value: float, limit: float) -> bool:
     """Whether a value is above a limit by more than rounding; never for not a number."""
     return value > limit * (1 + _ROUNDING)
+
+
+def _highest(values: Any) -> float:
+    """The highest of what exists; not a number where nothing does."""
+    return float(np.fmax.reduce(np.ravel(values)))
 
 
 @dataclass(frozen=True)
@@ -81,10 +92,22 @@ class Findings:
     ratings: Ratings
     worst: Mapping[str, float]
     fuse: Fuse | None = None
+    corners: Case | None = None
+    limits: Mapping[str, float] = field(default_factory=dict)
 
     @property
     def loop(self) -> Loop:
         return self.case.loop
+
+    @cached_property
+    def batch(self) -> Case:
+        """Nominal and corners; the nominal case alone without tolerances."""
+        return self.case if self.corners is None else self.corners
+
+    @property
+    def nominal(self) -> str:
+        """What goes before a number that is the nominal one although parts have tolerances."""
+        return "" if self.corners is None else "nominal "
 
     @property
     def sine(self) -> bool:
@@ -112,49 +135,107 @@ class Findings:
         """Quality factor; infinite without losses."""
         return float(REGISTER["quality_factor"](self.case))
 
-    def size(self, nominal: float, name: str, kind: str, scale: float = 1.0) -> Size:
-        highest = self.worst.get(name)
-        if highest is None or not highest * scale > nominal:
-            return Size(nominal, nominal, kind)
-        return Size(nominal, highest * scale, kind)
+    def size(
+        self, compute: Callable[[Case], Any], kind: str, names: Mapping[str, float] = _NO_NAMES
+    ) -> Size:
+        """A quantity of the nominal case, and its highest over the corners and the samples.
+
+        The samples' highest value may be at hand under one of the register's `names`, each with
+        the factor that makes it the same quantity.
+        """
+        with np.errstate(all="ignore"):
+            nominal = float(compute(self.case))
+            over = nominal if self.corners is None else compute(self.corners)
+        seen = [
+            scale * highest
+            for name, scale in names.items()
+            if (highest := self.worst.get(name)) is not None
+        ]
+        return Size(nominal, _highest([nominal, _highest(over), *seen]), kind)
+
+    def peak(self, element: str, kind: str, name: str = "") -> Size:
+        """Peak of the current [A] or of an element's voltage [V] from closing on."""
+        return self.size(lambda case: case.peak(element).value, kind, {name: 1.0})
 
     @cached_property
     def current(self) -> Size:
         """Peak of the current from closing on [A]."""
-        return self.size(peak_of(self.case, "current"), "peak_current", "current")
+        return self.peak("current", "current", "peak_current")
 
     @cached_property
     def capacitor(self) -> Size:
         """Peak of the voltage across the capacitor's terminals [V]."""
-        return self.size(peak_of(self.case, "capacitor"), "peak_capacitor_voltage", "voltage")
+        return self.peak("capacitor", "voltage", "peak_capacitor_voltage")
 
     @cached_property
     def inductor(self) -> Size:
         """Peak of the voltage across the inductor's terminals [V]."""
-        return self.size(peak_of(self.case, "inductor"), "peak_inductor_voltage", "voltage")
+        return self.peak("inductor", "voltage", "peak_inductor_voltage")
 
     @cached_property
     def charge(self) -> Size:
         """Highest voltage that the capacitor is charged to, behind its series resistance [V]."""
-        terminals = self.capacitor
-        if self.loop.series_resistance == 0:
-            return terminals
-        held = peak_of(self.case, "dielectric")
-        # the terminals' highest value over the parts says nothing of a charge far from theirs
-        if not abs(terminals.nominal - held) <= 0.01 * held:
-            return Size(held, held, "voltage")
-        return Size(held, max(held, terminals.highest), "voltage")
+        held, terminals = peak_of(self.case, "dielectric"), self.capacitor.nominal
+        # the samples' terminals say nothing of a charge far from theirs
+        near = abs(terminals - held) <= 0.01 * held
+        return self.peak("dielectric", "voltage", "peak_capacitor_voltage" if near else "")
+
+    def at_peak(
+        self,
+        formula: Callable[[Any, Any], Any],
+        part: str,
+        element: str,
+        peak: Size,
+        kind: str,
+        name: str = "",
+    ) -> Size:
+        """What follows from a part's value and a peak, each loop with its own of both.
+
+        The samples may reach a higher peak than the corners. Where their highest is not at hand
+        under a name of its own, that peak is taken with the part's highest value.
+        """
+        found = self.size(
+            lambda case: formula(getattr(case.loop, part), case.peak(element).value),
+            kind,
+            {name: 1.0},
+        )
+        corners = _highest(self.batch.peak(element).value)
+        if self.worst.get(name) is not None or not peak.highest > corners:
+            return found
+        with np.errstate(all="ignore"):
+            bound = formula(np.max(getattr(self.batch.loop, part)), peak.highest)
+        return found._replace(highest=_highest([found.highest, bound]))
 
     @cached_property
     def energy(self) -> Size:
         """Energy in the capacitor at its highest charge [J]."""
-        stored = 0.5 * float(self.loop.capacitance) * self.charge.nominal * self.charge.nominal
-        return self.size(stored, "stored_energy", "energy")
+        charged = "capacitance", "dielectric", self.charge
+        return self.at_peak(_stored, *charged, "energy", "stored_energy")
+
+    @cached_property
+    def inductive_energy(self) -> Size:
+        """Energy in the inductance at the peak current [J]."""
+        return self.at_peak(_stored, "total_inductance", "current", self.current, "energy")
+
+    @cached_property
+    def resistor(self) -> Size:
+        """Peak of the voltage across the resistor [V]."""
+        return self.at_peak(np.multiply, "resistance", "current", self.current, "voltage")
+
+    def discharge(self, to: float) -> Size:
+        """Time in which the load takes the capacitor's terminals from its charge to a voltage."""
+        load = float(self.loop.load_resistance)
+        path = load + float(self.loop.series_resistance)
+
+        def time(capacitance: Any, held: Any) -> Any:
+            return path * capacitance * np.maximum(np.log(held * (load / path) / to), 0.0)
+
+        return self.at_peak(time, "capacitance", "dielectric", self.charge, "time")
 
     @cached_property
     def shocks(self) -> bool:
         """Whether the charge that the capacitor holds is worth a caution for its voltage."""
-        voltage, capacitance = self.charge.highest, float(self.loop.capacitance)
+        voltage, capacitance = self.charge.highest, float(np.max(self.batch.loop.capacitance))
         if not exceeds(voltage, TOUCHABLE_DC):
             return False
         if voltage <= SMALL_CAPACITANCE_UP_TO:
@@ -166,19 +247,24 @@ class Findings:
     @cached_property
     def burns(self) -> bool:
         """Whether the energy in the capacitor is worth a caution at any voltage."""
-        highest = 0.5 * float(self.loop.capacitance) * self.charge.highest * self.charge.highest
-        return exceeds(max(highest, self.energy.highest), SMALL_ENERGY)
+        return exceeds(self.energy.highest, SMALL_ENERGY)
 
-    def steady(self, element: str) -> float:
-        """Steady amplitude of ``"current"`` or of a voltage."""
-        return self.level * float(np.abs(getattr(self.case.steady, element)))
+    def steady(self, element: str) -> Size:
+        """Steady amplitude of ``"current"`` [A] or of a voltage [V]."""
+        kind = "current" if element == "current" else "voltage"
+        name = "current" if element == "current" else f"{element}_voltage"
+        names = {f"{name}_amplitude": 1.0, name: 1 / self.case.source.rms_per_amplitude}
+        return self.size(lambda case: self._amplitude(case, element), kind, names)
 
-    def steady_size(self, element: str) -> Size:
-        """Steady amplitude of the capacitor's or inductor's voltage under a sine [V]."""
-        nominal = self.steady(element)
-        amplitude = self.size(nominal, f"{element}_voltage_amplitude", "voltage")
-        from_rms = self.size(nominal, f"{element}_voltage", "voltage", math.sqrt(2))
-        return max(amplitude, from_rms)
+    def _amplitude(self, case: Case, element: str) -> Any:
+        return self.level * np.abs(getattr(case.steady, element))
+
+    @cached_property
+    def inrush(self) -> float:
+        """Highest ratio of a loop's peak current to its own steady amplitude."""
+        with np.errstate(all="ignore"):
+            ratio = self.batch.peak("current").value / self._amplitude(self.batch, "current")
+        return _highest(ratio)
 
     @property
     def at_rest(self) -> bool:
@@ -224,15 +310,19 @@ class Findings:
         return float(REGISTER[f"worst_closing_angle_{name}"](self.worst_closing))
 
     @property
-    def let_through(self) -> str:
-        """The end of a sentence on what a fuse lets through, where that is bounded."""
-        entry, case = REGISTER["let_through"], self.case
-        passed, when = float(entry(case)), "over all time"
-        if self.sine:
-            when = "in the first source period"
-        elif math.isinf(passed) and math.isfinite(self.quality):
-            until = _LET_THROUGH_TIME_CONSTANTS * float(REGISTER["time_constant"](case))
-            passed, when = float(entry(case, until)), f"in the first {show(until, 'time')}"
-        if not math.isfinite(passed):
-            return ""
-        return f"; the let-through is {show(passed, 'let_through')} {when}"
+    def let_through_end(self) -> float | None:
+        """Until when the let-through counts, where it would grow for ever; else None [s]."""
+        if self.sine or not math.isfinite(self.quality):
+            return None
+        if math.isfinite(float(REGISTER["let_through"](self.case))):
+            return None
+        return _LET_THROUGH_TIME_CONSTANTS * float(REGISTER["time_constant"](self.case))
+
+    def let_through(self, until: float | None) -> Size:
+        """Let-through of one switch-on, to a stated time or of the whole of it [A^2 s]."""
+        entry, names = REGISTER["let_through"], {"let_through": 1.0} if until is None else _NO_NAMES
+        return self.size(lambda case: entry(case, until), "let_through", names)
+
+
+def _stored(part: Any, peak: Any) -> Any:
+    return 0.5 * part * peak * peak

@@ -1,11 +1,15 @@
 """Loops whose answers are known by hand, and numbers read back from a caution's text."""
 
+import itertools
 import math
 import re
+from dataclasses import fields
+
+import numpy as np
 
 from rlc.render.cautions import Caution, cautions
 from rlc.solver.case import Case
-from rlc.solver.loop import make_loop
+from rlc.solver.loop import Loop, make_loop
 from rlc.solver.source import sine
 from rlc.solver.targets import Ratings
 
@@ -26,8 +30,8 @@ def lossless(inductance, capacitance, **more):
     return loop(0.0, inductance, capacitance, **more)
 
 
-def told(case, ratings=None, worst=None):
-    found = cautions(case, ratings or Ratings(), worst)
+def told(case, ratings=None, worst=None, **more):
+    found = cautions(case, ratings or Ratings(), worst, **more)
     assert all(isinstance(each, Caution) for each in found)
     return {each.id: each.text for each in found}
 
@@ -47,6 +51,18 @@ def holds(text, unit, value):
     """Whether a text has this value, to the digits printed."""
     slack = 1e-9 * value
     return any(low - slack <= value <= high + slack for low, high in printed(text, unit))
+
+
+def spread_over(case, resistance=(1, 1), inductance=(1, 1), capacitance=(1, 1)):
+    """The corners of a loop whose parts lie between these multiples of their nominal values."""
+    nominal = case.loop
+    rows = [(1, 1, 1), *itertools.product(resistance, inductance, capacitance)]
+    values = {each.name: getattr(nominal, each.name) for each in fields(Loop)}
+    for name, factors in zip(
+        ("resistance", "inductance", "capacitance"), np.transpose(rows), strict=True
+    ):
+        values[name] = values[name] * factors
+    return Case(Loop(**values), case.source, case.capacitor_voltage, case.initial_current)
 
 
 def resonant(quality, amplitude, angle=0.0):

@@ -5,7 +5,7 @@ import re
 
 import numpy as np
 import pytest
-from hand import holds, loop, lossless, resonant, told
+from hand import holds, loop, lossless, resonant, spread_over, told
 from hypothesis import given
 from hypothesis import strategies as st
 
@@ -46,7 +46,7 @@ def test_a_chosen_closing_angle_is_held_against_the_worst_one():
 def test_the_angle_in_the_text_is_the_worst_of_all():
     parts, frequency = loop(0.3, 1.0, 1.0), 0.13 / (2 * math.pi)
     text = told(Case(parts, sine(10.0, frequency, 0.2)))["closing-angle"]
-    named = [float(angle) for angle in re.findall(r"\(at ([\d.]+) deg\)", text)]
+    named = [float(angle) for angle in re.findall(r"\(at ([\d.]+) deg\b", text)]
     angles = np.radians(np.arange(0, 180, 0.25))
     scan = Case(parts, sine(10.0, frequency, angles))
     for element, angle in zip(("current", "capacitor"), named, strict=True):
@@ -71,6 +71,73 @@ def test_reclosing_onto_what_opening_leaves():
     assert holds(text, "V", 3 * steady)
     assert holds(text, "A", steady * (0.1 + 2))
     assert "load" not in text
+
+
+def worst_of_reclosing(x):
+    """Free amplitude over S from a charge of S, at the worst angle: sine 1/(x^2 - 1) there.
+
+    Of (sin phi + 1)^2 + x^2 cos(phi)^2 the derivative is zero where sin phi (x^2 - 1) = 1.
+    """
+    rising = 1 / (x * x - 1)
+    return math.sqrt((rising + 1) ** 2 + x * x * (1 - rising**2))
+
+
+def test_reclosing_is_worth_a_sentence_from_a_tenth_more_on():
+    # At x = 3 the capacitor reaches (1 + 3.18) S from a charge and (1 + 3) S from rest: 4.5 %.
+    case, steady = fast_loop(3.0, 10.0, None)
+    before, after = 4 * abs(steady), (1 + worst_of_reclosing(3.0)) * abs(steady)
+    assert 1.01 * before < after < 1.1 * before
+    assert "trapped-charge" not in told(case)
+    # At x = 1.8 it is (1 + 2.165)/(1 + 1.8): 13 %.
+    case, steady = fast_loop(1.8, 10.0, None)
+    text = told(case)["trapped-charge"]
+    assert holds(text, "V", (1 + worst_of_reclosing(1.8)) * abs(steady))
+    assert holds(text, "A", (1.8 + worst_of_reclosing(1.8)) * abs(steady))
+
+
+@pytest.mark.parametrize("share", [0.999, 1.001])
+def test_a_limit_that_reclosing_breaks_is_named_even_for_a_smaller_rise(share):
+    case, steady = fast_loop(3.0, 10.0, None)
+    voltage = (1 + worst_of_reclosing(3.0)) * abs(steady)
+    current = (3 + worst_of_reclosing(3.0)) * abs(steady)
+    for ratings, limits, words in (
+        (Ratings(capacitor_voltage=share * voltage), {}, "V (above the rated"),
+        (Ratings(inductor_saturation=share * current), {}, "A (above the rated"),
+        (Ratings(), {"peak_current": share * current}, "A (above the target of"),
+        (Ratings(), {"peak_capacitor_voltage": share * voltage}, "V (above the target of"),
+    ):
+        found = told(case, ratings, limits=limits)
+        assert ("trapped-charge" in found) is (share < 1)
+        assert share > 1 or found["trapped-charge"].count(words) == 1
+        assert share > 1 or found["trapped-charge"].count("above") == 1
+
+
+def test_both_limits_are_named_where_both_are_broken():
+    case, steady = fast_loop(0.1, 10.0, 0.0)
+    ratings = Ratings(capacitor_voltage=15.0)
+    found = told(case, ratings, limits={"peak_capacitor_voltage": 12.0, "peak_current": 30.0})
+    # 2 S and 3 S are above both, 1.1 S and 2.1 S of current below 30 A
+    assert steady == pytest.approx(10.101, abs=1e-3)
+    for name in ("closing-angle", "trapped-charge"):
+        assert "above the rated 15 V and the target of 12 V" in found[name]
+        assert "30 A" not in found[name]
+
+
+def test_the_other_polarity_is_held_against_the_limits_too():
+    case = Case(lossless(1.0, 1.0), constant(24.0), 10.0)
+    text = told(case, limits={"peak_current": 33.0, "peak_capacitor_voltage": 58.1})
+    assert "34 A (above the target of 33 A)" in text["trapped-charge"]
+    assert "58 V, peak" in text["trapped-charge"]
+
+
+def test_other_closings_are_said_to_be_those_of_nominal_parts():
+    case, steady = fast_loop(0.1, 10.0, 0.0)
+    corners = spread_over(case, capacitance=(0.9, 1.1))
+    found = told(case, corners=corners)
+    assert "each, with nominal parts: current" in found["closing-angle"]
+    assert "each, with nominal parts, the current" in found["trapped-charge"]
+    assert holds(found["trapped-charge"], "V", 3 * steady)
+    assert not any("nominal" in text for text in told(case).values())
 
 
 def test_a_charged_capacitor_of_the_other_polarity():
@@ -123,12 +190,14 @@ def test_a_loop_without_losses():
 def test_unbounded_peaks_are_said_to_be_so():
     # No two doubles L and C meet a frequency to the solver's 32 digits: the peaks are put in.
     unbounded = Peak(*(np.asarray(each) for each in (np.inf, np.inf, 0.0, 0.0)))
-    peaks = dict.fromkeys(("current", "capacitor", "inductor"), unbounded)
-    found = told(Case(lossless(1.0, 1.0), sine(1.0, 1 / (2 * math.pi)), _peaks=peaks))
+    peaks = dict.fromkeys(("current", "capacitor", "inductor", "dielectric"), unbounded)
+    case = Case(lossless(1.0, 1.0), sine(1.0, 1 / (2 * math.pi)))
+    case._peaks.update(peaks)
+    found = told(case)
     assert "as here, it grows without bound" in found["undamped"]
     assert "capacitor unbounded" in found["extra-low-voltage"]
     assert "unbounded" in found["stored-energy"]
-    assert "may hold up to any voltage" in found["residual-voltage"]
+    assert "It may hold for a long time: any voltage" in found["residual-voltage"]
     assert "unbounded" in found["capacitor-overvoltage"]
 
 
@@ -223,9 +292,17 @@ WORST = st.dictionaries(
 )
 
 
-@given(switch_ons(), RATINGS, WORST)
-def test_any_loop_gets_cautions_in_plain_words(case, ratings, worst):
-    found = cautions(case, ratings, worst)
+LIMITS = st.dictionaries(
+    st.sampled_from(("peak_current", "peak_capacitor_voltage")), decades(-3, 6)
+)
+FACTORS = st.just((1, 1)) | st.tuples(st.floats(0.5, 1), st.floats(1, 2))
+
+
+@given(switch_ons(), RATINGS, WORST, st.tuples(FACTORS, FACTORS, FACTORS), LIMITS)
+def test_any_loop_gets_cautions_in_plain_words(case, ratings, worst, factors, limits):
+    corners = None if np.ravel(factors).max() == 1 else spread_over(case, *factors)
+    found = cautions(case, ratings, worst, corners=corners, limits=limits)
+    assert worst or corners or not any("over the parts" in each.text for each in found)
     assert [each.id for each in found[-2:]] == ["model-limits", "deference"]
     assert len({each.id for each in found}) == len(found)
     for each in found:

@@ -197,9 +197,35 @@ def test_the_discharge_is_held_against_the_rule_for_its_voltage(volts, seconds, 
     capacitance = seconds / (load * math.log(volts / 50))
     case = Case(slow(capacitance, load_resistance=load), constant(volts))
     text = told(case)["residual-voltage"]
-    assert "for information" in text
+    assert "For information" in text
     assert rule in text
     assert f"takes {word}" in text
+
+
+def test_the_capacitor_decides_which_rule_it_is_and_not_the_source():
+    # 1200 V dc over 1 Mohm and 3 Mohm: the capacitor has 900 V
+    parts = loop(1e6, 1e-6, 1e-6, load_resistance=3e6)
+    text = told(Case(parts, constant(1200.0)))["residual-voltage"]
+    assert "NEC 460.6" in text
+    assert "with 900 V in steady state" in text
+    # 600 V rms with a quality factor of 2 at resonance: 1200 V rms; a load of 1 Gohm is none
+    case = resonant(2, 600 * ROOT2)
+    resistance = float(case.loop.resistance)
+    case = Case(loop(resistance, 1e-3, 1e-6, load_resistance=1e9), case.source)
+    text = told(case)["residual-voltage"]
+    assert "Title 8" in text
+    assert "with 1.2 kV rms in steady state" in text
+
+
+@pytest.mark.parametrize(
+    ("seconds", "written"), [(119.9, "119.9 s"), (120.6, "2.01 min"), (1266.0, "21.1 min")]
+)
+def test_long_discharges_are_told_in_minutes(seconds, written):
+    load = 1e6
+    capacitance = seconds / (load * math.log(400 / 50))
+    text = told(Case(slow(capacitance, load_resistance=load), constant(400.0)))
+    # 200 times the square root of 1 uH over at least 50 uF: a divider by less than 1e-4
+    assert f"to 50 V in {written}." in text["residual-voltage"]
 
 
 def test_a_low_voltage_store_with_a_load_has_a_time_constant():
@@ -238,7 +264,9 @@ def test_capacitor_voltage_above_its_rating():
 def test_capacitor_voltage_without_a_rating():
     text = told(Case(lossless(1e-6, 1e-6), constant(24.0)))["capacitor-overvoltage"]
     assert "No voltage rating is stated for peaks" in text
-    assert "(2 times the source's peak)" in text
+    assert "48 V (2 times the source)." in text
+    text = told(resonant(10, 5.0))["capacitor-overvoltage"]
+    assert "50 V (10 times the source's peak)." in text
     assert "capacitor-overvoltage" not in told(Case(slow(1e-6), constant(24.0)))
     # overshoot exp(-pi zeta/sqrt(1 - zeta^2)) is 0.2 at a damping ratio of 0.456
     for zeta, speaks in ((0.45, True), (0.46, False)):
@@ -259,12 +287,12 @@ def test_steady_capacitor_voltage_above_its_rms_rating():
 
 def test_magnification_in_steady_state():
     text = told(resonant(10, 5.0))["magnification"]
-    assert text.count(" 10 times (50 V peak)") == 2  # at resonance both have Q times the source
+    assert text.count(" 50 V (10 times)") == 2  # at resonance both have Q times the source
     assert "magnification" not in told(resonant(1.99, 5.0))
     assert "magnification" in told(resonant(2.01, 5.0))
     worst = {"capacitor_voltage": 11.0 / ROOT2}
     text = told(resonant(1.99, 5.0), worst=worst)["magnification"]
-    assert "up to 11 V over the parts peak" in text
+    assert "up to 11 V (2.2 times) over the parts" in text
     assert "inductor" not in text
     assert "magnification" not in told(Case(lossless(1e-3, 1e-6), constant(5.0)))
 
@@ -317,7 +345,7 @@ def test_inrush_of_an_ideal_capacitor():
 def test_let_through_of_an_inrush():
     # all of C V^2/2 is lost in the resistance: integral of i^2 = C V^2/(2 R)
     text = told(Case(loop(0.1, 1e-6, 100e-6), constant(24.0)))["inrush"]
-    assert f"{100e-6 * 24**2 / 0.2:.4g} A^2 s over all time" in text
+    assert f"the let-through over all time is {100e-6 * 24**2 / 0.2:.4g} A^2 s." in text
 
 
 def test_let_through_beside_a_load_is_that_of_the_inrush():
