@@ -74,7 +74,13 @@ class Review:
         return all(outcome.verdict != "fails" for outcome in limited)
 
     def document(self) -> dict[str, Any]:
-        """Everything in it as one JSON document, in SI units."""
+        """Everything in it as one JSON document, in SI units.
+
+        Returns
+        -------
+        dict
+            Ready for JSON; no number is nan or infinite.
+        """
         loaded, batch = self.loaded, self.spread
         found: dict[str, Any] = {
             "title": loaded.inputs.title,
@@ -109,6 +115,11 @@ class Review:
         ----------
         names : iterable of {"frequency-response", "switch-on", "state-plane", "spread"}
             Which to draw; "spread" stands for one histogram per outcome.
+
+        Returns
+        -------
+        dict of str to callable
+            Each returns a matplotlib figure when it is called.
         """
         from rlc.render import plots
 
@@ -171,7 +182,27 @@ def check(
 def judge(
     loaded: Loaded, targets: Iterable[Target], samples: int, seed: int
 ) -> tuple[Spread, tuple[Outcome, ...]]:
-    """Put the sheet's parts through their spread, and each target through that."""
+    """Put the sheet's parts through their spread, and each target through that.
+
+    Parameters
+    ----------
+    loaded : Loaded
+        The sheet.
+    targets : iterable of Target
+        What to judge.
+    samples, seed : int
+        Random units that are drawn, zero to 1e6, and what they follow from, zero or more.
+
+    Returns
+    -------
+    spread, outcomes : Spread, tuple of Outcome
+        The batch, and one outcome per target.
+
+    Raises
+    ------
+    InputError
+        If `samples` or `seed` is out of range, or a target does not go with the source.
+    """
     batch = spread(loaded.inputs.case, loaded.inputs.parts, samples, seed)
     return batch, tuple(batch.outcome(target) for target in targets)
 
@@ -191,6 +222,10 @@ def review(
         Registered quantities to evaluate.
     judged : tuple, optional
         What :func:`judge` gave.
+
+    Returns
+    -------
+    Review
     """
     case = loaded.inputs.case
     batch, outcomes = judged or (None, ())
@@ -225,12 +260,35 @@ def review(
 
 
 def names_in(*groups: str) -> tuple[str, ...]:
-    """Names of the registered quantities of some groups."""
+    """Names of the registered quantities of some groups.
+
+    Parameters
+    ----------
+    *groups : {"loop", "steady", "switch-on"}
+        Which to list.
+
+    Returns
+    -------
+    tuple of str
+        In the register's order.
+    """
     return tuple(name for name, entry in REGISTER.items() if entry.group in groups)
 
 
 def asked_targets(loaded: Loaded, names: Iterable[str]) -> tuple[Target, ...]:
     """What `rlc spread` looks at: the named quantities, else the targets, else the usual ones.
+
+    Parameters
+    ----------
+    loaded : Loaded
+        The sheet.
+    names : iterable of str
+        Registered quantities; may be empty.
+
+    Returns
+    -------
+    tuple of Target
+        Named quantities with their limits, where the sheet has any.
 
     Raises
     ------

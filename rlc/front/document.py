@@ -28,7 +28,19 @@ _WHERE = re.compile(r" \(at line (\d+), column (\d+)\)$")
 
 
 class Change(NamedTuple):
-    """What a flag has done to one key of the sheet; None where there is no value."""
+    """What a flag has done to one key of the sheet.
+
+    Attributes
+    ----------
+    option : str
+        The flag, such as ``--load``.
+    key : str
+        The key with its table, such as ``load.resistance``.
+    old : object
+        What the sheet had; None if nothing.
+    new : str or None
+        What the flag put there; None if it dropped the key.
+    """
 
     option: str
     key: str
@@ -68,7 +80,18 @@ class Document:
     changes: tuple[Change, ...] = ()
 
     def line_of(self, path: KeyPath) -> int | None:
-        """Line of a key, or of the nearest table around it."""
+        """Line of a key, or of the nearest table around it.
+
+        Parameters
+        ----------
+        path : tuple of str and int
+            Tables, their place in a list of tables, and the key.
+
+        Returns
+        -------
+        int or None
+            From one; None if not even the table is in the sheet.
+        """
         for end in range(len(path), 0, -1):
             if path[:end] in self.lines:
                 return self.lines[path[:end]]
@@ -113,12 +136,17 @@ def _levels(given: Mapping[str, str]) -> list[Flag]:
 
 
 def check_flags(given: Mapping[str, str]) -> None:
-    """Raise InputError if a flag is unknown, or if flags contradict each other.
+    """Check that every flag is known, and that flags do not contradict each other.
 
     Parameters
     ----------
     given : mapping of str to str
         Option, such as ``--resistance``, to its text.
+
+    Raises
+    ------
+    InputError
+        For the first flag that does not pass.
     """
     known = [flag.option for flag in FLAGS + TOLERANCE_FLAGS]
     for option in given:

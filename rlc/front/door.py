@@ -40,6 +40,11 @@ class Door:
         text : str
             A number with a unit; where no unit is missing a bare number will do.
 
+        Returns
+        -------
+        float or None
+            SI value [unit of `kind`]; None for the word that stands for it.
+
         Raises
         ------
         InputError

@@ -32,16 +32,14 @@ class Kind(NamedTuple):
 
     Attributes
     ----------
-    symbol : str
-        Unit symbol that is printed.
-    pint : str
-        SI unit in pint's words.
+    symbol, pint : str
+        Unit symbol that is printed, and SI unit in pint's words.
     units : dict of str to Decimal
-        Unit symbols and the exact SI value of each; "" where a bare number will do.
+        Unit symbols and the exact value of each [SI]; "" where a bare number will do.
     prefixes : bool
         Whether SI prefixes go before the symbols.
     plausible : tuple of float or None
-        Range [SI] outside of which a value other than zero gets a note.
+        Range outside of which a value other than zero gets a note [SI].
     example : str
         A text to paste.
     """
@@ -140,7 +138,7 @@ class Tolerance:
     Attributes
     ----------
     low, high : float
-        Signed offsets; fractions of the nominal if `relative`, else in the nominal's SI unit.
+        Signed offsets; shares of the nominal [1] if `relative`, else in its own unit [SI].
     relative : bool
         Which of the two they are.
     text : str
@@ -158,7 +156,7 @@ class Tolerance:
         Parameters
         ----------
         nominal : float
-            SI value. A relative tolerance goes with its magnitude: +80 % of -5 V is -9 V.
+            Value [SI]. A relative tolerance goes with its magnitude: +80 % of -5 V is -9 V.
 
         Returns
         -------
@@ -276,7 +274,13 @@ def label(kind: str) -> str:
 
 
 def scale_of(unit: str, kind: str) -> Decimal | None:
-    """Exact SI value of a unit in our table, prefix included; None if it is not of this kind."""
+    """Exact value of a unit in our table, prefix included, or None if not of this kind [SI].
+
+    Parameters
+    ----------
+    unit, kind : str
+        A unit as it was typed, and a key of `KINDS`.
+    """
     entry = KINDS[kind]
     if unit in entry.units:
         return entry.units[unit]
@@ -286,7 +290,13 @@ def scale_of(unit: str, kind: str) -> Decimal | None:
 
 
 def respelled(unit: str, kind: str) -> str:
-    """The unit of this kind that differs from `unit` by capital letters only, or nothing."""
+    """The unit of this kind that differs from `unit` by capital letters only, or nothing.
+
+    Parameters
+    ----------
+    unit, kind : str
+        As for `scale_of`.
+    """
     entry = KINDS[kind]
     for symbol in filter(None, entry.units):
         if unit.casefold() == symbol.casefold():
@@ -297,7 +307,15 @@ def respelled(unit: str, kind: str) -> str:
 
 
 def note_on(value: float, kind: str) -> str:
-    """A sentence if the SI value is outside the plausible range, else nothing."""
+    """A sentence if the SI value is outside the plausible range, else nothing.
+
+    Parameters
+    ----------
+    value : float
+        Finite [unit of `kind`].
+    kind : str
+        Key of `KINDS`.
+    """
     usual = KINDS[kind].plausible
     if usual is None or value == 0 or usual[0] <= abs(value) <= usual[1]:
         return ""
@@ -349,10 +367,8 @@ def decode_tolerance(text: str, kind: str, nominal: float | None = None) -> Tole
 
     Parameters
     ----------
-    text : str
-        One capital letter.
-    kind : str
-        What is marked, as for `decode_value`.
+    text, kind : str
+        One capital letter, and what is marked, as for `decode_value`.
     nominal : float, optional
         Its value [SI]. On a capacitor below 10 pF the letters B, C, D, F and G mean picofarads;
         if the value is not known they are taken as per cent.

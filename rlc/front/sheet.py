@@ -45,7 +45,19 @@ class Table(BaseModel):
 
 
 class Toleranced(Table):
-    """A part whose value differs from unit to unit."""
+    """A part whose value differs from unit to unit.
+
+    Attributes
+    ----------
+    value : float
+        Nominal, in the kind's unit [SI].
+    tolerance : Tolerance or None
+        Limits around it; none if the value is exact.
+    distribution : {"uniform", "normal", "triangular"}
+        How units lie between the limits.
+    sigmas : float or None
+        Standard deviations from centre to limit, more than zero; with "normal" only [1].
+    """
 
     kind: ClassVar[str]
     field: ClassVar[str]
@@ -72,13 +84,26 @@ class Toleranced(Table):
         return self
 
     def part(self) -> Part:
-        """The value with its limits."""
+        """The value with its limits.
+
+        Returns
+        -------
+        Part
+        """
         limits = self.tolerance.limits(self.value) if self.tolerance else (self.value, self.value)
         return Part(self.field, self.value, *limits, self.distribution, self.sigmas or 0.0)
 
 
 class Resistor(Toleranced):
-    """``[resistor]``."""
+    """``[resistor]``.
+
+    Attributes
+    ----------
+    value : float
+        Zero or more [ohm].
+    rated_power : float or None
+        Continuous, more than zero [W].
+    """
 
     kind, field = "resistance", "resistance"
 
@@ -87,7 +112,19 @@ class Resistor(Toleranced):
 
 
 class Inductor(Toleranced):
-    """``[inductor]``: rated_current is rms, saturation_current peak."""
+    """``[inductor]``.
+
+    Attributes
+    ----------
+    value : float
+        More than zero [H].
+    winding_resistance : float
+        Zero or more [ohm].
+    rated_current : float or None
+        Continuous rms, more than zero [A].
+    saturation_current : float or None
+        Peak, more than zero [A].
+    """
 
     kind, field = "inductance", "inductance"
 
@@ -98,7 +135,19 @@ class Inductor(Toleranced):
 
 
 class Capacitor(Toleranced):
-    """``[capacitor]``: rated_voltage holds at every instant, rated_voltage_rms in steady state."""
+    """``[capacitor]``.
+
+    Attributes
+    ----------
+    value : float
+        More than zero [F].
+    series_resistance : float
+        Zero or more [ohm].
+    rated_voltage : float or None
+        Dc or peak, at every instant; more than zero [V].
+    rated_voltage_rms : float or None
+        Rms in steady state, more than zero [V].
+    """
 
     kind, field = "capacitance", "capacitance"
 
@@ -109,20 +158,42 @@ class Capacitor(Toleranced):
 
 
 class LoadTable(Table):
-    """``[load]``: what lies across the capacitor."""
+    """``[load]``: what lies across the capacitor.
+
+    Attributes
+    ----------
+    resistance : float
+        More than zero [ohm].
+    """
 
     resistance: OhmsAbove
 
 
 class FuseTable(Table):
-    """``[fuse]``: what melts it at once, and how often the switch closes in its life."""
+    """``[fuse]``: what melts it at once, and how often the switch closes in its life.
+
+    Attributes
+    ----------
+    melting_let_through : float
+        More than zero [A^2 s].
+    operations : int
+        1 to 1e5.
+    """
 
     melting_let_through: Annotated[float, Door("let_through", "above zero")]
     operations: int = Field(ge=1, le=MOST_OPERATIONS, strict=True)
 
 
 class Dc(Table):
-    """``[source]`` with kind = "dc"."""
+    """``[source]`` with kind = "dc".
+
+    Attributes
+    ----------
+    voltage : float
+        Level, of either sign [V].
+    resistance, inductance : float
+        Inside the source, zero or more [ohm], [H].
+    """
 
     kind: Literal["dc"]
     voltage: Volts
@@ -131,7 +202,17 @@ class Dc(Table):
 
 
 class Sine(Table):
-    """``[source]`` with kind = "sine": rms or amplitude, never both."""
+    """``[source]`` with kind = "sine": rms or amplitude, never both.
+
+    Attributes
+    ----------
+    rms, amplitude : float or None
+        Root mean square or peak value, more than zero [V].
+    frequency : float
+        More than zero [Hz].
+    resistance, inductance : float
+        Inside the source, zero or more [ohm], [H].
+    """
 
     kind: Literal["sine"]
     rms: VoltsAbove | None = None
@@ -142,7 +223,17 @@ class Sine(Table):
 
 
 class SwitchOn(Table):
-    """``[switch_on]``: the states at closing."""
+    """``[switch_on]``: the states at closing.
+
+    Attributes
+    ----------
+    closing_angle : float or None
+        Of a sine, from its rising zero; None for the worst one [rad].
+    capacitor_voltage : float
+        Behind the series resistance [V].
+    initial_current : float
+        In the loop [A].
+    """
 
     closing_angle: Annotated[float | None, Door("angle", word="worst")] = 0.0
     capacitor_voltage: Volts = 0.0
@@ -150,7 +241,21 @@ class SwitchOn(Table):
 
 
 class TargetTable(Table):
-    """``[[target]]``: limits on one registered quantity."""
+    """``[[target]]``: limits on one registered quantity.
+
+    Attributes
+    ----------
+    quantity : str
+        Name in the register.
+    at : float or None
+        Frequency, time or band, more than zero [Hz], [s], [1].
+    across : {"resistor", "inductor", "capacitor"} or None
+        Element whose voltage is meant.
+    min, max : float or None
+        Limits, one of them at least [SI unit of the quantity].
+    goal : float or None
+        ``yield`` in a sheet: share of units, above zero to 1 [1].
+    """
 
     quantity: Literal[tuple(REGISTER)]  # type: ignore[valid-type]
     at: float | None = None
@@ -189,12 +294,33 @@ class TargetTable(Table):
         return self
 
     def target(self) -> Target:
-        """The solver's target."""
+        """The solver's target.
+
+        Returns
+        -------
+        Target
+        """
         return Target(self.quantity, self.min, self.max, self.at, self.across, self.goal)
 
 
 class Sheet(Table):
-    """A whole sheet, in SI units."""
+    """A whole sheet, in SI units.
+
+    Attributes
+    ----------
+    title : str
+        One line of at most 120 characters; may be empty.
+    resistor, inductor, capacitor : Resistor, Inductor, Capacitor
+        The three parts.
+    source : Dc or Sine
+        What drives them.
+    load, fuse : LoadTable or None, FuseTable or None
+        None if the sheet has no such table.
+    switch_on : SwitchOn
+        At rest, from the rising zero, if the sheet has no such table.
+    target : tuple of TargetTable
+        In the order of the sheet.
+    """
 
     title: str = Field(default="", max_length=120)
     resistor: Resistor
@@ -232,7 +358,17 @@ class Sheet(Table):
         return sine(level.amplitude, level.frequency, angle, rms=level.rms)
 
     def inputs(self) -> Inputs:
-        """The solver's objects."""
+        """The solver's objects.
+
+        Returns
+        -------
+        Inputs
+
+        Raises
+        ------
+        InputError
+            If values that are right one by one do not go together.
+        """
         states = self.switch_on
         parts: tuple[Toleranced, ...] = (self.resistor, self.inductor, self.capacitor)
         ratings = Ratings(

@@ -57,7 +57,7 @@ class Reading(NamedTuple):
     Attributes
     ----------
     value : float
-        SI value.
+        In the unit of its kind [SI].
     note : str
         Empty, or a sentence that says why the value looks like a slip.
     """
@@ -128,7 +128,7 @@ def to_si(value: object, kind: str, name: str) -> float | NDArray[np.float64]:
     Returns
     -------
     float or numpy.ndarray
-        SI value; a new array with the shape of `value` if that is an array.
+        Value [unit of `kind`]; a new array with the shape of `value` if that is an array.
 
     Raises
     ------

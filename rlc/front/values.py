@@ -64,6 +64,15 @@ def constant(voltage: Any) -> Source:
     ----------
     voltage : str, float, array_like or pint quantity
         Its level [V].
+
+    Returns
+    -------
+    Source
+
+    Raises
+    ------
+    InputError
+        If it cannot be read.
     """
     return _source.constant(to_si(voltage, "voltage", "voltage"))
 
@@ -81,6 +90,10 @@ def sine(
         More than zero [Hz].
     closing_angle : str, float, array_like or pint quantity
         From the rising zero [rad], "30 deg"; or "worst", to be searched for.
+
+    Returns
+    -------
+    Source
 
     Raises
     ------
@@ -108,6 +121,11 @@ class Case(_case.Case):
         From :func:`constant` or :func:`sine`.
     capacitor_voltage, initial_current : str, float, array_like or pint quantity
         States at closing [V], [A].
+
+    Raises
+    ------
+    InputError
+        If a state at closing cannot be read or is not finite.
     """
 
     def __post_init__(self) -> None:
@@ -116,11 +134,26 @@ class Case(_case.Case):
         super().__post_init__()
 
     def steady_at(self, frequency: Any) -> SteadyState:
-        """The steady state at a stated frequency [Hz]; text and pint quantities as well."""
+        """The steady state at a stated frequency; text and pint quantities as well.
+
+        Parameters
+        ----------
+        frequency : str, float, array_like or pint quantity
+            Zero or more [Hz].
+
+        Returns
+        -------
+        SteadyState
+
+        Raises
+        ------
+        InputError
+            If it cannot be read or is below zero.
+        """
         return super().steady_at(to_si(frequency, "frequency", "frequency"))
 
     def waveforms(self, time: Any, closing_angle: Any = None) -> Waveforms:
-        """The switch-on at given times [s]; text and pint quantities as well.
+        """The switch-on at given times; text and pint quantities as well.
 
         Parameters
         ----------
@@ -128,12 +161,22 @@ class Case(_case.Case):
             Shape (n,), zero or more [s].
         closing_angle : str, float or pint quantity, optional
             Replaces the source's own; needed where that is the worst one [rad].
+
+        Returns
+        -------
+        Waveforms
+            Shape of the batch, then (n,).
+
+        Raises
+        ------
+        InputError
+            If a value cannot be read, a time is below zero, or no closing angle is known.
         """
         angle = None if closing_angle is None else to_si(closing_angle, "angle", "closing_angle")
         return super().waveforms(np.atleast_1d(to_si(time, "time", "time")), angle)
 
     def quantity(self, name: str, at: Any = None, across: str | None = None) -> Array:
-        """One registered quantity for each loop of the batch [SI].
+        """One registered quantity for each loop of the batch.
 
         Parameters
         ----------
@@ -143,6 +186,11 @@ class Case(_case.Case):
             Where it is asked for: a frequency [Hz], a time [s] or a band [1].
         across : str, optional
             Element whose voltage is meant: resistor, inductor or capacitor.
+
+        Returns
+        -------
+        Array
+            With the batch's shape; nan where it does not exist, infinite where unbounded [SI].
 
         Raises
         ------

@@ -29,7 +29,7 @@ class Known(NamedTuple):
     angle : float or None
         Closing angle of a sine; None if every angle is as bad [rad].
     steady : float
-        Steady amplitude, or size of the final value.
+        Steady amplitude, or size of the final value [A or V].
     gap : float
         The true peak is higher by at most this share [1].
     known : str
@@ -45,7 +45,19 @@ class Known(NamedTuple):
 
 
 def peak_of(case: Case, element: str) -> Known:
-    """What is known of the peak of ``"current"`` or of an element's voltage, of one loop."""
+    """What is known of a peak.
+
+    Parameters
+    ----------
+    case : Case
+        One loop.
+    element : {"current", "resistor", "inductor", "capacitor"}
+        The current, or the voltage across a part's terminals.
+
+    Returns
+    -------
+    Known
+    """
     peak = case.peak(element)
     value, time, gap = float(peak.value), float(peak.time), float(peak.gap)
     phasor = case.steady.current if element == "current" else case.steady.across(element)

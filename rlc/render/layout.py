@@ -71,7 +71,26 @@ def _fit(table: Table, width: int) -> None:
 def new_table(
     title: str, *headings: str, words: int = 1, sentence: bool = False, leading: int = 0
 ) -> Table:
-    """A table whose first `words` columns are text; only a sentence in the last is wrapped."""
+    """A table whose first columns are text, the others numbers.
+
+    Parameters
+    ----------
+    title : str
+        Above the table.
+    *headings : str
+        One per column.
+    words : int
+        How many columns from the left are text.
+    sentence : bool
+        Whether the last column holds sentences, which are wrapped; nothing else is.
+    leading : int
+        Empty lines between rows.
+
+    Returns
+    -------
+    Table
+        Without rows.
+    """
     table = Table(
         title=title, title_justify="left", title_style="bold", box=SIMPLE_HEAD, show_edge=False,
         pad_edge=False, padding=(0, 1, 0, 0), leading=leading,
@@ -96,6 +115,11 @@ def named_rows(
         Of the columns; the first is set to the left.
     rows : iterable of (str, tuple of str)
         Name, and one cell per column; cells may have several lines.
+
+    Returns
+    -------
+    Text
+        Lines as they are to be printed.
     """
     table, names = new_table("", *headings, words=1), []
     for name, cells in rows:

@@ -23,17 +23,42 @@ _SI = {"angle": "rad", "ratio": "1", "number": "1"}
 
 
 def unit(kind: str) -> str:
-    """The SI unit of a kind of quantity, as text."""
+    """The SI unit of a kind of quantity, as text.
+
+    Parameters
+    ----------
+    kind : str
+        Key of :data:`rlc.front.marking.KINDS`.
+    """
     return _SI.get(kind, KINDS[kind].symbol)
 
 
 def number(value: Any) -> float | None:
-    """A finite float, or None."""
+    """A finite float, or None.
+
+    Parameters
+    ----------
+    value : float or None
+        Of any size; None, nan and infinite become None.
+    """
     return float(value) if value is not None and math.isfinite(value) else None
 
 
 def loop(case: Case, parts: Iterable[Part] = ()) -> dict[str, Any]:
-    """The loop as understood: every part, what adds up, the source, the states at closing."""
+    """The loop as understood: every part, what adds up, the source, the states at closing.
+
+    Parameters
+    ----------
+    case : Case
+        One loop.
+    parts : iterable of Part
+        What is spread; its limits are listed.
+
+    Returns
+    -------
+    dict
+        SI values by field; None for a load that is not there.
+    """
     values = {field.name: number(getattr(case.loop, field.name)) for field in fields(Loop)}
     source = case.source
     sine = source.kind == "sine"
@@ -55,7 +80,18 @@ def loop(case: Case, parts: Iterable[Part] = ()) -> dict[str, Any]:
 
 
 def quantities(values: Mapping[str, float]) -> dict[str, Any]:
-    """Registered quantities by name."""
+    """Registered quantities by name.
+
+    Parameters
+    ----------
+    values : mapping of str to float
+        By name in the register [SI unit of the quantity].
+
+    Returns
+    -------
+    dict
+        Value and unit of each.
+    """
     return {
         name: {"value": number(value), "unit": unit(REGISTER[name].kind)}
         for name, value in values.items()
@@ -68,7 +104,18 @@ def _asked(outcome: Outcome) -> dict[str, Any]:
 
 
 def target(outcome: Outcome) -> dict[str, Any]:
-    """One target with its verdict."""
+    """One target with its verdict.
+
+    Parameters
+    ----------
+    outcome : Outcome
+        Of a quantity with limits.
+
+    Returns
+    -------
+    dict
+        SI values; None for what is not stated or does not exist.
+    """
     asked, share = outcome.target, outcome.share
     return _asked(outcome) | {
         "min": number(asked.minimum),
@@ -90,7 +137,18 @@ def target(outcome: Outcome) -> dict[str, Any]:
 
 
 def spread(outcome: Outcome) -> dict[str, Any]:
-    """How one quantity is spread, and what each part alone does to it."""
+    """How one quantity is spread, and what each part alone does to it.
+
+    Parameters
+    ----------
+    outcome : Outcome
+        With or without limits.
+
+    Returns
+    -------
+    dict
+        SI values; None for what does not exist.
+    """
     points = ("nominal", "minimum", "percent_1", "percent_50", "mean", "percent_99", "maximum")
     return (
         _asked(outcome)
@@ -106,7 +164,18 @@ def spread(outcome: Outcome) -> dict[str, Any]:
 
 
 def sweep(found: Sweep) -> dict[str, Any]:
-    """A frequency response, column by column."""
+    """A frequency response, column by column.
+
+    Parameters
+    ----------
+    found : Sweep
+        The response.
+
+    Returns
+    -------
+    dict
+        One list per column, in SI units, "frequency" first.
+    """
     columns = {
         column.quantity + (f"_across_{column.across}" if column.across else ""): column.values
         for column in found.columns
@@ -118,7 +187,18 @@ def sweep(found: Sweep) -> dict[str, Any]:
 
 
 def elements(case: Case) -> dict[str, Any]:
-    """Voltage across each part in steady state: amplitude [V], phase against the source [rad]."""
+    """Voltage across each part in steady state.
+
+    Parameters
+    ----------
+    case : Case
+        One loop.
+
+    Returns
+    -------
+    dict
+        By element: amplitude, a peak value [V], and phase against the source [rad].
+    """
     level = abs(float(case.source.amplitude))
     phasors = {name: complex(case.steady.across(name)) for name in ELEMENTS}
     return {
@@ -128,7 +208,18 @@ def elements(case: Case) -> dict[str, Any]:
 
 
 def peaks(case: Case) -> dict[str, Any]:
-    """What is known of each peak of the switch-on."""
+    """What is known of each peak of the switch-on.
+
+    Parameters
+    ----------
+    case : Case
+        One loop.
+
+    Returns
+    -------
+    dict
+        By signal: value and steady amplitude [A or V], time [s], closing angle [rad], gap [1].
+    """
     found = {element: peak_of(case, element) for element, _ in PEAKS}
     return {
         element: {
@@ -144,7 +235,18 @@ def peaks(case: Case) -> dict[str, Any]:
 
 
 def extrema(found: Extrema) -> list[dict[str, Any]]:
-    """Turning points in time order, and which of the two signals turns."""
+    """Turning points in time order, and which of the two signals turns.
+
+    Parameters
+    ----------
+    found : Extrema
+        The turning points.
+
+    Returns
+    -------
+    list of dict
+        Each with time [s], current [A] and capacitor voltage [V].
+    """
     rows = zip(found.time, found.current, found.capacitor_voltage, found.of, strict=True)
     return [
         {
@@ -158,7 +260,18 @@ def extrema(found: Extrema) -> list[dict[str, Any]]:
 
 
 def register(rows: Iterable[Quantity]) -> list[dict[str, Any]]:
-    """Entries of the register."""
+    """Entries of the register.
+
+    Parameters
+    ----------
+    rows : iterable of Quantity
+        Which entries.
+
+    Returns
+    -------
+    list of dict
+        Each without its function.
+    """
     words = (
         "name",
         "symbol",
@@ -174,5 +287,16 @@ def register(rows: Iterable[Quantity]) -> list[dict[str, Any]]:
 
 
 def cautions(found: Iterable[Caution]) -> list[dict[str, str]]:
-    """Cautions in their order."""
+    """Cautions in their order.
+
+    Parameters
+    ----------
+    found : iterable of Caution
+        As they are shown.
+
+    Returns
+    -------
+    list of dict
+        Each with its id and text.
+    """
     return [{"id": caution.id, "text": caution.text} for caution in found]

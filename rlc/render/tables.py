@@ -37,7 +37,17 @@ _WORDS = {"current": "current", "capacitor": "capacitor voltage"}
 def loop(
     case: Case, parts: Iterable[Part] = (), tolerances: Mapping[str, str] | None = None
 ) -> Table:
-    """Every resistance and inductance that adds up, named, then capacitance and load."""
+    """Every resistance and inductance that adds up, named, then capacitance and load.
+
+    Parameters
+    ----------
+    case : Case
+        One loop.
+    parts : iterable of Part
+        What is spread; its limits are shown.
+    tolerances : mapping of str to str, optional
+        As typed, by field of the loop.
+    """
     table = new_table("Loop", "part", "value", "tolerance", "from", "to")
     limits = {part.field: part for part in parts if part.high > part.low}
     rows = (
@@ -88,7 +98,15 @@ def source(case: Case) -> str:
 
 
 def frequencies(case: Case, values: Mapping[str, float]) -> Table:
-    """Natural, ringing and source frequency side by side."""
+    """Natural, ringing and source frequency side by side.
+
+    Parameters
+    ----------
+    case : Case
+        One loop.
+    values : mapping of str to float
+        Its ``natural_frequency`` and ``ringing_frequency`` among them [Hz].
+    """
     driven = float(case.source.frequency) if case.source.kind == "sine" else math.nan
     natural = values["natural_frequency"]
     table = new_table("Frequencies", "natural", "ringing", "source", "source/natural", words=0)
@@ -102,7 +120,17 @@ def frequencies(case: Case, values: Mapping[str, float]) -> Table:
 
 
 def quantities(title: str, values: Mapping[str, float], group: str) -> Table:
-    """Registered quantities of a group, those left out that have a table of their own."""
+    """Registered quantities of a group, those left out that have a table of their own.
+
+    Parameters
+    ----------
+    title : str
+        Above the table.
+    values : mapping of str to float
+        By name in the register [SI unit of the quantity].
+    group : {"loop", "steady", "switch-on"}
+        Which of them are shown.
+    """
     table = new_table(title, "quantity", "symbol", "value", "convention", words=2, sentence=True)
     for name, value in values.items():
         entry = REGISTER[name]
@@ -162,7 +190,15 @@ def peaks(case: Case) -> Table:
 
 
 def extrema(found: Extrema, case: Case) -> Table:
-    """The first turning points, and which of them is the largest of all."""
+    """The first turning points, and which of them is the largest of all.
+
+    Parameters
+    ----------
+    found : Extrema
+        The turning points.
+    case : Case
+        The loop that they are of.
+    """
     angle = f", closed at {show(found.angle, 'angle')}" if case.source.kind == "sine" else ""
     table = new_table(f"First extrema{angle}", "time", "current", "capacitor voltage", "", words=0)
     for time, current, voltage, of in zip(
@@ -187,7 +223,13 @@ def _name(outcome: Outcome) -> str:
 
 
 def targets(outcomes: Iterable[Outcome]) -> Text:
-    """One row per target: limits, nominal and margin, worst case, yield, verdict."""
+    """One row per target: limits, nominal and margin, worst case, yield, verdict.
+
+    Parameters
+    ----------
+    outcomes : iterable of Outcome
+        Of quantities with limits.
+    """
     headings = (
         "  limits", "nominal\nmargin", "worst low\nworst high", "yield\n95 % interval", "verdict",
     )  # fmt: skip
@@ -247,7 +289,13 @@ def _share(outcome: Outcome) -> str:
 
 
 def spread(outcomes: Iterable[Outcome]) -> Text:
-    """How each quantity is spread over the samples, and which part moves it most."""
+    """How each quantity is spread over the samples, and which part moves it most.
+
+    Parameters
+    ----------
+    outcomes : iterable of Outcome
+        With samples or without.
+    """
     headings = (
         "  nominal", "minimum\nmaximum", "1 % point\n99 % point", "median\nmean",
         "moved most by\nfrom its low to its high limit",

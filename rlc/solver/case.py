@@ -29,8 +29,22 @@ _ANGLE = 1e-12
 class Waveforms:
     """The switch-on in time; all arrays share one shape, times on the last axis.
 
-    ``current`` [A] is the loop's; the voltages [V] are across the parts' terminals. The last
-    two are slopes, [A/s] and [V/s]; they follow from the states, without any difference in time.
+    The last two are slopes; they follow from the states, without any difference in time.
+
+    Attributes
+    ----------
+    time : Array
+        Since closing [s].
+    source : Array
+        The source's inner voltage [V].
+    current : Array
+        Of the loop [A].
+    resistor_voltage, inductor_voltage, capacitor_voltage : Array
+        Across the parts' terminals [V].
+    current_rate : Array
+        Slope of the current [A/s].
+    capacitor_voltage_rate : Array
+        Slope of the capacitor's terminal voltage [V/s].
     """
 
     time: Array
@@ -57,6 +71,11 @@ class Case:
         Voltage behind the capacitor's series resistance at closing [V].
     initial_current : array_like
         Loop current at closing [A].
+
+    Raises
+    ------
+    InputError
+        If a state at closing is not finite.
     """
 
     loop: Loop
@@ -99,13 +118,44 @@ class Case:
         return self.steady_at(self.source.frequency)
 
     def steady_at(self, frequency: Any) -> SteadyState:
-        """The steady state at a stated frequency, zero or more [Hz]."""
+        """The steady state at a stated frequency.
+
+        Parameters
+        ----------
+        frequency : array_like
+            Zero or more; broadcasts against the batch [Hz].
+
+        Returns
+        -------
+        SteadyState
+
+        Raises
+        ------
+        InputError
+            If a frequency is below zero or not a number.
+        """
         if not np.all(np.asarray(frequency) >= 0):
             raise InputError("frequency", frequency, "must be zero or more")
         return steady_state(self.loop, frequency, self.equation)
 
     def signals(self, element: str) -> tuple[Signal, Signal]:
-        """An element's response from rest to exp(j omega t), and to the initial states alone."""
+        """An element's response from rest to exp(j omega t), and to the initial states alone.
+
+        Parameters
+        ----------
+        element : str
+            As for :meth:`rlc.solver.loop.Loop.weights`.
+
+        Returns
+        -------
+        rotating, fixed : Signal
+            For the source's amplitude [V], [A] or [A/s]; slopes per second.
+
+        Raises
+        ------
+        InputError
+            If there is no such element.
+        """
         w = self.loop.weights(element)
         a, b, c, d = self.equation.matrix
         amplitude = self.source.amplitude
@@ -128,7 +178,18 @@ class Case:
         return rotating, fixed
 
     def constant_signal(self, element: str) -> Signal:
-        """The element's signal under a constant source, initial states included."""
+        """The element's signal under a constant source, initial states included.
+
+        Parameters
+        ----------
+        element : str
+            As for :meth:`rlc.solver.loop.Loop.weights`.
+
+        Returns
+        -------
+        Signal
+            Real: final value, free value and slope at closing [V], [A] or [A/s]; slopes per second.
+        """
         rotating, fixed = self.signals(element)
         return Signal(
             np.real(rotating.steady),
@@ -137,13 +198,39 @@ class Case:
         )
 
     def extrema(self, element: str) -> tuple[Array, Array]:
-        """Times and values of the candidates for a peak under a constant source."""
+        """Times and values of the candidates for a peak under a constant source.
+
+        Parameters
+        ----------
+        element : str
+            As for :meth:`rlc.solver.loop.Loop.weights`.
+
+        Returns
+        -------
+        times, values : Array
+            As from :func:`rlc.solver.peaks.constant_source_extrema` [s], [V, A or A/s].
+        """
         return constant_source_extrema(self.equation, self.constant_signal(element))
 
     def peak(self, element: str) -> Peak:
         """Largest magnitude of ``"current"`` or of an element's voltage over all time.
 
         With the worst closing angle asked for, each element has its own.
+
+        Parameters
+        ----------
+        element : str
+            As for :meth:`rlc.solver.loop.Loop.weights`.
+
+        Returns
+        -------
+        Peak
+            With the batch's shape, its value in [V], [A] or [A/s].
+
+        Raises
+        ------
+        InputError
+            If there is no such element.
         """
         if element not in self._peaks:
             # A search costs about the same for a few signals as for one.
@@ -182,10 +269,20 @@ class Case:
         return {element: Peak(*each) for element, *each in zip(elements, *parts, strict=True)}
 
     def closing_angle_for(self, element: str) -> Array:
-        """The closing angle: as given, or the worst one for this element [rad].
+        """The closing angle: as given, or the worst one for this element.
 
         The worst one is within a turn from the rising zero, from rest within half a turn: the
         other half only changes signs. Where a peak is only approached every angle is as bad.
+
+        Parameters
+        ----------
+        element : str
+            As for :meth:`rlc.solver.loop.Loop.weights`.
+
+        Returns
+        -------
+        Array
+            From the source's rising zero [rad].
         """
         if self.source.closing_angle is not None:
             return self.source.closing_angle
@@ -203,6 +300,16 @@ class Case:
             Shape (n,), zero or more [s].
         closing_angle : array_like, optional
             Replaces the source's own; needed where that is the worst one [rad].
+
+        Returns
+        -------
+        Waveforms
+            Shape of the batch, then (n,).
+
+        Raises
+        ------
+        InputError
+            If a time is below zero or not a number, or no closing angle is known.
         """
         time = np.asarray(time, dtype=np.float64)
         if not np.all(time >= 0):

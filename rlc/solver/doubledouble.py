@@ -3,6 +3,11 @@
 Near critical damping and near resonance the answer hangs on the difference of two nearly
 equal numbers. A number here is a pair (high, low) whose unevaluated sum holds about 32
 digits. Error-free transformations after Dekker (1971) and Knuth (TAOCP vol. 2, 4.2.2).
+
+Conventions, for all functions here: a double is an array, a pair a tuple of two of them, the
+low one at most half a unit in the last place of the high one. Arrays broadcast against each
+other, units are the caller's, and nothing is raised: what overflows or has no value becomes
+infinite or not a number, as in numpy.
 """
 
 from __future__ import annotations

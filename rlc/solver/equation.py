@@ -52,7 +52,7 @@ class Equation:
     slow, fast : Array
         The two decay rates of an overdamped loop, slow without cancellation [1/s].
     matrix : tuple of Array
-        The state matrix A, row by row.
+        The state matrix A, row by row [1/s], [V/(A s)], [A/(V s)], [1/s].
     source_rate : Array
         What the source's voltage adds to di/dt [1/H].
     """
@@ -78,7 +78,7 @@ class Equation:
 
     @property
     def damping_ratio(self) -> Array:
-        """a / omega_0."""
+        """a / omega_0, one at critical damping [1]."""
         return self.damping / self.natural
 
     @property
@@ -92,6 +92,20 @@ def equation_of(loop: Loop) -> Equation:
 
     The discriminant is formed in pairs of doubles, since it decides the ringing frequency
     near critical damping, where plain doubles keep half of their digits.
+
+    Parameters
+    ----------
+    loop : Loop
+        One loop or a batch.
+
+    Returns
+    -------
+    Equation
+        Constants with the batch's shape.
+
+    References
+    ----------
+    .. [1] OpenStax, University Physics vol. 2, section 14.6, for the loop without a load.
     """
     one = dd.exact(np.ones(loop.shape))
     conductance = loop.load_conductance
@@ -134,6 +148,18 @@ def phase(angular_frequency: dd.Pair, time: Array) -> tuple[Array, Array]:
     """Cosine and sine of omega t, with the product's rounding error carried along.
 
     Without it the phase is off by 1e-16 times its own size: 1e-11 after 1e4 periods.
+
+    Parameters
+    ----------
+    angular_frequency : (Array, Array)
+        omega as a pair of doubles, zero or more [rad/s].
+    time : Array
+        Zero or more; broadcasts against omega [s].
+
+    Returns
+    -------
+    cosine, sine : Array
+        From -1 to 1 [1].
     """
     high, low = dd.two_product(angular_frequency[0], time)
     low = low + angular_frequency[1] * time
@@ -144,9 +170,16 @@ def phase(angular_frequency: dd.Pair, time: Array) -> tuple[Array, Array]:
 class Kernels(NamedTuple):
     """The free motion's building blocks at given times.
 
-    ``s`` as in the module's text [s]; ``base`` is c if underdamped, else exp(-slow t);
-    ``regular`` is c + a s, the decay of a state that starts at rest; ``capacitor`` and
-    ``current`` are the diagonal of exp(A t).
+    Attributes
+    ----------
+    s : Array
+        As in the module's text [s].
+    base : Array
+        c if underdamped, else exp(-slow t) [1].
+    regular : Array
+        c + a s, the decay of a state that starts at rest [1].
+    capacitor, current : Array
+        The diagonal of exp(A t) [1].
     """
 
     s: Array
@@ -165,6 +198,11 @@ def kernels(eq: Equation, time: Array) -> Kernels:
         A batch of loops.
     time : Array
         Times, zero or more, broadcasting against the batch [s].
+
+    Returns
+    -------
+    Kernels
+        With the shape of batch and times together.
     """
     skew = (eq.matrix[0] - eq.matrix[3]) / 2  # half the difference of the two decay rates
     coupling = -eq.matrix[1] * eq.matrix[2]
@@ -191,7 +229,26 @@ def kernels(eq: Equation, time: Array) -> Kernels:
 def free_response(
     eq: Equation, kernel: Kernels, capacitor_voltage: Array, current: Array
 ) -> tuple[Array, Array]:
-    """States (v_C [V], i [A]) that evolve from given ones without a source."""
+    """States that evolve from given ones without a source.
+
+    Parameters
+    ----------
+    eq : Equation
+        A batch of loops.
+    kernel : Kernels
+        At the times wanted.
+    capacitor_voltage, current : Array
+        States at closing; broadcast against the kernel [V], [A].
+
+    Returns
+    -------
+    capacitor_voltage, current : Array
+        States at those times [V], [A].
+
+    References
+    ----------
+    .. [1] OpenStax, University Physics vol. 2, section 14.6, for the underdamped loop.
+    """
     _, to_voltage, to_current, _ = eq.matrix
     return (
         capacitor_voltage * kernel.capacitor + to_voltage * current * kernel.s,
@@ -200,7 +257,18 @@ def free_response(
 
 
 def angular(frequency: Array) -> dd.Pair:
-    """2 pi f as a pair of doubles [rad/s]."""
+    """Angular frequency as a pair of doubles.
+
+    Parameters
+    ----------
+    frequency : Array
+        Zero or more [Hz].
+
+    Returns
+    -------
+    (Array, Array)
+        2 pi f [rad/s].
+    """
     return dd.multiply(dd.exact(frequency), dd.TWO_PI)
 
 
@@ -209,6 +277,22 @@ def steady_states(eq: Equation, frequency: Array) -> tuple[Complex, Complex]:
 
     The reactance's difference is formed in pairs of doubles; at an undamped resonance the
     phasors are infinite.
+
+    Parameters
+    ----------
+    eq : Equation
+        A batch of loops.
+    frequency : Array
+        Zero or more; broadcasts against the batch [Hz].
+
+    Returns
+    -------
+    capacitor_voltage, current : Complex
+        Behind the series resistance, and of the loop, per volt of source [1], [A/V].
+
+    References
+    ----------
+    .. [1] OpenStax, University Physics vol. 2, sections 15.2 to 15.5, for the loop without a load.
     """
     omega = angular(frequency)
     detuning = dd.subtract(eq.natural_squared, dd.multiply(omega, omega))[0]

@@ -21,7 +21,18 @@ BEYOND = 1e50
 
 
 class Weights(NamedTuple):
-    """A voltage or current as a weighted sum of the two states and the source."""
+    """A voltage or current as a weighted sum of the two states and the source.
+
+    Attributes
+    ----------
+    capacitor_voltage : Array
+        Weight of the voltage behind the series resistance [1]; of a slope [A/(V s)]; of the
+        current [S].
+    current : Array
+        Weight of the loop current [ohm]; of a slope [1/s]; of the current itself [1].
+    source : Array
+        Weight of the source's voltage [1]; of a slope [1/H]; of the current [S].
+    """
 
     capacitor_voltage: Array
     current: Array
@@ -97,11 +108,27 @@ class Loop:
         return self.resistance.shape
 
     def map(self, change: Any) -> Loop:
-        """The loop with ``change`` applied to each of its arrays (indexing, reshaping)."""
+        """The loop with ``change`` applied to each of its arrays (indexing, reshaping).
+
+        Parameters
+        ----------
+        change : callable
+            From one array to another; the same for every field.
+
+        Returns
+        -------
+        Loop
+        """
         return Loop(**{field.name: change(getattr(self, field.name)) for field in fields(Loop)})
 
     def column(self) -> Loop:
-        """The batch with one more axis at the end, to meet an axis of times or frequencies."""
+        """The batch with one more axis at the end, to meet an axis of times or frequencies.
+
+        Returns
+        -------
+        Loop
+            Shape of the batch, then (1,).
+        """
         return self.map(lambda value: value[..., np.newaxis])
 
     @property
@@ -126,7 +153,7 @@ class Loop:
 
     @property
     def terminal_share(self) -> Array:
-        """The factor kappa = 1/(1 + r G)."""
+        """The factor kappa = 1/(1 + r G) [1]."""
         return 1.0 / (1.0 + self.series_resistance * self.load_conductance)
 
     @property
@@ -135,7 +162,13 @@ class Loop:
         return self.outer_resistance + self.terminal_share * self.series_resistance
 
     def state_matrix(self) -> tuple[Array, Array, Array, Array]:
-        """A of x' = A x + b v for x = (v_C, i), row by row: 1/s, V/(A s), A/(V s), 1/s."""
+        """A of x' = A x + b v for x = (v_C, i), row by row.
+
+        Returns
+        -------
+        tuple of Array
+            Four, each with the batch's shape [1/s], [V/(A s)], [A/(V s)], [1/s].
+        """
         share = self.terminal_share
         return (
             -self.load_conductance * share / self.capacitance,
@@ -154,6 +187,16 @@ class Loop:
             are those across the part's terminals [V]: the inductor's includes its winding
             resistance, the capacitor's its series resistance; ``dielectric`` is the voltage
             behind the latter.
+
+        Returns
+        -------
+        Weights
+            Each with the batch's shape.
+
+        Raises
+        ------
+        InputError
+            If there is no such element.
         """
         zero, one = np.zeros(self.shape), np.ones(self.shape)
         if element == "current":
@@ -190,5 +233,20 @@ def _refuse_out_of_range(name: str, value: Array) -> None:
 
 
 def make_loop(**values: ArrayLike) -> Loop:
-    """Build a Loop from anything that numpy reads as numbers, in SI units."""
+    """Build a Loop from anything that numpy reads as numbers, in SI units.
+
+    Parameters
+    ----------
+    **values : array_like
+        Fields of :class:`Loop` by name, with its ranges [SI unit of the field].
+
+    Returns
+    -------
+    Loop
+
+    Raises
+    ------
+    InputError
+        If a value is out of its range, or shapes do not go together.
+    """
     return Loop(**{name: np.asarray(value, dtype=np.float64) for name, value in values.items()})

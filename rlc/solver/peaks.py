@@ -22,7 +22,17 @@ Array = NDArray[np.float64]
 
 
 class Signal(NamedTuple):
-    """Steady phasor, and value and slope of the free part at closing; real or complex arrays."""
+    """A signal's steady and free part at closing; real or complex arrays of one shape.
+
+    Attributes
+    ----------
+    steady : Array or Complex
+        Phasor of the steady part, or the final value of a constant source [V, A or A/s].
+    value : Array or Complex
+        The free part at closing [V, A or A/s].
+    slope : Array or Complex
+        The free part's slope at closing [V/s, A/s or A/s^2].
+    """
 
     steady: Any
     value: Any
@@ -36,11 +46,11 @@ class Peak:
     Attributes
     ----------
     value : Array
-        Magnitude; infinite for an undamped loop driven at its resonance.
+        Magnitude [V, A or A/s]; infinite for an undamped loop driven at its resonance.
     time : Array
         When it is reached [s]; infinite where it is only approached.
     gap : Array
-        The true value exceeds ``value`` by no more than this share of it.
+        The true value exceeds ``value`` by no more than this share of it [1].
     angle : Array
         Closing angle of the source at which it occurs [rad].
     """
@@ -52,10 +62,27 @@ class Peak:
 
 
 def first_extremum(eq: Equation, value: Array, slope: Array) -> Array:
-    """First time after closing at which free motion turns; infinite if it never does [s].
+    """First time after closing at which free motion turns.
 
     Underdamped: tan(omega' t) = omega' slope/(omega0^2 value + a slope). Overdamped: the
     matching area tangent, as the logarithm of a quotient that does not cancel.
+
+    Parameters
+    ----------
+    eq : Equation
+        A batch of loops.
+    value, slope : Array
+        Of the free motion at closing [V or A], [V/s or A/s].
+
+    Returns
+    -------
+    Array
+        More than zero; infinite where it never turns [s].
+
+    Notes
+    -----
+    Where the slope of the free motion of OpenStax, University Physics vol. 2, section 14.6, is
+    zero: any text on calculus.
     """
     with np.errstate(all="ignore"):
         divisor = eq.natural_squared[0] * value + eq.damping * slope
@@ -84,11 +111,19 @@ def _area_tangent_ratio(x: Array) -> Array:
 def constant_source_extrema(eq: Equation, signal: Signal) -> tuple[Array, Array]:
     """Every value that can be the largest or smallest under a constant source.
 
+    Parameters
+    ----------
+    eq : Equation
+        A batch of loops.
+    signal : Signal
+        Broadcasts against the batch; its real part counts [V, A or A/s].
+
     Returns
     -------
     times, values : Array
-        Stacked on a new first axis: at closing, the first two extrema, the final value. Later
-        extrema lie between the first two, since each swing is shorter than the last.
+        Stacked on a new first axis of four: at closing, the first two extrema, the final value
+        [s], [V, A or A/s]. Later extrema lie between the first two, since each swing is shorter
+        than the last.
     """
     steady, value, slope = np.broadcast_arrays(
         *(np.real(part) + 0.0 * eq.damping for part in signal)
@@ -108,7 +143,20 @@ def constant_source_extrema(eq: Equation, signal: Signal) -> tuple[Array, Array]
 
 
 def constant_source_peak(eq: Equation, signal: Signal) -> Peak:
-    """Largest magnitude under a constant source, in closed form."""
+    """Largest magnitude under a constant source, in closed form.
+
+    Parameters
+    ----------
+    eq : Equation
+        A batch of loops.
+    signal : Signal
+        Broadcasts against the batch; its real part counts [V, A or A/s].
+
+    Returns
+    -------
+    Peak
+        With no gap.
+    """
     times, values = constant_source_extrema(eq, signal)
     index = np.abs(values).argmax(axis=0)[np.newaxis]
     value = np.abs(np.take_along_axis(values, index, axis=0))[0]

@@ -70,7 +70,22 @@ class Quantity:
     across: bool = False
 
     def refuse(self, at: At, across: Across, source: str) -> None:
-        """Raise InputError if it cannot be asked for like this of a ``dc`` or ``sine`` source."""
+        """Check that it can be asked for like this.
+
+        Parameters
+        ----------
+        at : float or Array or None
+            Frequency, time or band, more than zero [Hz], [s], [1].
+        across : str or None
+            One of the loop's elements.
+        source : str
+            Kind of the source, ``dc`` or ``sine``; or empty if it is not known yet.
+
+        Raises
+        ------
+        InputError
+            If `at` or `across` is out of range, or does not go with the quantity or the source.
+        """
         if at is not None and self.at is None:
             raise InputError("at", at, f"{self.name} is not asked for at a stated value")
         if at is not None and not np.all(np.isfinite(at) & (np.asarray(at) > 0)):
@@ -357,6 +372,10 @@ def lookup(name: str, where: str) -> Quantity:
         As in the register.
     where : str
         What asks for it; goes into the error.
+
+    Returns
+    -------
+    Quantity
 
     Raises
     ------

@@ -51,14 +51,19 @@ def sine_peak(
     eq : Equation
         A batch of loops, shape (n,).
     angular_frequency : Array
-        Of the source, shape (n,) [rad/s].
+        Of the source, shape (n,), more than zero [rad/s].
     rotating : Signal
         Complex response from rest to :math:`e^{j\omega t}` times the amplitude; the response
-        to the sine is its imaginary part after turning by the closing angle.
+        to the sine is its imaginary part after turning by the closing angle [V, A or A/s].
     fixed : Signal
-        Response to the initial states alone; its steady part is zero.
+        Response to the initial states alone; its steady part is zero [V, A or A/s].
     closing_angle : Array or None
         Shape (n,) [rad]; None for the angle that makes the peak largest.
+
+    Returns
+    -------
+    Peak
+        Shape (n,); its gap is at most `PROVED_GAP` unless the search had to stop before.
 
     Notes
     -----

@@ -73,12 +73,27 @@ class Source:
 
     @property
     def rms_per_amplitude(self) -> float:
-        """What turns an amplitude of this source's frequency into an rms value."""
+        """What turns an amplitude of this source's frequency into an rms value [1]."""
         return 1.0 if self.kind == "dc" else float(np.sqrt(0.5))
 
 
 def constant(voltage: float | Array) -> Source:
-    """A constant voltage, stepped on at t = 0 [V]."""
+    """A constant voltage, stepped on at t = 0.
+
+    Parameters
+    ----------
+    voltage : float or Array
+        Its level, of either sign [V].
+
+    Returns
+    -------
+    Source
+
+    Raises
+    ------
+    InputError
+        If it is not finite, or beyond any circuit.
+    """
     return Source(np.asarray(voltage, dtype=np.float64))
 
 
@@ -93,12 +108,18 @@ def sine(
 
     Parameters
     ----------
-    amplitude, rms : array_like
-        Peak value or root mean square, one of them [V].
+    amplitude : array_like, optional
+        Peak value; this or `rms` [V].
     frequency : array_like
         More than zero [Hz].
     closing_angle : array_like or None
         From the rising zero; None for the worst one [rad].
+    rms : array_like, optional
+        Root mean square; this or `amplitude` [V].
+
+    Returns
+    -------
+    Source
 
     Raises
     ------

@@ -36,7 +36,8 @@ class Part:
         How units lie between the limits. A normal one is centred between them and cut off
         there; a triangular one has its peak at the nominal value.
     sigmas : float
-        How many standard deviations the limits of a normal distribution are from its centre.
+        How many standard deviations the limits of a normal distribution are from its centre [1];
+        of no meaning for the others.
     """
 
     field: str
@@ -47,7 +48,20 @@ class Part:
     sigmas: float = 3.0
 
     def draw(self, count: int, seed: tuple[int, int]) -> Array:
-        """Random values, shape (count,), the same for the same seed [SI]."""
+        """Random values, the same for the same seed.
+
+        Parameters
+        ----------
+        count : int
+            How many, zero or more.
+        seed : tuple of int
+            The spread's seed, and the part's place among all parts.
+
+        Returns
+        -------
+        Array
+            Shape (count,), from the lower to the upper limit [SI unit of the field].
+        """
         generator = np.random.default_rng(seed)
         width = self.high - self.low
         if self.distribution == "triangular" and width > 0:
@@ -64,7 +78,17 @@ class Part:
 
 
 class Yield(NamedTuple):
-    """The share of units that keep the limits, and its Clopper-Pearson interval."""
+    """The share of units that keep the limits, and its Clopper-Pearson interval.
+
+    Attributes
+    ----------
+    value : float
+        Share of the samples, 0 to 1 [1].
+    low, high : float
+        Ends of the interval, 0 to 1 [1].
+    confidence : float
+        Probability with which the interval holds the true share [1].
+    """
 
     value: float
     low: float
@@ -78,7 +102,11 @@ def yield_interval(kept: int, samples: int) -> Yield:
     Parameters
     ----------
     kept, samples : int
-        Units that keep the limits, of how many.
+        Units that keep the limits, of how many; zero to `samples`, and one or more.
+
+    Returns
+    -------
+    Yield
 
     References
     ----------
@@ -94,7 +122,15 @@ def yield_interval(kept: int, samples: int) -> Yield:
 
 
 class Effect(NamedTuple):
-    """What one part alone does to a quantity: its value with the part at each limit [SI]."""
+    """What one part alone does to a quantity.
+
+    Attributes
+    ----------
+    field : str
+        The part, by the loop's field.
+    low, high : float
+        The quantity with the part at its lower and upper limit [SI unit of the quantity].
+    """
 
     field: str
     low: float
@@ -110,14 +146,14 @@ class Outcome:
     target : Target
         The quantity and its limits.
     nominal : float
-        With every part at its nominal value.
+        With every part at its nominal value [SI].
     worst_low, worst_high : float
         Extremes over parts at their limits, resonances between them and all samples: searched,
-        not proved.
+        not proved [SI].
     minimum, maximum, mean, percent_1, percent_50, percent_99 : float
-        Of the samples for which the quantity exists; nan without samples.
+        Of the samples for which the quantity exists; nan without samples [SI].
     samples : Array
-        Shape (n,); nan where the quantity does not exist.
+        Shape (n,); nan where the quantity does not exist [SI].
     share : Yield or None
         Share of the samples that keep the limits.
     effects : tuple of Effect
@@ -189,7 +225,22 @@ class Spread:
     seed: int
 
     def outcome(self, target: Target) -> Outcome:
-        """Evaluate one target over the batch."""
+        """Evaluate one target over the batch.
+
+        Parameters
+        ----------
+        target : Target
+            Limits on a registered quantity, or a quantity without any.
+
+        Returns
+        -------
+        Outcome
+
+        Raises
+        ------
+        InputError
+            If the quantity is not asked for like this of the source.
+        """
         values = np.broadcast_to(target.values(self.case), self.case.loop.shape)
         nominal, singles = float(values[0]), values[1 : 1 + 2 * len(self.parts)]
         effects = [

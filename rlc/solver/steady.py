@@ -21,7 +21,7 @@ class SteadyState:
     Attributes
     ----------
     frequency : Array
-        [Hz].
+        Zero or more [Hz].
     impedance : Complex
         Of everything that the source's voltage meets, its own impedance included [ohm].
     current : Complex
@@ -41,7 +41,23 @@ class SteadyState:
     dielectric: Complex
 
     def across(self, element: str) -> Complex:
-        """The phasor of one element's voltage, per volt of source."""
+        """The phasor of one element's voltage, per volt of source.
+
+        Parameters
+        ----------
+        element : {"resistor", "inductor", "capacitor"}
+            The part whose terminals are meant.
+
+        Returns
+        -------
+        Complex
+            [1].
+
+        Raises
+        ------
+        ValueError
+            If there is no such element.
+        """
         if element not in ELEMENTS:
             raise ValueError(element)
         voltage: Complex = getattr(self, element)
@@ -95,12 +111,26 @@ def steady_state(loop: Loop, frequency: Array, eq: Equation | None = None) -> St
 
 
 def half_power_frequencies(eq: Equation) -> tuple[Array, Array]:
-    r"""Frequencies at which the equation's power response is half its maximum [Hz].
+    r"""Frequencies at which the equation's power response is half its maximum.
 
     :math:`\omega_\pm = \sqrt{\omega_0^2 + \gamma^2/4} \pm \gamma/2`: their product is
     :math:`\omega_0^2` and their distance :math:`\gamma`, exactly and at any damping. Without
     a load they are the frequencies at which the current falls to 1/sqrt(2) of its maximum.
     The lower one is formed from the product, since the difference cancels at high damping.
+
+    Parameters
+    ----------
+    eq : Equation
+        A batch of loops.
+
+    Returns
+    -------
+    lower, upper : Array
+        More than zero [Hz].
+
+    References
+    ----------
+    .. [1] OpenStax, University Physics vol. 2, sections 15.2 to 15.5.
     """
     centre = np.hypot(eq.natural, eq.damping)
     upper = centre + eq.damping
@@ -108,7 +138,7 @@ def half_power_frequencies(eq: Equation) -> tuple[Array, Array]:
 
 
 def capacitor_voltage_maximum(loop: Loop, eq: Equation) -> Array:
-    r"""Frequency at which the capacitor's terminal voltage is largest [Hz].
+    r"""Frequency at which the capacitor's terminal voltage is largest.
 
     With :math:`\tau = rC` the voltage goes as :math:`(1 + j\omega\tau)/(\omega_0^2 - \omega^2
     + j\omega\gamma)`, which is largest at
@@ -118,8 +148,24 @@ def capacitor_voltage_maximum(loop: Loop, eq: Equation) -> Array:
         \omega^2 = \frac{m}{1 + \sqrt{1 + \tau^2 m}}, \qquad
         m = 2\omega_0^2 - \gamma^2 + \tau^2\omega_0^4,
 
-    that is :math:`\omega_0^2 - \gamma^2/2` without series resistance. Zero when m is not
-    positive and the voltage only falls with frequency.
+    that is :math:`\omega_0^2 - \gamma^2/2` without series resistance.
+
+    Parameters
+    ----------
+    loop : Loop
+        One loop or a batch.
+    eq : Equation
+        The same loops as equations.
+
+    Returns
+    -------
+    Array
+        Zero where m is not positive and the voltage only falls with frequency [Hz].
+
+    Notes
+    -----
+    A maximum by differentiation of the phasor of OpenStax, University Physics vol. 2, sections
+    15.2 to 15.5: any text on calculus.
     """
     squared = eq.natural_squared[0]
     lead = (loop.series_resistance * loop.capacitance) ** 2

@@ -22,7 +22,17 @@ _MARKED = ("lower_half_power_frequency", "natural_frequency", "upper_half_power_
 
 
 class Column(NamedTuple):
-    """One registered quantity at each frequency [SI]."""
+    """One registered quantity at each frequency.
+
+    Attributes
+    ----------
+    quantity : str
+        Name in the register.
+    across : str or None
+        The element whose voltage is meant, if the quantity names one.
+    values : Array
+        Shape (n,) [SI unit of the quantity].
+    """
 
     quantity: str
     across: str | None
@@ -59,10 +69,14 @@ def sweep(case: Case, start: float | None, stop: float | None, points: int) -> S
     case : Case
         One loop.
     start, stop : float, optional
-        First and last frequency; if not given, a decade beyond the natural frequency and that of
-        the source [Hz].
+        First and last frequency, more than zero and rising; if not given, a decade beyond the
+        natural frequency and that of the source [Hz].
     points : int
         How many even steps, 2 to 1e5.
+
+    Returns
+    -------
+    Sweep
 
     Raises
     ------

@@ -34,6 +34,11 @@ class Target:
         Share of units that has to keep the limits [1]; without it every unit has to.
     rating : str
         The part's rating that it stands for, such as ``capacitor.rated_voltage``; or empty.
+
+    Raises
+    ------
+    InputError
+        If there is no such quantity, or the lower limit is above the upper one.
     """
 
     quantity: str
@@ -60,11 +65,38 @@ class Target:
         return self.minimum is not None or self.maximum is not None
 
     def values(self, case: Case) -> Array:
-        """The quantity for each loop of a batch [SI]."""
+        """The quantity for each loop of a batch.
+
+        Parameters
+        ----------
+        case : Case
+            One switch-on or a batch.
+
+        Returns
+        -------
+        Array
+            With the batch's shape [SI unit of the quantity].
+
+        Raises
+        ------
+        InputError
+            If the quantity is not asked for like this of the source.
+        """
         return self.entry(case, self.at, self.across)
 
     def kept(self, values: Any) -> NDArray[np.bool_]:
-        """Which values are within the limits; one that does not exist is not."""
+        """Which values are within the limits; one that does not exist is not.
+
+        Parameters
+        ----------
+        values : array_like
+            Of the quantity [SI unit of the quantity].
+
+        Returns
+        -------
+        Array of bool
+            With the shape of `values`.
+        """
         values = np.asarray(values, dtype=np.float64)
         low = -np.inf if self.minimum is None else self.minimum
         high = np.inf if self.maximum is None else self.maximum
@@ -98,12 +130,25 @@ class Fuse:
 
     @property
     def share(self) -> float:
-        """Share of the melting let-through that so many pulses may have, between table values
-        by the logarithm of their number."""
+        """Share of the melting let-through that so many pulses may have [1].
+
+        Between table values by the logarithm of their number.
+        """
         return float(np.interp(np.log10(self.operations), _PULSES, _SHARES))
 
     def target(self, case: Case) -> Target:
-        """The limit on one pulse: the whole of it, or five time constants where current stays."""
+        """The limit on one pulse: the whole of it, or five time constants where current stays.
+
+        Parameters
+        ----------
+        case : Case
+            The nominal switch-on, one loop.
+
+        Returns
+        -------
+        Target
+            An upper limit on the let-through [A^2 s].
+        """
         lasting = case.source.kind == "dc" and bool(np.any(case.loop.load_conductance > 0))
         until = _PULSE_TIME_CONSTANTS * float(REGISTER["time_constant"](case)) if lasting else None
         allowed = self.share * self.melting_let_through
@@ -149,7 +194,13 @@ class Ratings:
     capacitor_voltage_rms: float | None = None
 
     def targets(self) -> tuple[Target, ...]:
-        """Each stated rating as the target that it is."""
+        """Each stated rating as the target that it is.
+
+        Returns
+        -------
+        tuple of Target
+            In the order of the fields, upper limits all.
+        """
         stated = ((_RATED[field.name], getattr(self, field.name)) for field in fields(self))
         return tuple(
             Target(rated.quantity, maximum=value, rating=rated.key)

@@ -25,6 +25,17 @@ def capacitor_transient(case: Case) -> tuple[Array, Array, Array]:
     The last is the steady amplitude of a sine, or the step from the voltage at closing to the
     final one, whose size the free part has. Where the closing angle is the worst one, it is that
     of the largest capacitor voltage.
+
+    Parameters
+    ----------
+    case : Case
+        One switch-on or a batch.
+
+    Returns
+    -------
+    value, slope, settles_on : Array
+        Free part at closing, its slope, and the size of what it is compared with; they broadcast
+        against the batch [V], [V/s], [V].
     """
     rotating, fixed = case.signals("capacitor")
     turn = np.exp(1j * case.closing_angle_for("capacitor"))
@@ -34,22 +45,26 @@ def capacitor_transient(case: Case) -> tuple[Array, Array, Array]:
 
 
 def settling_time(case: Case, band: float | Array = 0.02) -> Array:
-    """Time after which the capacitor voltage stays within a band of its steady state [s].
+    """Time after which the capacitor voltage stays within a band of its steady state.
 
     Parameters
     ----------
     case : Case
         One switch-on or a batch.
-    band : float
+    band : float or Array
         Half width of the band, as a share of the steady amplitude; for a constant source of the
-        step from the voltage at closing to the final one [1].
+        step from the voltage at closing to the final one; more than zero [1].
 
     Returns
     -------
     Array
         The last moment at which the free part is at or outside the band: infinite without
         losses, zero if it is never outside, nan if there is no step, or if the steady state is
-        zero or unbounded.
+        zero or unbounded [s].
+
+    References
+    ----------
+    .. [1] K. Ogata, Modern Control Engineering (from memory), for the band of a step response.
     """
     value, slope, steady = np.broadcast_arrays(*capacitor_transient(case))
     with np.errstate(invalid="ignore"):
@@ -58,11 +73,25 @@ def settling_time(case: Case, band: float | Array = 0.02) -> Array:
 
 
 def last_time_outside(eq: Equation, value: Array, slope: Array, band: Array) -> Array:
-    """Last time at which free motion of given value and slope at closing is outside a band [s].
+    """Last time at which free motion of given value and slope at closing is outside a band.
 
     The extrema of free motion form a lattice (underdamped: half a ringing period apart, each
     smaller by the same factor), which brackets the only crossing; bisection and Newton's
     method close the bracket to rounding.
+
+    Parameters
+    ----------
+    eq : Equation
+        A batch of loops.
+    value, slope : Array
+        Of the free motion at closing [V or A], [V/s or A/s].
+    band : Array
+        Half width of the band, more than zero [V or A].
+
+    Returns
+    -------
+    Array
+        Zero if it is never outside, infinite without losses [s].
     """
     with np.errstate(all="ignore"):
         turn = first_extremum(eq, value, slope)
@@ -116,11 +145,24 @@ def _cross(eq: Equation, value: Array, slope: Array, band: Array, low: Array, hi
 
 
 def overshoot(case: Case) -> Array:
-    """How far the capacitor voltage passes its steady state, as a share of it [1].
+    """How far the capacitor voltage passes its steady state, as a share of it.
 
     Constant source: the largest excursion beyond the final value, over the step from the voltage
     at closing to the final one. Sine: the largest magnitude over the steady amplitude, less 1.
-    Zero if it never passes by more than a peak is known to; nan if there is no step.
+
+    Parameters
+    ----------
+    case : Case
+        One switch-on or a batch.
+
+    Returns
+    -------
+    Array
+        Zero if it never passes by more than a peak is known to; nan if there is no step [1].
+
+    References
+    ----------
+    .. [1] K. Ogata, Modern Control Engineering (from memory), for the step response.
     """
     if case.source.kind == "dc":
         _, values = case.extrema("capacitor")
@@ -136,18 +178,47 @@ def overshoot(case: Case) -> Array:
 
 
 def logarithmic_decrement(eq: Equation) -> Array:
-    """ln of the ratio of successive swings to the same side; infinite if overdamped."""
+    """Natural logarithm of the ratio of successive swings to the same side.
+
+    Parameters
+    ----------
+    eq : Equation
+        A batch of loops.
+
+    Returns
+    -------
+    Array
+        Zero without losses, infinite if nothing rings [1].
+
+    References
+    ----------
+    .. [1] OpenStax, University Physics vol. 2, section 14.6, for the envelope of the ringing.
+    """
     with np.errstate(divide="ignore"):
         ringing = np.where(eq.underdamped, eq.root[0], 0.0)
         return 2 * np.pi * eq.damping / ringing
 
 
 def total_let_through(case: Case) -> Array:
-    r"""Integral of i^2 over all time, (C e^2 + L i^2)/(2R) [A^2 s].
+    r"""Integral of i^2 over all time, (C e^2 + L i^2)/(2R).
 
     All energy that the loop loses passes through its resistance: e is the capacitor's
-    distance from its final voltage at closing, i the initial current. Infinite where a
-    steady current remains (a sine, a load) or nothing is lost.
+    distance from its final voltage at closing, i the initial current.
+
+    Parameters
+    ----------
+    case : Case
+        One switch-on or a batch.
+
+    Returns
+    -------
+    Array
+        Infinite where a steady current remains (a sine, a load) or nothing is lost [A^2 s].
+
+    Notes
+    -----
+    Energy balance of a series loop: any text on them, for instance OpenStax, University Physics
+    vol. 2, section 14.6.
     """
     loop = case.loop
     distance = case.capacitor_voltage - case.source.amplitude
@@ -159,7 +230,7 @@ def total_let_through(case: Case) -> Array:
 
 
 def let_through(case: Case, until: Any) -> Array:
-    r"""Integral of i^2 from closing to a given time [A^2 s].
+    r"""Integral of i^2 from closing to a given time.
 
     The current is linear in z = (v_C, i, source in phase, source in quadrature), so the
     integral is z' P z. P over a short span is a 16-point Gauss-Legendre sum; then
@@ -172,6 +243,16 @@ def let_through(case: Case, until: Any) -> Array:
         One switch-on or a batch; with the worst closing angle, the one that lets through most.
     until : array_like
         End of the integral, zero or more; broadcasts against the batch [s].
+
+    Returns
+    -------
+    Array
+        With the shape of batch and `until` together, zero or more [A^2 s].
+
+    References
+    ----------
+    .. [1] C. F. Van Loan, "Computing integrals involving the matrix exponential", IEEE
+       Transactions on Automatic Control 23 (1978) 395-404 (from memory).
     """
     until = np.asarray(until, dtype=np.float64)
     shape = np.broadcast_shapes(case.shape, until.shape)
