@@ -1,19 +1,20 @@
-"""What every picture shares: palette, panels, ticks with prefixes, legends, cautions, saving.
+"""What every picture shares: palette, panels, ticks with prefixes, legends, cautions.
 
 Only matplotlib's objects are used: no global state, no window, nothing to close.
 """
 
 from __future__ import annotations
 
+import contextlib
 import math
-import os
-from collections.abc import Iterable, Iterator
-from pathlib import Path
+import re
+import warnings
+from collections.abc import Iterable, Iterator, Sequence
 from typing import TYPE_CHECKING, Any
 
 import numpy as np
+from numpy.typing import NDArray
 
-from rlc.errors import InputError
 from rlc.front.marking import KINDS, PREFIXES, show
 from rlc.solver.case import Case
 from rlc.solver.source import Source
@@ -70,15 +71,16 @@ MARK: dict[str, Any] = {
     "zorder": 5,
 }
 
-#: What `save` can write, by suffix, and the metadata that would differ from run to run.
-_FORMATS: dict[str, Any] = {
-    ".png": {"Software": None},
-    ".svg": {"Date": None, "Creator": None},
-    ".pdf": {"CreationDate": None, "Creator": None, "Producer": None},
-}
-
+# What the drawing library says of characters that it cannot draw as they are meant.
+_CHARACTERS = "Glyph .* missing from|Matplotlib currently does not support"
+#: Decimals of an angle [rad]; what is smaller is what rounding leaves of zero.
+ANGLE_DECIMALS = 9
+# An axis goes this much beyond its data at most; 900 A are then still written in A.
+_AXIS_REACH = 1.13
 # Steps of ticks within a decade.
 _STEPS, _FINE_STEPS = (1.0, 2.0, 5.0), (1.0, 1.5, 2.0, 3.0, 4.0, 5.0, 6.0, 8.0)
+# Way along the path, in widths of the picture, to where an arrow shows its sense.
+_ARROWS_AT = (0.6, 1.6)
 _WIDTH = 8.0
 _RESOLUTION = 100
 _SMALL = 8.0
@@ -138,8 +140,8 @@ def fit_height(figure: Figure, panel_height: float) -> None:
 def name_axis(axis: Axis, words: str, kind: str, unit: str | None = None) -> None:
     """Label an axis with words and unit, and write its ticks with engineering prefixes.
 
-    To be called when the limits stand: an axis that spans less than two decades gets one
-    prefix for all of it, a longer one a prefix at each tick.
+    To be called when the limits stand: an axis gets one prefix for all of it, but a prefix at
+    each tick if it is logarithmic and long, or goes from the range of one prefix into another.
 
     Parameters
     ----------
@@ -157,41 +159,67 @@ def name_axis(axis: Axis, words: str, kind: str, unit: str | None = None) -> Non
     low, high = sorted(axis.get_view_interval())
     horizontal = axis is axis.axes.xaxis
     symbol = KINDS[kind].symbol if unit is None else unit
-    power = 0
-    wide = axis.get_scale() == "log" and high > 100 * low
+    logarithmic = axis.get_scale() == "log"
+    wide = logarithmic and high > 100 * low
     if wide:
         axis.set_major_locator(LogLocator(numticks=9))
         axis.set_minor_formatter(NullFormatter())
-        if KINDS[kind].prefixes:
-            axis.set_major_formatter(lambda value, _: show(value, kind))
     else:
-        if KINDS[kind].prefixes:
-            power = 3 * math.floor(math.log10(max(abs(low), abs(high))) / 3 + 1e-9)
-            power = min(max(power, min(PREFIXES.values())), max(PREFIXES.values()))
-        if axis.get_scale() == "log" and high > 3 * low:
-            fine = horizontal and high < 20 * low
+        if logarithmic and high > 3 * low:
+            fine = horizontal and high < 8 * low
             axis.set_major_locator(LogLocator(subs=_FINE_STEPS if fine else _STEPS))
         else:
             axis.set_major_locator(MaxNLocator(8 if horizontal else 5))
         axis.set_minor_locator(NullLocator())
+    power = 0
+    if KINDS[kind].prefixes:
+        power = _power(low if logarithmic else max(abs(low), abs(high)) / _AXIS_REACH)
+        wide |= logarithmic and high > max(3 * low, 10.0 ** (power + 3))
+    if wide:
+        power = 0
+        # without prefixes powers of ten are shorter, but for numbers that need none
+        if KINDS[kind].prefixes or (low > 1e-4 and high < 1e5):
+            axis.set_major_formatter(lambda value, _: show(value, kind))
+    else:
         scale = 10.0**power
         # adding zero turns -0.0 into 0.0
         axis.set_major_formatter(lambda value, _: f"{round(value / scale, 9) + 0.0:.9g}")
     prefix = next((name for name, exponent in PREFIXES.items() if exponent == power), "")
-    axis.set_label_text(f"{words} [{prefix}{symbol}]")
+    axis.set_label_text(f"{words} [{prefix}{symbol}]" if symbol else words)
 
 
-def legend_above(panel: Axes, heading: str = "") -> None:
-    """Put the panel's legend above it, where it covers no data, in as many columns as fit."""
+def _power(value: float) -> int:
+    """Power of ten of the prefix with which a value is written."""
+    power = 3 * math.floor(math.log10(value) / 3 + 1e-9)
+    return min(max(power, min(PREFIXES.values())), max(PREFIXES.values()))
+
+
+def legend_above(panel: Axes, heading: str = "", gap: float = 0.0) -> None:
+    """Put the panel's legend above it, where it covers no data, in as many columns as fit.
+
+    A gap [point] between them leaves room for letters on the panel's upper edge.
+    """
+    from matplotlib.transforms import ScaledTranslation
+
     handles, labels = panel.get_legend_handles_labels()
-    widest = max((_text_width(label, _SMALL) for label in labels), default=0.0) + _HANDLE_WIDTH
-    columns = max(1, min(len(labels), 4, int(_LEGEND_WIDTH / widest)))
+    raised = ScaledTranslation(0.0, gap / 72, panel.figure.dpi_scale_trans)
     legend = panel.legend(
         handles, labels, title=heading or None, loc="lower left", bbox_to_anchor=(0.0, 1.0),
-        ncols=columns, fontsize=_SMALL, frameon=False, borderaxespad=0.2, columnspacing=1.4,
-        handlelength=2.8, labelspacing=0.35, borderpad=0.2, alignment="left",
+        bbox_transform=panel.transAxes + raised, ncols=_columns(labels), fontsize=_SMALL,
+        frameon=False, borderaxespad=0.2, columnspacing=1.4, handlelength=2.8,
+        labelspacing=0.35, borderpad=0.2, alignment="left",
     )  # fmt: skip
     legend.get_title().set_fontsize(_SMALL)
+
+
+def _columns(labels: Sequence[str]) -> int:
+    """Number of legend columns, each as wide as its longest label, that fit beside each other."""
+    widths = [_text_width(label, _SMALL) + _HANDLE_WIDTH for label in labels]
+    for columns in range(min(len(labels), 4), 1, -1):
+        # the legend itself deals its labels out like this
+        if sum(float(max(part)) for part in np.array_split(widths, columns)) <= _LEGEND_WIDTH:
+            return columns
+    return 1
 
 
 def note(panel: Axes, text: str) -> None:
@@ -212,57 +240,27 @@ def limit_line(
     )  # fmt: skip
 
 
-def save(figure: Figure, path: str | os.PathLike[str]) -> None:
-    """Write a figure as PNG, SVG or PDF; the same figure gives the same bytes.
-
-    The file is written under a temporary name beside its place and then moved there.
-
-    Parameters
-    ----------
-    figure : Figure
-        As the functions of :mod:`rlc.render.plots` return it.
-    path : path-like
-        Ends with .png, .svg or .pdf.
-
-    Raises
-    ------
-    InputError
-        If the suffix is another one, the file exists, or it cannot be written.
-    """
-    import matplotlib
-
-    path = Path(path)
-    suffix = path.suffix.lower()
-    if suffix not in _FORMATS:
-        raise InputError("path", str(path), f"must end with {', '.join(_FORMATS)}")
-    if path.exists():
-        raise InputError("path", str(path), "exists, and nothing is overwritten")
-    partial = path.with_name(f".{path.name}.{os.getpid()}.partial")
-    try:
-        # a random salt would give every SVG other names for its clip paths
-        with matplotlib.rc_context({"svg.hashsalt": "rlc"}):
-            if suffix == ".png":
-                _write_pixels(figure, partial)
-            else:
-                figure.savefig(partial, format=suffix[1:], metadata=_FORMATS[suffix])
-        partial.replace(path)
-    except OSError as error:
-        raise InputError("path", str(path), f"cannot be written: {error.strerror}") from error
-    finally:
-        partial.unlink(missing_ok=True)
+@contextlib.contextmanager
+def any_character() -> Iterator[None]:
+    """Draw a character that the font lacks as a box, without a warning for each."""
+    with warnings.catch_warnings():
+        warnings.filterwarnings("ignore", _CHARACTERS)
+        yield
 
 
-def _write_pixels(figure: Figure, path: Path) -> None:
-    """Write a PNG of 16 levels per colour: a third of the size, and no difference to see."""
-    from matplotlib.backends.backend_agg import FigureCanvasAgg
-    from matplotlib.image import imsave
-
-    canvas = FigureCanvasAgg(figure)
-    canvas.draw()  # type: ignore[no-untyped-call]
-    pixels = np.asarray(canvas.buffer_rgba())[..., :3]  # type: ignore[no-untyped-call]
-    pixels = np.rint(pixels / 17.0).astype(np.uint8) * np.uint8(17)
-    imsave(path, pixels, format="png", dpi=figure.dpi, metadata=_FORMATS[".png"],
-           pil_kwargs={"optimize": True})  # fmt: skip
+def arrows(panel: Axes, across: NDArray[np.float64], up: NDArray[np.float64]) -> None:
+    """Show the sense of the motion early on, where the turns lie apart."""
+    steps = np.hypot(np.diff(across) / (np.ptp(across) or 1), np.diff(up) / (np.ptp(up) or 1))
+    way = np.concatenate([[0.0], np.cumsum(steps)])
+    for distance in _ARROWS_AT:
+        start = int(np.searchsorted(way, distance * min(1.0, way[-1] / 2)))
+        end = int(np.searchsorted(way, way[start] + 0.02))
+        if start < end < way.size:
+            panel.annotate(
+                "", (across[end], up[end]), (across[start], up[start]),
+                arrowprops={"arrowstyle": "-|>", "color": NOMINAL["color"], "mutation_scale": 16,
+                            "shrinkA": 0, "shrinkB": 0},
+            )  # fmt: skip
 
 
 def _text_width(text: str, size: float) -> float:
@@ -271,7 +269,8 @@ def _text_width(text: str, size: float) -> float:
     from matplotlib.textpath import TextToPath
 
     properties = FontProperties(size=size)
-    width, _, _ = TextToPath().get_text_width_height_descent(text, properties, ismath=False)
+    with any_character():
+        width, _, _ = TextToPath().get_text_width_height_descent(text, properties, ismath=False)
     return float(width)
 
 
@@ -301,13 +300,29 @@ def item(value: Any) -> float:
     return float(np.asarray(value).item())
 
 
+def shown(value: float, kind: str, digits: int = 4) -> str:
+    """A computed value as text: what rounding leaves of an angle of zero is zero."""
+    return show(round(value, ANGLE_DECIMALS) if kind == "angle" else value, kind, digits)
+
+
+def quantity_name(target: Target) -> str:
+    """A target's quantity in words, such as "gain across the resistor"."""
+    element = f" across the {target.across}" if target.across else ""
+    return target.quantity.replace("_", " ") + element
+
+
+def asked_at(target: Target) -> str:
+    """Where it is asked for, such as " at 300 Hz", or nothing."""
+    at = target.entry.at
+    return "" if target.at is None or at is None else f" at {show(target.at, at)}"
+
+
 def limit_label(target: Target, *, upper: bool) -> str:
     """One limit in words, such as "capacitor rated voltage max 63 V"."""
-    words = (target.rating or target.quantity).replace("_", " ").replace(".", " ")
+    words = re.sub("[_.]", " ", target.rating) or quantity_name(target)
     limit = target.maximum if upper else target.minimum
-    text = f"{words} {'max' if upper else 'min'} {show(limit, target.entry.kind)}"
-    at = target.entry.at
-    return text if target.at is None or at is None else f"{text} at {show(target.at, at)}"
+    side = "max" if upper else "min"
+    return f"{words} {side} {show(limit, target.entry.kind)}{asked_at(target)}"
 
 
 def limits(target: Target) -> Iterator[tuple[float, bool]]:
@@ -319,8 +334,8 @@ def limits(target: Target) -> Iterator[tuple[float, bool]]:
 
 
 def band_label(batch: Case) -> str:
-    """What the band of a batch is."""
-    return f"lowest to highest of {math.prod(batch.shape)} loops"
+    """Over which loops the band of a batch reaches."""
+    return f"nominal, corners and samples ({math.prod(batch.shape)} loops)"
 
 
 def pieces(batch: Case, points: int, closing_angle: Any = None) -> Iterator[Case]:

@@ -9,6 +9,7 @@ import numpy as np
 from numpy.typing import NDArray
 
 from rlc.front.marking import KINDS, show
+from rlc.render.curves import Curve, Row, place_of, response, response_bands, rows_of
 from rlc.render.figures import (
     BAND,
     LIMIT,
@@ -27,11 +28,10 @@ from rlc.render.figures import (
     name_axis,
     note,
     panels,
-    pieces,
+    shown,
 )
 from rlc.solver.case import Case
 from rlc.solver.quantities import REGISTER
-from rlc.solver.steady import steady_state
 from rlc.solver.targets import Target
 
 if TYPE_CHECKING:
@@ -49,6 +49,8 @@ _CURVE_POINTS, _PEAK_POINTS = 400, 100
 # Half length of a limit's bar as a share of the axis.
 _BAR = 0.02
 _PHASE_REACH = 98.0
+# Room for the letters on the upper edge [point].
+_LETTERS = 11.0
 
 _ON_THE_AXIS = (
     "natural_frequency",
@@ -57,16 +59,6 @@ _ON_THE_AXIS = (
     "upper_half_power_frequency",
     "capacitor_voltage_maximum_frequency",
 )
-
-
-class _Curve(NamedTuple):
-    """One panel over frequency; ``limits`` turn a quantity's value into the curve's."""
-
-    heading: str
-    words: str
-    kind: str
-    unit: str | None
-    limits: dict[str, float]
 
 
 class _Marks(NamedTuple):
@@ -102,7 +94,8 @@ def frequency_response(
         [S], since it has no current at other frequencies.
     targets : sequence of Target
         Limits on frequencies of the loop and on its bandwidth [Hz], and on current [A],
-        capacitor voltage [V], gain [1] or phase [rad] at a frequency, are drawn; others are not.
+        voltage of an element [V], gain [1] or phase [rad] at a frequency, are drawn. Others on
+        the loop or its steady state are named as not drawn; those on the switch-on are left out.
     batch : Case, optional
         Loops of any number, drawn as the band from the lowest to the highest at each frequency.
     cautions : sequence of str
@@ -113,43 +106,54 @@ def frequency_response(
     Returns
     -------
     Figure
-        Three panels: current, capacitor over source voltage, phase of the current [deg,
-        negative: it lags the source].
+        Three panels: current, gain, phase of the current [deg, negative: it lags the source].
+        The gain is the capacitor's voltage over the source's, and that of each other element
+        which a target names.
     """
     from matplotlib.ticker import FixedLocator
 
     marks = _marks(case)
     frequency = _frequencies(marks, targets, batch)
-    at_source = _response(case, np.array([item(case.source.frequency)]))
+    rows = rows_of(case, targets, marks.source)
+    names = [curve.name for row in rows for curve in row.curves]
+    at_source = response(case, np.array([item(case.source.frequency)]), names)
     figure, axes = panels(3, title, cautions)
-    values = [value.ravel() for value in _response(case, frequency)]
-    bands = None if batch is None else _response_bands(batch, frequency, values)
-    for index, (panel, row) in enumerate(zip(axes, _rows(case), strict=True)):
+    drawn = response(case, frequency, names)
+    values = {name: value.ravel() for name, value in drawn.items()}
+    bands = {} if batch is None else response_bands(batch, frequency, values)
+    for panel, row in zip(axes, rows, strict=True):
+        first = panel is axes[0]
         panel.set_xscale("log")
         panel.set_xlim(frequency[0], frequency[-1])
         if row.kind != "angle":
             panel.set_yscale("log")
-        # a loop without losses has no finite value at its resonance
-        value = np.where(np.isfinite(values[index]), values[index], np.nan)
-        label = "nominal" if batch is not None and index == 0 else ""
-        panel.plot(frequency, value, label=label, **NOMINAL)
-        if bands is not None and batch is not None:
-            label = "" if index else band_label(batch)
-            panel.fill_between(frequency, *bands[index], label=label, **SPREAD)
-        _frequency_marks(panel, marks, named=index == 0)
+        for curve in row.curves:
+            # a loop without losses has no finite value at its resonance
+            value = np.where(np.isfinite(values[curve.name]), values[curve.name], np.nan)
+            label = "nominal" if first and batch is not None else curve.label
+            panel.plot(frequency, value, label=label, **curve.look)
+            if batch is not None:
+                label = band_label(batch) if first else ""
+                color = {} if curve.look is NOMINAL else {"facecolor": curve.look["color"]}
+                panel.fill_between(
+                    frequency, *bands[curve.name], label=label, **{**SPREAD, **color}
+                )
+        _frequency_marks(panel, marks, named=first)
         for target in targets:
-            _frequency_limits(panel, target, named=index == 0)
-            _value_limits(panel, row, target, marks.source)
-            if index == 0 and target.quantity == "bandwidth":
-                _bandwidth_limits(panel, target, marks, float(np.nanmax(value)))
+            _frequency_limits(panel, target, named=first)
+            for curve in row.curves:
+                _value_limits(panel, curve, target, marks.source)
+            if first:
+                _bandwidth_limits(panel, target, marks, values["current"])
+                _not_drawn(panel, target, rows, marks.source)
         low, high = panel.get_ylim()
         panel.set_ylim(
             *((-_PHASE_REACH, _PHASE_REACH) if row.kind == "angle" else (low, 1.2 * high))
         )
         if marks.source is not None:
-            _source_mark(panel, row, marks.source, float(at_source[index].item()))
+            _source_mark(panel, row, marks.source, float(at_source[row.curves[0].name].item()))
         name_axis(panel.yaxis, row.words, row.kind, row.unit)
-        legend_above(panel, row.heading or _resonance(marks))
+        legend_above(panel, row.heading or _resonance(marks), _LETTERS if panel.texts else 0.0)
     axes[-1].yaxis.set_major_locator(FixedLocator([-90, -45, 0, 45, 90]))
     name_axis(axes[-1].xaxis, "frequency", "frequency")
     fit_height(figure, 1.7)
@@ -193,60 +197,6 @@ def _frequencies(marks: _Marks, targets: Sequence[Target], batch: Case | None) -
     return np.unique(np.concatenate([spaced, seen, asked if width else []]))
 
 
-def _rows(case: Case) -> tuple[_Curve, _Curve, _Curve]:
-    level = item(case.source.rms)
-    degree = float(KINDS["angle"].units["deg"])
-    if case.source.kind == "sine":
-        share = case.source.rms_per_amplitude
-        current = {"current": 1.0, "current_amplitude": share}
-        first = _Curve("", "current (rms)", "current", None, current)
-        gain = {"capacitor_voltage": 1 / level, "capacitor_voltage_amplitude": share / level}
-        if not level:
-            gain = {}
-    else:
-        first = _Curve("", "admittance", "conductance", None, {})
-        gain = {}
-    gain |= {"gain": 1.0, "voltage_magnification": 1.0}
-    phase = {"current_phase": 1 / degree, "impedance_phase": -1 / degree}
-    return (
-        first,
-        _Curve("capacitor voltage over source voltage", "gain", "number", "V/V", gain),
-        _Curve("current against source, negative: lags", "phase", "angle", None, phase),
-    )
-
-
-def _response(case: Case, frequency: Array) -> tuple[Array, Array, Array]:
-    """Current [A rms] or admittance [S], gain [1] and phase [deg]; frequencies on the last axis."""
-    steady = steady_state(case.loop.column(), frequency)
-    level = np.asarray(case.source.rms)[..., np.newaxis] if case.source.kind == "sine" else 1.0
-    return (
-        level * np.abs(steady.current),
-        np.abs(steady.capacitor),
-        np.degrees(np.angle(steady.current)),
-    )
-
-
-def _response_bands(
-    batch: Case, frequency: Array, nominal: Sequence[Array]
-) -> list[tuple[Array, Array]]:
-    """Lowest and highest of each curve over the batch, the nominal included.
-
-    Each loop's resonance counts at the nearest frequency drawn: between two of them a sharp
-    peak would be lost.
-    """
-    low, high = [value.copy() for value in nominal], [value.copy() for value in nominal]
-    for piece in pieces(batch, frequency.size):
-        for index, value in enumerate(_response(piece, frequency)):
-            low[index] = np.fmin(low[index], np.fmin.reduce(value, axis=0))
-            high[index] = np.fmax(high[index], np.fmax.reduce(value, axis=0))
-        natural = REGISTER["natural_frequency"](piece)
-        nearest = np.searchsorted(np.sqrt(frequency[1:] * frequency[:-1]), natural)
-        tops = _response(piece, natural[..., np.newaxis])
-        for index in (0, 1):
-            np.fmax.at(high[index], nearest, tops[index][..., 0])
-    return list(zip(low, high, strict=True))
-
-
 def _resonance(marks: _Marks) -> str:
     """The resonance in words."""
     natural, lower, upper = (
@@ -272,8 +222,9 @@ def _frequency_marks(panel: Axes, marks: _Marks, *, named: bool) -> None:
         for name, frequency, side, shift in (
             ("f1", marks.lower, "right", -2), ("f2", marks.upper, "left", 2)
         ):  # fmt: skip
+            # outside, where no limit's line runs through them
             panel.annotate(
-                name, (frequency, 0.0), (shift, 2), xycoords=panel.get_xaxis_transform(),
+                name, (frequency, 1.0), (shift, 2), xycoords=panel.get_xaxis_transform(),
                 textcoords="offset points", ha=side, va="bottom", fontsize=8,
             )  # fmt: skip
 
@@ -291,8 +242,11 @@ def _frequency_limits(panel: Axes, target: Target, *, named: bool) -> None:
             note(panel, f"{label} (beyond the picture)")
 
 
-def _bandwidth_limits(panel: Axes, target: Target, marks: _Marks, top: float) -> None:
+def _bandwidth_limits(panel: Axes, target: Target, marks: _Marks, current: Array) -> None:
     """A bandwidth's limit as a bracket about the resonance, at half the power of the top."""
+    if target.quantity != "bandwidth":
+        return
+    top = float(np.max(current[np.isfinite(current)]))
     for limit, upper in limits(target):
         centre = np.hypot(marks.natural, limit / 2)
         ends = np.array([marks.natural**2 / (centre + limit / 2), centre + limit / 2])
@@ -301,17 +255,28 @@ def _bandwidth_limits(panel: Axes, target: Target, marks: _Marks, top: float) ->
         panel.plot(ends, [level, level], marker="|", markersize=9, label=label, **LIMIT)
 
 
-def _value_limits(panel: Axes, row: _Curve, target: Target, source: float | None) -> None:
-    """Limits on a curve at one frequency: a short bar with a pointer to the allowed side."""
-    at = source if target.at is None else target.at
-    factor = row.limits.get(target.quantity)
-    if at is None or factor is None or target.across not in (None, "capacitor"):
+def _not_drawn(panel: Axes, target: Target, rows: Sequence[Row], source: float | None) -> None:
+    """Name a limit on the loop or its steady state that has no place in this picture."""
+    if target.entry.group == "switch-on" or target.quantity in (*_ON_THE_AXIS, "bandwidth"):
         return
+    if any(place_of(curve, target, source) for row in rows for curve in row.curves):
+        return
+    for _, upper in limits(target):
+        note(panel, f"{limit_label(target, upper=upper)} (not drawn)")
+
+
+def _value_limits(panel: Axes, curve: Curve, target: Target, source: float | None) -> None:
+    """Limits on a curve at one frequency: a short bar with a pointer to the allowed side."""
+    place = place_of(curve, target, source)
+    if place is None:
+        return
+    at, factor = place
     low, high = panel.get_xlim()
     reach = (high / low) ** _BAR
     for limit, upper in limits(target):
-        value = factor * limit
+        value, label = factor * limit, limit_label(target, upper=upper)
         if value <= 0 and panel.get_yscale() == "log":
+            note(panel, f"{label} (below the picture)")
             continue
         panel.plot(
             [at / reach, at, at * reach],
@@ -319,14 +284,15 @@ def _value_limits(panel: Axes, row: _Curve, target: Target, source: float | None
             marker="v" if upper == (factor > 0) else "^",
             markevery=[1],
             markersize=5,
-            label=limit_label(target, upper=upper),
+            label=label,
             **{**LIMIT, "linestyle": "solid", "zorder": 4},
         )
 
 
-def _source_mark(panel: Axes, row: _Curve, source: float, value: float) -> None:
+def _source_mark(panel: Axes, row: Row, source: float, value: float) -> None:
     """The curve's value at the source's frequency."""
-    text = f"{value:.4g} deg" if row.kind == "angle" else show(value, row.kind)
+    unit = float(KINDS[row.kind].units[KINDS[row.kind].symbol])
+    text = shown(value * unit, row.kind)
     label = f"{text} at {show(source, 'frequency')}"
     low, high = panel.get_ylim()
     if low <= value <= high:

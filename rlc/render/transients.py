@@ -15,6 +15,7 @@ from rlc.render.figures import (
     NOMINAL,
     SPREAD,
     STEADY,
+    arrows,
     band_label,
     fit_height,
     item,
@@ -26,6 +27,7 @@ from rlc.render.figures import (
     note,
     panels,
     pieces,
+    shown,
 )
 from rlc.solver.case import Case
 from rlc.solver.quantities import REGISTER
@@ -46,10 +48,11 @@ _MOST_CYCLES = 200.0
 _POINTS_PER_CYCLE = 70
 _LEAST_POINTS, _MOST_POINTS, _EARLY_POINTS, _BAND_POINTS = 1200, 3000, 200, 600
 _BAND_POINTS_PER_CYCLE = 12
-# Way along the path, in widths of the picture, to where an arrow shows its sense.
-_ARROWS_AT = (0.6, 1.6)
 # Above this damping ratio the envelope is no outline of a motion that hardly swings.
 _ENVELOPE_DAMPING = 0.5
+# Where the ringing is not this much quicker than the source, an envelope that follows the source
+# cannot be told from it.
+_ENVELOPE_FREQUENCIES = 3.0
 # A limit further out than this, in multiples of the data, would flatten the curve.
 _LIMIT_REACH = 1.6
 # Steady state per volt above which the source cannot be told from the lossless resonance.
@@ -79,6 +82,11 @@ class _Span(NamedTuple):
     cycles: float
     time: Array
     remark: str
+
+    @property
+    def readable(self) -> bool:
+        """Whether swings are told apart."""
+        return self.cycles <= _READABLE_CYCLES + 1
 
 
 def switch_on(
@@ -126,12 +134,12 @@ def switch_on(
             panel.fill_between(span.time[thin], low, high, label=band_label(batch), **SPREAD)
             extent += [float(np.min(low)), float(np.max(high))]
         _steady(panel, case, trace, span, angle, extent)
-        _envelope(panel, case, trace, span)
+        _envelope(panel, case, trace, span, angle)
         _peak(panel, case, trace, span, angle)
         _peak_limits(panel, trace, targets, extent)
         panel.axhline(0.0, color="0.55", linewidth=0.8, zorder=0.5)
         name_axis(panel.yaxis, trace.words, trace.kind)
-        legend_above(panel, _closed_at(case, trace, angle))
+        legend_above(panel, _closed_at(case, trace, angle, batch))
     axes[-1].set_xlim(0.0, span.end)
     name_axis(axes[-1].xaxis, "time from closing", "time")
     axes[-1].set_xlabel(axes[-1].get_xlabel() + span.remark)
@@ -167,7 +175,7 @@ def state_plane(case: Case, cautions: Sequence[str] = (), title: str = "") -> Fi
     panel.plot(across, up, label="from closing on", **{**NOMINAL, "linewidth": 1.0})
     panel.plot(across[:1], up[:1], label="closing", **{**MARK, "markerfacecolor": "white"})
     _limit_set(panel, case, angle)
-    _arrows(panel, across, up)
+    arrows(panel, across, up)
     panel.margins(0.07)
     name_axis(panel.xaxis, "capacitor voltage", "voltage")
     panel.set_xlabel(panel.get_xlabel() + span.remark)
@@ -177,11 +185,16 @@ def state_plane(case: Case, cautions: Sequence[str] = (), title: str = "") -> Fi
     return figure
 
 
-def _closed_at(case: Case, trace: _Trace, angle: Any) -> str:
+def _closed_at(case: Case, trace: _Trace, angle: Any, batch: Case | None = None) -> str:
+    """At which angle of the source the nominal loop is closed, and those of a batch."""
     if case.source.kind == "dc":
         return ""
+    others = ""
+    if batch is not None:
+        others = "at its own worst" if batch.source.worst_angle else "at the same angle"
+        others = f"; each loop of the band {others}"
     worst = f", worst for the {trace.words}" if case.source.worst_angle else ""
-    return f"closed at {show(item(angle), 'angle')} from the source's rising zero{worst}"
+    return f"closed at {shown(item(angle), 'angle')} from the source's rising zero{worst}{others}"
 
 
 def _waveform(case: Case, trace: _Trace, time: Array, angle: Any) -> Array:
@@ -243,9 +256,7 @@ def _band(
 
 
 def _only_steady(case: Case, trace: _Trace) -> bool:
-    """Whether a sine's switch-on never passes the steady amplitude by what the digits show."""
-    if case.source.kind == "dc":
-        return False
+    """Whether the switch-on never passes its steady state by what the digits show."""
     steady = item(np.abs(case.signals(trace.element)[0].steady))
     return item(case.peak(trace.element).value) <= steady * (1 + _SAME)
 
@@ -276,9 +287,8 @@ def _steady(
     if amplitude > _LIMIT_REACH * max(-min(extent), max(extent)):
         note(panel, f"{label} (beyond the picture)")
         return
-    if span.cycles <= _READABLE_CYCLES + 1:
-        turn = np.exp(2j * np.pi * case.source.frequency * span.time)
-        wave = np.imag(phasor * turn).ravel()
+    if span.readable:
+        wave = _steady_wave(case, phasor, span.time)
         panel.plot(span.time, wave, label=label, **STEADY)
         extent += [float(np.min(wave)), float(np.max(wave))]
     else:
@@ -287,36 +297,48 @@ def _steady(
         panel.axhline(-amplitude, **STEADY)
 
 
-def _envelope(panel: Axes, case: Case, trace: _Trace, span: _Span) -> None:
-    """The outline exp(-t/tau) of the ringing after a constant source is stepped on."""
+def _steady_wave(case: Case, phasor: Any, time: Array) -> Array:
+    """The waveform of a steady state; of a constant source, its final value."""
+    wave: Array = np.imag(phasor * np.exp(2j * np.pi * case.source.frequency * time)).ravel()
+    return wave
+
+
+def _envelope(panel: Axes, case: Case, trace: _Trace, span: _Span, angle: Any) -> None:
+    """The outline exp(-t/tau) of the ringing about the steady state, or tau in words."""
     eq = case.equation
-    ratio = item(eq.damping_ratio)
-    if case.source.kind != "dc" or not 0 < ratio < _ENVELOPE_DAMPING:
+    lasting = show(item(REGISTER["time_constant"](case)), "time")
+    quick = eq.root[0] >= 2 * np.pi * _ENVELOPE_FREQUENCIES * case.source.frequency
+    if not (0 < item(eq.damping_ratio) < _ENVELOPE_DAMPING and item(quick) and span.readable):
+        if trace is _CURRENT and not span.remark:
+            note(panel, f"time constant {lasting}")
         return
-    signal = case.constant_signal(trace.element)
-    reach = np.hypot(signal.value, (signal.slope + eq.damping * signal.value) / eq.root[0])
+    rotating, fixed = case.signals(trace.element)
+    turn = np.exp(1j * angle)
+    value = np.imag(turn * rotating.value) + fixed.value
+    slope = np.imag(turn * rotating.slope) + fixed.slope
+    reach = np.hypot(value, (slope + eq.damping * value) / eq.root[0])
     outline = (reach * np.exp(-eq.damping * span.time)).ravel()
-    steady = item(signal.steady)
-    label = f"envelope, time constant {show(item(1 / eq.damping), 'time')}"
-    panel.plot(span.time, steady + outline, label=label, **ENVELOPE)
-    panel.plot(span.time, steady - outline, **ENVELOPE)
+    steady = _steady_wave(case, turn * rotating.steady, span.time)
+    look = ENVELOPE if case.source.kind == "dc" else {**ENVELOPE, "linewidth": 1.0}
+    panel.plot(span.time, steady + outline, label=f"envelope, time constant {lasting}", **look)
+    panel.plot(span.time, steady - outline, **look)
 
 
 def _peak(panel: Axes, case: Case, trace: _Trace, span: _Span, angle: Any) -> None:
     """Mark the peak, or say in words why it cannot be marked."""
     peak = case.peak(trace.element)
     value, time, gap = item(peak.value), item(peak.time), item(peak.gap)
-    size = show(value, trace.kind)
+    size = f"peak {show(value, trace.kind)}"
+    more = f", at most {show(gap, 'ratio', 2)} more" if gap > _PROVED else ""
+    approached = not np.isfinite(time)
     if not (np.isfinite(value) and _bounded(case)):
         note(panel, "grows without bound")
-    elif not np.isfinite(time):
-        note(panel, f"peak {size}, approached but not reached")
-    elif _only_steady(case, trace):
-        note(panel, f"peak {size}, no higher than the steady state")
+    elif _only_steady(case, trace) and not (approached and case.source.kind == "dc"):
+        note(panel, f"{size}{more}, no higher than the steady state")
+    elif approached:
+        note(panel, f"{size}{more}, approached but not reached")
     else:
-        label = f"peak {size} at {show(time, 'time')}"
-        if gap > _PROVED:
-            label += f", at most {show(gap, 'ratio', 2)} more"
+        label = f"{size} at {show(time, 'time')}{more}"
         if time > span.end:
             note(panel, f"{label}, after the time shown")
             return
@@ -367,18 +389,3 @@ def _limit_set(panel: Axes, case: Case, angle: Any) -> None:
         np.imag(voltage * turn).ravel(), np.imag(current * turn).ravel(),
         label="steady state, one period of the source", **{**STEADY, "linewidth": 2.4, "zorder": 4},
     )  # fmt: skip
-
-
-def _arrows(panel: Axes, across: Array, up: Array) -> None:
-    """Show the sense of the motion early on, where the turns lie apart."""
-    steps = np.hypot(np.diff(across) / (np.ptp(across) or 1), np.diff(up) / (np.ptp(up) or 1))
-    way = np.concatenate([[0.0], np.cumsum(steps)])
-    for distance in _ARROWS_AT:
-        start = int(np.searchsorted(way, distance * min(1.0, way[-1] / 2)))
-        end = int(np.searchsorted(way, way[start] + 0.02))
-        if start < end < way.size:
-            panel.annotate(
-                "", (across[end], up[end]), (across[start], up[start]),
-                arrowprops={"arrowstyle": "-|>", "color": NOMINAL["color"], "mutation_scale": 16,
-                            "shrinkA": 0, "shrinkB": 0},
-            )  # fmt: skip

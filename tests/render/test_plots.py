@@ -51,11 +51,27 @@ def legend_text(panel) -> str:
     return "\n".join([legend.get_title().get_text(), *(t.get_text() for t in legend.get_texts())])
 
 
+def drawn(figure):
+    """The figure after one drawing pass, so that texts have their places."""
+    FigureCanvasAgg(figure).draw()
+    return figure
+
+
+def ticks(axis) -> list[str]:
+    """Labels of the ticks that are seen, after a drawing pass."""
+    low, high = axis.get_view_interval()
+    return [
+        label.get_text()
+        for place, label in zip(axis.get_majorticklocs(), axis.get_majorticklabels(), strict=True)
+        if low <= place <= high
+    ]
+
+
 def curve(panel):
     return panel.lines[0].get_data()
 
 
-def band(panel, start="lowest to highest"):
+def band(panel, start="nominal, corners and samples"):
     """Frequencies or times, lower and upper edge of a batch's band."""
     outline = labelled(panel, start).get_paths()[0].vertices
     count = (len(outline) - 3) // 2
@@ -83,8 +99,8 @@ def test_frequency_response_is_the_closed_form():
 def test_frequency_axes_say_what_they_show():
     figure = plots.frequency_response(audio(), title="Horn driver")
     labels = [panel.get_ylabel() for panel in figure.axes]
-    assert labels == ["current (rms) [A]", "gain [V/V]", "phase [deg]"]
-    assert figure.axes[-1].get_xlabel() == "frequency [kHz]"
+    assert labels == ["current, rms [A]", "gain [V/V]", "phase [deg]"]
+    assert figure.axes[-1].get_xlabel() == "frequency [Hz]"
     assert "negative: lags" in legend_text(figure.axes[2])
     assert figure.get_suptitle() == "Horn driver"
 
@@ -133,7 +149,9 @@ def test_limits_over_frequency_are_where_they_were_set():
         Target("gain", minimum=10.0, at=700.0),
         Target("current_phase", maximum=np.pi / 6, at=800.0),
         *Ratings(capacitor_voltage_rms=250.0).targets(),
-        Target("gain", maximum=3.0, across="inductor"),  # another element: not in this picture
+        Target("impedance", minimum=5.0, at=1e3),
+        Target("gain", minimum=0.0, at=1e3),
+        Target("overshoot", maximum=0.5),  # of the switch-on: in no picture of the steady state
         Target("lower_half_power_frequency", minimum=1.0),
     )
     current, gain, phase = plots.frequency_response(audio(), targets).axes
@@ -150,9 +168,75 @@ def test_limits_over_frequency_are_where_they_were_set():
     assert voltage.get_ydata()[1] == pytest.approx(250.0 / RMS)
     lead = labelled(phase, "current phase max 30 deg at 800 Hz")
     assert lead.get_ydata()[1] == pytest.approx(30.0)
-    assert "max 3" not in legend_text(gain)
+    assert labelled(current, "impedance min 5 ohm at 1 kHz (not drawn)").get_xdata().size == 0
+    assert labelled(gain, "gain min 0 at 1 kHz (below the picture)").get_xdata().size == 0
+    assert "overshoot" not in legend_text(current)
     far = labelled(current, "lower half power frequency min 1 Hz (beyond the picture)")
     assert far.get_xdata().size == 0
+
+
+@pytest.mark.parametrize("source", [sine(RMS * np.sqrt(2), FREQUENCY, 0.0), constant(24.0)])
+def test_gain_across_another_element_is_drawn_for_the_targets_that_name_it(source):
+    case = Case(make_loop(**AUDIO, winding_resistance=2.0), source)
+    batch = Case(make_loop(**AUDIO, winding_resistance=np.array([1.0, 3.0])), source)
+    targets = (
+        Target("gain", maximum=0.03, across="resistor", at=300.0),
+        Target("gain", minimum=0.1, across="inductor", at=300.0),
+        Target("gain", maximum=20.0, across="capacitor", at=1e3),
+    )
+    gain = plots.frequency_response(case, targets, batch).axes[1]
+    frequency = curve(gain)[0]
+    omega = 2 * np.pi * frequency
+    coil = 2.0 + 1j * omega * 33e-3
+    impedance = 12.5 + coil - 1j / (omega * 1e-6)
+    forms = {
+        "capacitor": 1 / np.abs(impedance * omega * 1e-6),
+        "resistor": 12.5 / np.abs(impedance),
+        "inductor": np.abs(coil / impedance),
+    }
+    for element, form in forms.items():
+        line = labelled(gain, f"across the {element}")
+        # the reactance is a difference of terms 15 times larger than the resistance
+        np.testing.assert_allclose(line.get_ydata(), form, rtol=1e2 * ROUNDING)
+    assert len({labelled(gain, f"across the {each}").get_color() for each in forms}) == 3
+    assert len({labelled(gain, f"across the {each}").get_linestyle() for each in forms}) >= 2
+    assert sum(len(band.get_paths()) for band in gain.collections) == 3
+    for label, value in (
+        ("gain across the resistor max 0.03 at 300 Hz", 0.03),
+        ("gain across the inductor min 0.1 at 300 Hz", 0.1),
+        ("gain across the capacitor max 20 at 1 kHz", 20.0),
+    ):
+        mark = labelled(gain, label)
+        assert mark.get_ydata()[1] == value
+        assert mark.get_xdata()[1] in (300.0, 1e3)
+    assert "voltage over source voltage" in legend_text(gain)
+
+
+def test_voltage_of_another_element_has_a_place_at_the_source_frequency():
+    gain = plots.frequency_response(audio(), (Target("inductor_voltage", maximum=360.0),)).axes[1]
+    mark = labelled(gain, "inductor voltage max 360 V")
+    assert (mark.get_xdata()[1], mark.get_ydata()[1]) == (FREQUENCY, pytest.approx(360.0 / RMS))
+    assert labelled(gain, "across the inductor")
+    assert "across the resistor" not in legend_text(gain)
+
+
+def test_gain_across_another_element_of_a_constant_source_needs_a_frequency():
+    case = Case(make_loop(**INRUSH), constant(24.0))
+    targets = (Target("gain", maximum=0.5, across="resistor"),)
+    current, gain, _ = plots.frequency_response(case, targets).axes
+    assert labelled(current, "gain across the resistor max 0.5 (not drawn)")
+    assert "capacitor voltage over source voltage" in legend_text(gain)
+
+
+def test_letters_of_the_half_power_band_stand_outside_clear_of_everything():
+    targets = (Target("natural_frequency", 840.0, 915.0), Target("bandwidth", 50.0, 70.0))
+    figure = drawn(plots.frequency_response(audio(), targets))
+    current = figure.axes[0]
+    lower, upper = (text.get_window_extent() for text in current.texts)
+    for letters in (lower, upper):
+        assert letters.y0 >= current.bbox.y1
+        assert letters.y1 <= current.get_legend().get_window_extent().y0
+    assert lower.x1 < upper.x0
 
 
 def test_constant_source_has_an_admittance_and_no_source_frequency():
@@ -169,7 +253,7 @@ def test_band_over_frequency_is_lowest_and_highest_of_the_loops():
     inductance = np.array([[0.9, 1.0], [1.1, 1.05]]) * 33e-3
     batch = audio(inductance=inductance)
     current = plots.frequency_response(case, batch=batch).axes[0]
-    assert labelled(current, "lowest to highest of 4 loops")
+    assert labelled(current, "nominal, corners and samples (4 loops)")
     frequency, low, high = band(current)
     nominal = curve(current)[1]
     assert np.all(low <= nominal)
@@ -323,6 +407,71 @@ def test_one_sided_waveform_has_one_limit_line():
     assert [line.get_ydata()[0] for line in voltage.lines if len(line.get_xdata()) == 3] == [16.0]
 
 
+@pytest.mark.parametrize(("ratio", "marked"), [(0.94, True), (0.95, False)])
+def test_peak_that_only_digits_tell_from_the_final_value_is_not_marked(ratio, marked):
+    """A step's overshoot exp(-pi z/sqrt(1 - z^2)) is 1.7e-4 for 0.94, 0.7e-4 for 0.95."""
+    resistance = 2 * ratio * np.sqrt(AUDIO["inductance"] / AUDIO["capacitance"])
+    case = Case(make_loop(**{**AUDIO, "resistance": resistance}), constant(12.0))
+    voltage = plots.switch_on(case).axes[1]
+    assert labelled(voltage, "peak 12 V").get_xdata().size == marked
+    assert ("no higher than the steady state" in legend_text(voltage)) is not marked
+
+
+def test_angle_that_is_only_rounding_is_zero():
+    case = Case(make_loop(**MAINS), sine(MAINS_PEAK, 50.0, 1e-14))
+    for panel in (*plots.switch_on(case).axes, *plots.state_plane(case).axes):
+        assert "closed at 0 deg from" in legend_text(panel)
+    natural = REGISTER["natural_frequency"](audio()).item()
+    at_resonance = Case(make_loop(**AUDIO), sine(34.0, natural, 0.0))
+    phase = plots.frequency_response(at_resonance).axes[2]
+    assert "0 deg at 876.1 Hz" in legend_text(phase).splitlines()
+
+
+def test_nothing_is_said_of_closing_angles_under_a_constant_source():
+    case = Case(make_loop(**INRUSH), constant(24.0))
+    for panel in (*plots.switch_on(case, batch=case).axes, *plots.state_plane(case).axes):
+        assert "closed" not in legend_text(panel)
+        assert "angle" not in legend_text(panel)
+
+
+@pytest.mark.parametrize(
+    ("angle", "words"), [(None, "at its own worst"), (0.3, "at the same angle")]
+)
+def test_band_says_at_which_angle_its_loops_are_closed(angle, words):
+    source = sine(MAINS_PEAK, 50.0, angle)
+    batch = Case(make_loop(**{**MAINS, "inductance": 200e-6 * np.array([0.9, 1.1])}), source)
+    for panel in plots.switch_on(Case(make_loop(**MAINS), source), batch=batch).axes:
+        assert legend_text(panel).splitlines()[0].endswith(f"; each loop of the band {words}")
+        assert labelled(panel, "nominal, corners and samples (2 loops)")
+    for panel in plots.switch_on(Case(make_loop(**MAINS), source)).axes:
+        assert "band" not in legend_text(panel)
+
+
+@pytest.mark.parametrize("states", [(0.0, 0.0), (-200.0, 30.0)])
+@pytest.mark.parametrize("angle", [None, 0.7])
+def test_envelope_of_a_quick_ringing_lies_about_the_steady_sine(angle, states):
+    """Time constant 2 L/R = 8 ms; ringing at 919 Hz under a source of 50 Hz."""
+    case = Case(make_loop(**MAINS), sine(MAINS_PEAK, 50.0, angle), *states)
+    for panel in plots.switch_on(case).axes:
+        time, values = curve(panel)
+        upper = labelled(panel, "envelope, time constant 8 ms").get_ydata()
+        steady = labelled(panel, "steady state").get_ydata()
+        outline = upper - steady
+        np.testing.assert_allclose(outline, outline[0] * np.exp(-time / 8e-3), atol=1e-9 * upper[0])
+        size = np.abs(values - steady)
+        assert np.all(size <= outline + 1e-9 * outline[0])
+        # seventy points in a swing: the nearest is 1/140 of a turn from the top, 0.1 % below it
+        assert np.max(size / outline) > 1 - 2e-3
+
+
+def test_where_no_envelope_can_be_read_the_time_constant_is_said():
+    """Near resonance: 2 L/R = 66 mH over 12.5 ohm."""
+    current, voltage = plots.switch_on(audio()).axes
+    assert labelled(current, "time constant 5.28 ms").get_xdata().size == 0
+    for panel in (current, voltage):
+        assert "envelope" not in legend_text(panel)
+
+
 def test_peak_only_approached_is_said_and_not_marked():
     _, voltage = plots.switch_on(Case(make_loop(**OVERDAMPED), constant(12.0))).axes
     said = labelled(voltage, "peak 12 V, approached but not reached")
@@ -432,6 +581,39 @@ def test_histogram_counts_what_is_within_and_outside():
     assert panel.get_xlabel() == "bandwidth [Hz]"
 
 
+def test_histogram_names_only_what_there_is():
+    (panel,) = plots.histogram(Target("bandwidth", 50.0, 70.0), VALUES[:-2], 60.0).axes
+    assert "outside" not in legend_text(panel)
+    assert len(panel.containers) == 1
+    assert panel.get_ylabel() == "samples per bin"
+
+
+@pytest.mark.parametrize(
+    ("target", "label"),
+    [
+        (Target("current"), "current, rms [A]"),
+        (Target("capacitor_voltage_amplitude"),
+         "capacitor voltage amplitude, peak, steady state [V]"),
+        (Target("peak_current"), "peak current, peak magnitude over all time [A]"),
+        (Target("damping_ratio"), "damping ratio"),
+        (Target("gain", maximum=0.03, at=300.0, across="resistor"),
+         "gain across the resistor at 300 Hz"),
+        (Target("settling_time", at=0.05), "settling time at 5 % [s]"),
+        (Target("overshoot"), "overshoot [%]"),
+    ],
+)  # fmt: skip
+def test_histogram_axis_carries_convention_and_unit(target, label):
+    (panel,) = plots.histogram(target, np.linspace(2.0, 5.0, 40), 3.0).axes
+    assert panel.get_xlabel() == label
+
+
+def test_histogram_of_what_rounding_leaves_of_an_angle_is_one_value():
+    target = Target("worst_closing_angle_current")
+    (panel,) = plots.histogram(target, [1e-16, 2e-15, 0.0, 3e-14], 1e-14).axes
+    assert labelled(panel, "nominal 0 deg")
+    assert [bar.get_height() for bar in labelled(panel, "samples")] == [4]
+
+
 def test_histogram_of_an_angle_is_in_degrees():
     target = Target("current_phase", maximum=np.pi / 3)
     (panel,) = plots.histogram(target, np.linspace(0.0, np.pi / 2, 50), np.pi / 4).axes
@@ -482,12 +664,6 @@ TARGETS = (
 )
 
 
-def drawn(figure):
-    """The figure after one drawing pass, so that texts have their places."""
-    FigureCanvasAgg(figure).draw()
-    return figure
-
-
 @pytest.mark.parametrize("name", CASES)
 @pytest.mark.parametrize("picture", ["frequency_response", "switch_on", "state_plane"])
 def test_nothing_is_cut_or_covered(name, picture):
@@ -521,6 +697,44 @@ def test_nothing_is_cut_or_covered(name, picture):
         assert panel.bbox.height > 100
         assert "[" in panel.get_ylabel()
     assert "[" in figure.axes[-1].get_xlabel()
+
+
+@pytest.mark.parametrize("name", CASES)
+def test_frequencies_are_written_without_leading_zeros(name):
+    """Each tick has the prefix that its number asks for, or all of them the same."""
+    parts, source = CASES[name]
+    figure = drawn(plots.frequency_response(Case(make_loop(**parts), source)))
+    labels = ticks(figure.axes[-1].xaxis)
+    assert len(labels) >= 2
+    assert not [label for label in labels if label.startswith("0")]
+    unit = figure.axes[-1].get_xlabel().removeprefix("frequency ")
+    assert all(label.endswith("Hz") for label in labels) == (" " in labels[0])
+    assert unit == "[Hz]" if " " in labels[0] else unit.endswith("Hz]")
+
+
+def test_frequencies_from_source_to_resonance_have_each_its_prefix():
+    figure = drawn(plots.frequency_response(Case(make_loop(**MAINS), sine(MAINS_PEAK, 50.0))))
+    labels = ticks(figure.axes[-1].xaxis)
+    assert labels == ["50 Hz", "100 Hz", "200 Hz", "500 Hz", "1 kHz"]
+
+
+def test_axis_that_goes_little_beyond_its_data_keeps_their_prefix():
+    case = Case(make_loop(**MAINS), sine(3 * MAINS_PEAK, 50.0, None))
+    current = drawn(plots.switch_on(case, (Target("peak_current", maximum=900.0),))).axes[0]
+    assert current.get_ylim()[1] > 1000.0
+    assert current.get_ylabel() == "current [A]"
+    assert "500" in ticks(current.yaxis)
+
+
+@pytest.mark.parametrize("suffix", [".png", ".svg", ".pdf"])
+def test_characters_that_the_font_lacks_are_no_warning(tmp_path, suffix):
+    """Warnings are errors here: a box is drawn in their place, and nothing is printed."""
+    title = "震荡回路 מעגל 🔔"
+    figure = plots.state_plane(audio(), title=title, cautions=(title,))
+    path = tmp_path / f"picture{suffix}"
+    plots.save(figure, path)
+    assert figure.get_suptitle() == title
+    assert path.stat().st_size > 1000
 
 
 def test_dollar_signs_are_no_formula():
@@ -572,11 +786,26 @@ def test_nothing_is_overwritten(tmp_path):
         ("picture", "must end with"),
         ("nowhere/picture.png", "cannot be written: No such file"),
         ("nowhere/picture.pdf", "cannot be written: No such file"),
+        # cannot even be looked for
+        (f"{'x' * 300}.png", "cannot be written: File name too long"),
     ],
 )
 def test_path_that_cannot_be_written(tmp_path, name, rule):
     with pytest.raises(InputError, match=rule):
         plots.save(plots.state_plane(audio()), tmp_path / name)
+    assert not list(tmp_path.iterdir())
+
+
+def test_directory_that_cannot_be_searched(tmp_path, monkeypatch):
+    def refuse(path, *args, **kwargs):
+        raise PermissionError(13, "Permission denied")
+
+    figure = plots.state_plane(audio())
+    for name in ("exists", "unlink"):
+        monkeypatch.setattr(f"pathlib.Path.{name}", refuse)
+    with pytest.raises(InputError, match="cannot be written: Permission denied"):
+        plots.save(figure, tmp_path / "picture.png")
+    monkeypatch.undo()
     assert not list(tmp_path.iterdir())
 
 
