@@ -279,12 +279,10 @@ def _limits(outcome: Outcome, kind: str) -> str:
 def _share(outcome: Outcome) -> str:
     if outcome.share is None:
         return "-"
+    # To hundredths of a per cent; 0.57 times 1e4 is 5700, but for its last bit.
+    value, low, high = (round(each * 1e4, 6) for each in outcome.share[:3])
     # Rounded against the loop: a yield is not printed as 100 % unless it is.
-    low, value, high = (
-        math.floor(outcome.share.low * 1e4) / 100,
-        math.floor(outcome.share.value * 1e4) / 100,
-        math.ceil(outcome.share.high * 1e4) / 100,
-    )
+    low, value, high = math.floor(low) / 100, math.floor(value) / 100, math.ceil(high) / 100
     return f"{value:g} %\n{low:g} to {high:g}"
 
 
