@@ -2,6 +2,7 @@
 
 import itertools
 import math
+import re
 
 import numpy as np
 import pytest
@@ -74,6 +75,14 @@ def test_a_higher_voltage_among_the_samples_is_taken_with_the_highest_capacitanc
     assert told(case, worst={"stored_energy": 21.0}, corners=corners) == told(case, corners=corners)
 
 
+def test_the_unit_with_the_largest_capacitance_decides_whether_to_speak():
+    # 0.1 uF from 60 V to 450 V (IEC 60335-1, 8.1.4)
+    case = Case(slow(0.095e-6), constant(300.0))
+    assert "stored-energy" not in told(case)
+    assert "shock" in told(case, corners=spread_over(case, capacitance=TENTH))["stored-energy"]
+    assert "stored-energy" not in told(case, corners=spread_over(case, capacitance=(0.9, 1.05)))
+
+
 def test_energy_in_the_inductance_goes_with_the_current_of_its_own_unit():
     """Without losses it is C V^2/2 in every unit, although i^2 goes with C/L."""
     case = Case(lossless(2e-6, 200e-6), constant(10.0))
@@ -83,6 +92,9 @@ def test_energy_in_the_inductance_goes_with_the_current_of_its_own_unit():
     assert "Energy in the inductance: nominal 10 mJ, up to 11 mJ over the parts." in text
     assert "Peak current: nominal 100 A" in text
     assert holds(text, "A", 100 * math.sqrt(1.1 / 0.8))
+    # the source's share of the inductance counts as well
+    shared = Case(lossless(1e-6, 200e-6, source_inductance=1e-6), constant(10.0))
+    assert "Energy in the inductance: 10 mJ." in told(shared)["interrupting"]
     below = Case(lossless(2e-6, 19e-6), constant(10.0))  # 0.95 mJ, and 1.045 mJ at most
     assert "interrupting" not in told(below)
     assert "interrupting" in told(below, corners=spread_over(below, capacitance=TENTH))
@@ -185,6 +197,8 @@ def test_a_time_constant_is_over_the_parts():
     case = Case(parts, constant(24.0))
     text = told(case, corners=spread_over(case, capacitance=FIFTH))["residual-voltage"]
     assert "a time constant of nominal 1 s, up to 1.2 s over the parts." in text
+    parts = slow(10e-3, load_resistance=18e3)  # 180 s
+    assert "a time constant of 3 min." in told(Case(parts, constant(24.0)))["residual-voltage"]
 
 
 # --- current
@@ -209,6 +223,16 @@ def test_current_and_let_through_of_an_inrush_are_over_the_parts():
     assert through.startswith(" 0.432 A^2 s over the parts.")
     sampled = told(case, worst={"let_through": 0.44}, corners=corners)["inrush"]
     assert "up to 0.44 A^2 s over the parts" in sampled
+
+
+def test_let_through_beside_a_load_ends_in_every_unit():
+    """Over all time a load lets through without bound; so do the samples."""
+    case = Case(loop(0.1, 1e-6, 100e-6, load_resistance=20.0), constant(24.0))
+    corners = spread_over(case, capacitance=FIFTH)
+    found = told(case, worst={"let_through": math.inf}, corners=corners, fuse=Fuse(1.5, 100))
+    assert "unbounded" not in found["inrush"] + found["fuse"]
+    (said,) = re.findall(r"is (nominal .* over the parts)\.", found["inrush"])
+    assert f"one switch-on is {said}." in found["fuse"]
 
 
 def test_an_inrush_is_held_against_the_steady_current_of_its_own_unit():
@@ -275,6 +299,7 @@ value = "0.5 ohm"
 {tolerance}
 [inductor]
 value = "1 mH"
+saturation_current = "50 A"
 [capacitor]
 value = "1 mF"
 {tolerance}
@@ -315,7 +340,7 @@ def test_every_command_knows_the_tolerances_of_a_sheet(tmp_path, groups):
     assert 55 < opposite < 58
     if "switch-on" in groups:
         assert holds(texts["trapped-charge"], "A", opposite)
-        assert "(above the target of 55 A)" in texts["trapped-charge"]
+        assert "(above the rated 50 A and the target of 55 A)" in texts["trapped-charge"]
 
     path.write_text(SHEET.format(tolerance=""), encoding="utf-8")
     plain = review(load(path), names_in(*groups)).cautions
