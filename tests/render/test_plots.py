@@ -484,6 +484,14 @@ def test_peak_of_a_slow_build_up_is_the_steady_state():
     assert "no higher than the steady state" in legend_text(current)
 
 
+def test_peak_only_approached_at_resonance_is_the_steady_state():
+    case = Case(make_loop(**{**AUDIO, "resistance": 0.05}), sine(34.0, 876.12, 0.0))
+    for panel, element in zip(plots.switch_on(case).axes, ("current", "capacitor"), strict=True):
+        assert np.isinf(case.peak(element).time)
+        assert "no higher than the steady state" in legend_text(panel)
+        assert "approached" not in legend_text(panel)
+
+
 def test_lossless_resonance_grows_without_bound():
     loop = make_loop(**LOSSLESS)
     natural = REGISTER["natural_frequency"](Case(loop, constant(1.0))).item()
