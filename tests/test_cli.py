@@ -191,8 +191,8 @@ def test_pictures_are_saved_and_never_overwritten(tmp_path: Path) -> None:
         "spread-1-peak_capacitor_voltage.png",
         "spread-2-peak_current.png",
         "spread-3-settling_time.png",
-        "spread-4-let_through.png",
-        "spread-5-peak_capacitor_voltage.png",
+        "spread-4-peak_capacitor_voltage.png",
+        "spread-5-let_through.png",
         "state-plane.png",
         "switch-on.png",
     ]

@@ -41,6 +41,9 @@ def write(width: int, *pieces: Table | Text | str) -> None:
             for line in textwrap.wrap(piece, min(width, _WIDEST_TEXT)) or [""]:
                 console.print(Text(line))
         elif isinstance(piece, Text):
+            # As rich does it for the rules of tables where a terminal has no such signs.
+            if not console.encoding.startswith("utf"):
+                piece = Text(piece.plain.replace("─", "-"))
             console.print(piece)
         else:
             _fit(piece, width)

@@ -21,7 +21,7 @@ from rlc.solver.steady import SteadyState, steady_state
 Array = NDArray[np.float64]
 
 _PEAKED = ("current", "current_rate", "capacitor", "inductor", "dielectric")
-_FEW_LOOPS = 16
+_FEW_LOOPS = 32
 _ANGLE = 1e-12
 
 
