@@ -22,7 +22,7 @@ PICTURES = {
 }
 
 # A command line that follows a dollar sign, and what it printed.
-_SESSION = re.compile(r"(?<=```console\n)\$ rlc (?P<line>.*)\n(?P<output>(?s:.*?))(?=```)")
+_EXAMPLE = re.compile(r"(?<=```console\n)\$ rlc (?P<line>.*)\n(?P<output>(?s:.*?))(?=```)")
 
 
 def draw(directory: Path) -> list[Path]:
@@ -48,8 +48,8 @@ def answer(line: str) -> str:
 
 
 def refreshed(text: str) -> str:
-    """The text of a README with every session run again."""
-    return _SESSION.sub(lambda found: f"$ rlc {found['line']}\n{answer(found['line'])}", text)
+    """The text of a README with every command run again."""
+    return _EXAMPLE.sub(lambda found: f"$ rlc {found['line']}\n{answer(found['line'])}", text)
 
 
 if __name__ == "__main__":

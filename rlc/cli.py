@@ -25,7 +25,7 @@ from rlc.console import (
     terminal_width,
     with_flags,
 )
-from rlc.errors import InputError
+from rlc.files import write_new
 from rlc.front.flags import FLAGS, SAMPLES, SEED, TOLERANCE_FLAGS
 
 if TYPE_CHECKING:
@@ -200,13 +200,7 @@ def new(
 
     path = file or Path(f"{kind}.toml")
     text = files("rlc.front").joinpath("starters", f"{kind}.toml").read_bytes()
-    try:
-        with path.open("xb") as sheet:
-            sheet.write(text)
-    except FileExistsError:
-        raise InputError("FILE", str(path), "exists, and nothing is overwritten") from None
-    except OSError as error:
-        raise InputError("FILE", str(path), f"cannot be written: {error.strerror}") from None
+    write_new(path, "FILE", lambda partial: partial.write_bytes(text))
     typer.echo(f"Wrote {path}; try: rlc check {path}", err=True)
 
 

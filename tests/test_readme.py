@@ -30,7 +30,7 @@ def refresh() -> ModuleType:
     return module
 
 
-def test_every_session_prints_what_the_readme_shows(
+def test_every_command_prints_what_the_readme_shows(
     refresh: ModuleType, monkeypatch: pytest.MonkeyPatch
 ) -> None:
     """After a change that is meant: python examples/refresh.py."""

@@ -5,7 +5,6 @@ Each function returns a figure and draws nothing on any screen; `save` writes it
 
 from __future__ import annotations
 
-import contextlib
 import os
 from collections.abc import Sequence
 from pathlib import Path
@@ -15,6 +14,7 @@ import numpy as np
 from numpy.typing import ArrayLike, NDArray
 
 from rlc.errors import InputError
+from rlc.files import write_new
 from rlc.front.marking import KINDS, show
 from rlc.render.figures import (
     ANGLE_DECIMALS,
@@ -185,23 +185,16 @@ def save(figure: Figure, path: str | os.PathLike[str]) -> None:
     suffix = path.suffix.lower()
     if suffix not in _FORMATS:
         raise InputError("path", str(path), f"must end with {', '.join(_FORMATS)}")
-    partial = path.with_name(f".{path.name}.{os.getpid()}.partial")
-    try:
-        if path.exists():
-            raise InputError("path", str(path), "exists, and nothing is overwritten")
+
+    def fill(partial: Path) -> None:
         # a random salt would give every SVG other names for its clip paths
         with matplotlib.rc_context({"svg.hashsalt": "rlc"}), any_character():
             if suffix == ".png":
                 _write_pixels(figure, partial)
             else:
                 figure.savefig(partial, format=suffix[1:], metadata=_FORMATS[suffix])
-        partial.replace(path)
-    except OSError as error:
-        raise InputError("path", str(path), f"cannot be written: {error.strerror}") from error
-    finally:
-        # where nothing can be looked for, nothing was written either
-        with contextlib.suppress(OSError):
-            partial.unlink(missing_ok=True)
+
+    write_new(path, "path", fill)
 
 
 def _write_pixels(figure: Figure, path: Path) -> None:
