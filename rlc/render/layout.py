@@ -35,7 +35,8 @@ def write(width: int, *pieces: Table | Text | str) -> None:
     console = Console(width=_ENDLESS, markup=False, highlight=False, emoji=False)
     for before, piece in zip((None, *pieces), pieces, strict=False):
         laid_out = Table | Text
-        if isinstance(before, laid_out) or (before is not None and isinstance(piece, laid_out)):
+        apart = isinstance(before, laid_out) or (before is not None and isinstance(piece, laid_out))
+        if apart and piece != "":
             console.print()
         if isinstance(piece, str):
             for line in textwrap.wrap(piece, min(width, _WIDEST_TEXT)) or [""]:
