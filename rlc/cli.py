@@ -3,7 +3,6 @@
 from __future__ import annotations
 
 import json
-import os
 from dataclasses import replace
 from pathlib import Path
 from typing import TYPE_CHECKING, Annotated, Literal
@@ -45,13 +44,6 @@ app = typer.Typer(
 )
 
 TARGET_FAILS = 3
-
-
-def main() -> None:
-    """Run the command line."""
-    # The largest product here is of 4 by 4 matrices; starting threads for it takes longer.
-    os.environ.setdefault("OPENBLAS_NUM_THREADS", "1")
-    app()
 
 
 @app.command()

@@ -27,7 +27,7 @@ def loaded(*words: str) -> set[str]:
     code = (
         "import sys, atexit; sys.argv = ['rlc', *sys.argv[1:]];"
         "atexit.register(lambda: print(*{name.partition('.')[0] for name in sys.modules}));"
-        "from rlc.cli import main; main()"
+        "from rlc.__main__ import main; main()"
     )
     done = subprocess.run([sys.executable, "-c", code, *words], capture_output=True, text=True)
     assert done.returncode == 0, done.stderr

@@ -3,11 +3,9 @@
 from __future__ import annotations
 
 import re
-import tomllib
 from collections.abc import Mapping
 from copy import deepcopy
 from dataclasses import dataclass, field
-from difflib import get_close_matches
 from pathlib import Path
 from typing import Any, NamedTuple
 
@@ -115,6 +113,9 @@ def read_document(path: str | Path) -> Document:
     SheetError
         If it is no readable text file, or no TOML.
     """
+    # A question from flags alone reads no sheet.
+    import tomllib
+
     text = _text(path)
     try:
         data = tomllib.loads(text)
@@ -151,6 +152,8 @@ def check_flags(given: Mapping[str, str]) -> None:
     known = [flag.option for flag in FLAGS + TOLERANCE_FLAGS]
     for option in given:
         if option not in known:
+            from difflib import get_close_matches
+
             near = get_close_matches(option, known, 1)
             hint = f'Did you mean "{near[0]}"?' if near else ""
             raise InputError(option, given[option], "is no flag for a value of a sheet", hint)

@@ -11,7 +11,6 @@ from __future__ import annotations
 
 from collections.abc import Callable
 from dataclasses import dataclass
-from difflib import get_close_matches
 from typing import Any, Literal
 
 import numpy as np
@@ -384,6 +383,8 @@ def lookup(name: str, where: str) -> Quantity:
     """
     if name in REGISTER:
         return REGISTER[name]
+    from difflib import get_close_matches
+
     near = get_close_matches(name, REGISTER, 1)
     hint = f'Did you mean "{near[0]}"?' if near else 'The names: "rlc quantities"'
     raise InputError(where, name, "is not in the register of quantities", hint)
