@@ -132,9 +132,9 @@ def show(
         typer.echo(json.dumps(found.document(), indent=2, allow_nan=False))
         return
     heading = [found.loaded.inputs.title] * bool(found.loaded.inputs.title)
-    if found.loaded.document.name:
-        heading.append(f"Sheet: {found.loaded.document.name}")
-    heading += [f"Changed: {change}" for change in found.loaded.document.changes]
+    if found.loaded.sheet:
+        heading.append(f"Sheet: {found.loaded.sheet}")
+    heading += [f"Changed: {change}" for change in found.loaded.changes]
     write(terminal_width(), *heading, *pieces, *tables.cautions(found.cautions))
 
 

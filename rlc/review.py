@@ -12,17 +12,17 @@ from rlc import __version__
 from rlc.front.flags import SAMPLES, SEED
 from rlc.front.inputs import Loaded
 from rlc.front.load import load
-from rlc.render import machine
 from rlc.render.cautions import Caution, cautions
 from rlc.solver.case import Case
-from rlc.solver.extrema import Extrema
 from rlc.solver.quantities import REGISTER, lookup
-from rlc.solver.spread import Outcome, Spread, spread
-from rlc.solver.sweep import Sweep
 from rlc.solver.targets import Target
 
 if TYPE_CHECKING:
     from matplotlib.figure import Figure
+
+    from rlc.solver.extrema import Extrema
+    from rlc.solver.spread import Outcome, Spread
+    from rlc.solver.sweep import Sweep
 
 #: What a spread shows where nobody has asked for anything.
 USUAL = (
@@ -81,16 +81,18 @@ class Review:
         dict
             Ready for JSON; no number is nan or infinite.
         """
+        from rlc.render import machine
+
         loaded, batch = self.loaded, self.spread
         found: dict[str, Any] = {
             "title": loaded.inputs.title,
-            "sheet": loaded.document.name or None,
+            "sheet": loaded.sheet or None,
             "version": __version__,
         }
         if batch is not None:
             found |= {"seed": batch.seed, "samples": batch.count}
-        if loaded.document.changes:
-            found["changed"] = [change._asdict() for change in loaded.document.changes]
+        if loaded.changes:
+            found["changed"] = [change._asdict() for change in loaded.changes]
         found["loop"] = machine.loop(self.case, loaded.inputs.parts)
         found["quantities"] = machine.quantities(self.quantities)
         groups = {REGISTER[name].group for name in self.quantities}
@@ -203,6 +205,8 @@ def judge(
     InputError
         If `samples` or `seed` is out of range, or a target does not go with the source.
     """
+    from rlc.solver.spread import spread
+
     batch = spread(loaded.inputs.case, loaded.inputs.parts, samples, seed)
     return batch, tuple(batch.outcome(target) for target in targets)
 
@@ -239,8 +243,13 @@ def review(
     # Other closings matter to an answer about the switch-on, and cost a search each.
     closings = any(REGISTER[name].group == "switch-on" for name in asked)
     inputs = loaded.inputs
-    # Not the judged batch: a few loops, searched at once, tell what goes with what.
-    corners = spread(case, inputs.parts, 0, seed=1)
+    corners = None
+    if inputs.tolerances:
+        from rlc.solver.spread import spread
+
+        # Not the judged batch: a few loops, searched at once, tell what goes with what.
+        limits_alone = spread(case, inputs.parts, 0, seed=1)
+        corners = limits_alone.case if limits_alone.parts else None
     limits: dict[str, float] = {}
     for target in inputs.targets:
         plain = target.at is None and target.across is None and not target.rating
@@ -253,7 +262,7 @@ def review(
         worst,
         fuse=inputs.fuse,
         closings=closings,
-        corners=corners.case if corners.parts else None,
+        corners=corners,
         limits=limits,
     )
     return Review(loaded, case, quantities, batch, outcomes, told)

@@ -11,14 +11,14 @@ import pytest
 from matplotlib.figure import Figure
 
 from rlc.errors import InputError
-from rlc.front.document import Document
 from rlc.front.inputs import Inputs, Loaded
 from rlc.review import USUAL, asked_targets, check, judge, names_in, review
 from rlc.solver.case import Case
 from rlc.solver.loop import make_loop
+from rlc.solver.parts import Part
 from rlc.solver.quantities import REGISTER
 from rlc.solver.source import Source, constant, sine
-from rlc.solver.spread import Part, spread
+from rlc.solver.spread import spread
 from rlc.solver.targets import Ratings, Target
 
 RESONANCE = 1 / (2 * math.pi)
@@ -34,7 +34,7 @@ def loaded(
     """L = C = 1, R = 1, with no sheet behind it."""
     loop = make_loop(resistance=1.0, inductance=1.0, capacitance=1.0)
     case = Case(loop, source or constant(1.0))
-    return Loaded(Inputs("Unit loop", case, parts, {}, Ratings(), targets), Document(), ())
+    return Loaded(Inputs("Unit loop", case, parts, {}, Ratings(), targets))
 
 
 def reviewed(*targets: Target, source: Source | None = None, samples: int = 20):  # type: ignore[no-untyped-def]

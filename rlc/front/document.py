@@ -7,10 +7,11 @@ from collections.abc import Mapping
 from copy import deepcopy
 from dataclasses import dataclass, field
 from pathlib import Path
-from typing import Any, NamedTuple
+from typing import Any
 
 from rlc.errors import InputError, SheetError
-from rlc.front.flags import FLAGS, SOURCE_LEVELS, TOLERANCE_FLAGS, Flag
+from rlc.front.flags import FLAGS, SOURCE_LEVELS, TOLERANCE_FLAGS, Flag, source_levels
+from rlc.front.inputs import Change
 
 #: A sheet is a page or two; anything far beyond is some other file.
 LARGEST_SHEET = 256 * 1024
@@ -23,34 +24,6 @@ _HEADER = re.compile(rf"\s*(\[\[?)\s*({_DOTTED})\s*\]")
 _KEY = re.compile(rf"\s*({_DOTTED})\s*=(.*)")
 _TUPLE = re.compile(r"\('(\w+)',\)")
 _WHERE = re.compile(r" \(at line (\d+), column (\d+)\)$")
-
-
-class Change(NamedTuple):
-    """What a flag has done to one key of the sheet.
-
-    Attributes
-    ----------
-    option : str
-        The flag, such as ``--load``.
-    key : str
-        The key with its table, such as ``load.resistance``.
-    old : object
-        What the sheet had; None if nothing.
-    new : str or None
-        What the flag put there; None if it dropped the key.
-    """
-
-    option: str
-    key: str
-    old: Any
-    new: str | None
-
-    def __str__(self) -> str:
-        if self.old is None:
-            return f'{self.option} adds {self.key} = "{self.new}"'
-        if self.new is None:
-            return f'{self.option} drops {self.key} = "{self.old}"'
-        return f'{self.option} replaces {self.key} = "{self.old}" by "{self.new}"'
 
 
 @dataclass(frozen=True)
@@ -132,41 +105,6 @@ def read_document(path: str | Path) -> Document:
     return Document(str(path), data, _key_lines(text))
 
 
-def _levels(given: Mapping[str, str]) -> list[Flag]:
-    return [flag for flag in FLAGS if flag.key in SOURCE_LEVELS and flag.option in given]
-
-
-def check_flags(given: Mapping[str, str]) -> None:
-    """Check that every flag is known, and that flags do not contradict each other.
-
-    Parameters
-    ----------
-    given : mapping of str to str
-        Option, such as ``--resistance``, to its text.
-
-    Raises
-    ------
-    InputError
-        For the first flag that does not pass.
-    """
-    known = [flag.option for flag in FLAGS + TOLERANCE_FLAGS]
-    for option in given:
-        if option not in known:
-            from difflib import get_close_matches
-
-            near = get_close_matches(option, known, 1)
-            hint = f'Did you mean "{near[0]}"?' if near else ""
-            raise InputError(option, given[option], "is no flag for a value of a sheet", hint)
-    levels = _levels(given)
-    if len(levels) > 1:
-        named = " and ".join(flag.option for flag in levels)
-        raise InputError(named, None, "are given together", "A source has one of them")
-    if levels and SOURCE_LEVELS[levels[0].key] == "dc":
-        for option in ("--frequency", "--closing-angle"):
-            if option in given:
-                raise InputError(option, given[option], "does not go with --source-dc")
-
-
 def with_flags(document: Document, given: Mapping[str, str]) -> Document:
     """Put the values of flags in place of those of the sheet.
 
@@ -181,7 +119,7 @@ def with_flags(document: Document, given: Mapping[str, str]) -> Document:
     -------
     Document
     """
-    levels = _levels(given)
+    levels = source_levels(given)
     data, options = deepcopy(document.data), dict(document.options)
     changes: list[Change] = []
     for flag in FLAGS + TOLERANCE_FLAGS:

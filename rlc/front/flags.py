@@ -2,8 +2,10 @@
 
 from __future__ import annotations
 
+from collections.abc import Mapping
 from typing import NamedTuple
 
+from rlc.errors import InputError
 from rlc.front.door import Door
 
 #: Random units unless stated otherwise: enough to tell 99.9 % from 99 %, at seconds of work.
@@ -89,3 +91,45 @@ TOLERANCE_FLAGS: tuple[Flag, ...] = (
 
 #: Of these a source has one; each says what kind of source it is.
 SOURCE_LEVELS = {"rms": "sine", "amplitude": "sine", "voltage": "dc"}
+
+
+def source_levels(given: Mapping[str, str]) -> list[Flag]:
+    """The flags among these that give a source's level.
+
+    Parameters
+    ----------
+    given : mapping of str to str
+        Option, such as ``--source-rms``, to its text.
+    """
+    return [flag for flag in FLAGS if flag.key in SOURCE_LEVELS and flag.option in given]
+
+
+def check_flags(given: Mapping[str, str]) -> None:
+    """Check that every flag is known, and that flags do not contradict each other.
+
+    Parameters
+    ----------
+    given : mapping of str to str
+        Option, such as ``--resistance``, to its text.
+
+    Raises
+    ------
+    InputError
+        For the first flag that does not pass.
+    """
+    known = [flag.option for flag in FLAGS + TOLERANCE_FLAGS]
+    for option in given:
+        if option not in known:
+            from difflib import get_close_matches
+
+            near = get_close_matches(option, known, 1)
+            hint = f'Did you mean "{near[0]}"?' if near else ""
+            raise InputError(option, given[option], "is no flag for a value of a sheet", hint)
+    levels = source_levels(given)
+    if len(levels) > 1:
+        named = " and ".join(flag.option for flag in levels)
+        raise InputError(named, None, "are given together", "A source has one of them")
+    if levels and SOURCE_LEVELS[levels[0].key] == "dc":
+        for option in ("--frequency", "--closing-angle"):
+            if option in given:
+                raise InputError(option, given[option], "does not go with --source-dc")

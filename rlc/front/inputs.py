@@ -4,11 +4,10 @@ from __future__ import annotations
 
 from collections.abc import Mapping
 from dataclasses import dataclass
-from typing import NamedTuple
+from typing import Any, NamedTuple
 
-from rlc.front.document import Document
 from rlc.solver.case import Case
-from rlc.solver.spread import Part
+from rlc.solver.parts import Part
 from rlc.solver.targets import Fuse, Ratings, Target
 
 
@@ -43,6 +42,34 @@ class Inputs:
     fuse: Fuse | None = None
 
 
+class Change(NamedTuple):
+    """What a flag has done to one key of the sheet.
+
+    Attributes
+    ----------
+    option : str
+        The flag, such as ``--load``.
+    key : str
+        The key with its table, such as ``load.resistance``.
+    old : object
+        What the sheet had; None if nothing.
+    new : str or None
+        What the flag put there; None if it dropped the key.
+    """
+
+    option: str
+    key: str
+    old: Any
+    new: str | None
+
+    def __str__(self) -> str:
+        if self.old is None:
+            return f'{self.option} adds {self.key} = "{self.new}"'
+        if self.new is None:
+            return f'{self.option} drops {self.key} = "{self.old}"'
+        return f'{self.option} replaces {self.key} = "{self.old}" by "{self.new}"'
+
+
 class Loaded(NamedTuple):
     """Inputs, where they came from, and what was noticed on the way.
 
@@ -50,12 +77,15 @@ class Loaded(NamedTuple):
     ----------
     inputs : Inputs
         What to work with.
-    document : Document
-        The sheet; without a name if everything came from flags.
+    sheet : str
+        The file as it was given; empty if everything came from flags.
+    changes : tuple of Change
+        What flags have done to the sheet.
     notes : tuple of str
         Values that were taken, but look like slips.
     """
 
     inputs: Inputs
-    document: Document
-    notes: tuple[str, ...]
+    sheet: str = ""
+    changes: tuple[Change, ...] = ()
+    notes: tuple[str, ...] = ()

@@ -5,7 +5,7 @@ from __future__ import annotations
 from collections.abc import Mapping
 from pathlib import Path
 
-from rlc.front.document import check_flags
+from rlc.front.flags import check_flags
 from rlc.front.inputs import Loaded
 from rlc.front.one_off import read_flags
 

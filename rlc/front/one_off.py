@@ -6,15 +6,14 @@ from collections.abc import Mapping
 from typing import Any
 
 from rlc.errors import InputError, SheetError
-from rlc.front.document import Document
 from rlc.front.flags import FLAGS, SOURCE_LEVELS, TOLERANCE_FLAGS
 from rlc.front.inputs import Inputs, Loaded
 from rlc.front.marking import KINDS, note_on
 from rlc.front.units import Tolerance, read_tolerance
 from rlc.solver.case import Case
 from rlc.solver.loop import make_loop
+from rlc.solver.parts import Part
 from rlc.solver.source import constant, sine
-from rlc.solver.spread import Part
 from rlc.solver.targets import Ratings
 
 _FIELDS = {
@@ -83,9 +82,8 @@ def read_flags(given: Mapping[str, str]) -> Loaded:
             Part(field, nominal, *(tolerance.limits(nominal) if tolerance else [nominal] * 2))
         )
     typed = {field: tolerance.text for field, tolerance in tolerances.items()}
-    return Loaded(
-        Inputs("", _case(values), tuple(parts), typed, Ratings(), ()), Document(), tuple(notes)
-    )
+    inputs = Inputs("", _case(values), tuple(parts), typed, Ratings(), ())
+    return Loaded(inputs, notes=tuple(notes))
 
 
 def _missing(given: Mapping[str, str]) -> list[InputError]:

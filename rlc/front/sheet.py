@@ -19,9 +19,9 @@ from rlc.front.inputs import Inputs
 from rlc.front.units import Tolerance, read_tolerance
 from rlc.solver.case import Case
 from rlc.solver.loop import ELEMENTS, Loop, make_loop
+from rlc.solver.parts import Distribution, Part
 from rlc.solver.quantities import REGISTER
 from rlc.solver.source import Source, constant, sine
-from rlc.solver.spread import Distribution, Part
 from rlc.solver.targets import MOST_OPERATIONS, Fuse, Ratings, Target
 
 Ohms = Annotated[float, Door("resistance", "zero")]

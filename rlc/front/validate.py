@@ -71,7 +71,8 @@ def read_sheet(path: str | Path, flags: Mapping[str, str]) -> Loaded:
         raise SheetError(
             document.name, tuple(_placed(at, problems[at], document) for at in ordered)
         )
-    return Loaded(sheet.inputs(), document, tuple(_notes(sheet, document)))
+    notes = tuple(_notes(sheet, document))
+    return Loaded(sheet.inputs(), document.name, document.changes, notes)
 
 
 def _placed(at: KeyPath, found: InputError, document: Document) -> tuple[int | None, InputError]:

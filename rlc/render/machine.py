@@ -14,8 +14,9 @@ from rlc.render.known import PEAKS, peak_of
 from rlc.solver.case import Case
 from rlc.solver.extrema import Extrema
 from rlc.solver.loop import ELEMENTS, Loop
+from rlc.solver.parts import Part
 from rlc.solver.quantities import REGISTER, Quantity
-from rlc.solver.spread import CONFIDENCE, Outcome, Part
+from rlc.solver.spread import CONFIDENCE, Outcome
 from rlc.solver.sweep import Sweep
 
 # Where the unit that is printed is not the SI unit.

@@ -4,7 +4,7 @@ from __future__ import annotations
 
 import math
 from collections.abc import Iterable, Mapping
-from typing import Any
+from typing import TYPE_CHECKING, Any
 
 import numpy as np
 from rich.table import Table
@@ -15,11 +15,14 @@ from rlc.render.cautions import Caution
 from rlc.render.known import PEAKS, peak_of
 from rlc.render.layout import named_rows, new_table
 from rlc.solver.case import Case
-from rlc.solver.extrema import Extrema
 from rlc.solver.loop import ELEMENTS
 from rlc.solver.quantities import REGISTER, Quantity
-from rlc.solver.spread import Outcome, Part
-from rlc.solver.sweep import Sweep
+
+if TYPE_CHECKING:
+    from rlc.solver.extrema import Extrema
+    from rlc.solver.parts import Part
+    from rlc.solver.spread import Outcome
+    from rlc.solver.sweep import Sweep
 
 _VERDICT_STYLE = {"holds": "green", "holds by yield": "green", "fails": "bold red"}
 _ELSEWHERE = {

@@ -333,7 +333,7 @@ def test_a_flag_replaces_a_value_and_is_named_in_errors(tmp_path: Path) -> None:
     loaded = load(path, {"--resistance": "15 ohm", "--source-amplitude": "10 V"})
     assert loaded.inputs.case.loop.resistance == 15.0
     assert loaded.inputs.case.source.amplitude == 10.0
-    assert [str(change) for change in loaded.document.changes] == [
+    assert [str(change) for change in loaded.changes] == [
         '--resistance replaces resistor.value = "12 ohm" by "15 ohm"',
         '--source-amplitude adds source.amplitude = "10 V"',
         '--source-amplitude drops source.rms = "24 V"',
@@ -346,7 +346,7 @@ def test_a_flag_replaces_a_value_and_is_named_in_errors(tmp_path: Path) -> None:
 def test_a_dc_flag_turns_a_sine_sheet_into_dc(tmp_path: Path) -> None:
     loaded = load(write(tmp_path, GOOD), {"--source-dc": "48 V"})
     case = loaded.inputs.case
-    assert [str(change) for change in loaded.document.changes] == [
+    assert [str(change) for change in loaded.changes] == [
         '--source-dc adds source.voltage = "48 V"',
         '--source-dc replaces source.kind = "sine" by "dc"',
         '--source-dc drops source.rms = "24 V"',

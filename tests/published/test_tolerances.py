@@ -5,8 +5,9 @@ import pytest
 
 from rlc.solver.case import Case
 from rlc.solver.loop import make_loop
+from rlc.solver.parts import Part
 from rlc.solver.source import constant
-from rlc.solver.spread import Part, spread
+from rlc.solver.spread import spread
 from rlc.solver.targets import Target
 
 from .printed import TURN, Reading, printed, readings

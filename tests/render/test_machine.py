@@ -15,10 +15,11 @@ from rlc.render.cautions import Caution
 from rlc.solver.case import Case
 from rlc.solver.extrema import Extrema
 from rlc.solver.loop import make_loop
+from rlc.solver.parts import Part
 from rlc.solver.peaks import Peak
 from rlc.solver.quantities import REGISTER
 from rlc.solver.source import constant, sine
-from rlc.solver.spread import Effect, Outcome, Part, Yield
+from rlc.solver.spread import Effect, Outcome, Yield
 from rlc.solver.sweep import Column, Sweep
 from rlc.solver.targets import Target
 

@@ -14,9 +14,10 @@ from rlc.render import layout, tables
 from rlc.solver.case import Case
 from rlc.solver.extrema import Extrema
 from rlc.solver.loop import make_loop
+from rlc.solver.parts import Part
 from rlc.solver.peaks import Peak
 from rlc.solver.source import Source, constant, sine
-from rlc.solver.spread import Effect, Outcome, Part, spread, yield_interval
+from rlc.solver.spread import Effect, Outcome, spread, yield_interval
 from rlc.solver.sweep import Column, Sweep
 from rlc.solver.targets import Target
 

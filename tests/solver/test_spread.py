@@ -11,9 +11,10 @@ from scipy import stats
 from rlc.errors import InputError
 from rlc.solver.case import Case
 from rlc.solver.loop import make_loop
+from rlc.solver.parts import Part
 from rlc.solver.quantities import REGISTER
 from rlc.solver.source import constant, sine
-from rlc.solver.spread import Part, spread, yield_interval
+from rlc.solver.spread import spread, yield_interval
 from rlc.solver.targets import Fuse, Ratings, Target
 
 RESISTOR = Part("resistance", 10.0, 9.0, 12.0)
