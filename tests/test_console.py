@@ -96,6 +96,9 @@ def test_a_directory_is_made_with_those_above_it(tmp_path: Path) -> None:
     assert [path.name for path in folder.iterdir()] == ["frequency-response.svg"]
     assert result.stderr == f"Saved {folder / 'frequency-response.svg'}\n"
     assert result.stdout
+    again = run("switch-on", *SINE, "--plots", folder)
+    assert again.exit_code == 0, again.output
+    assert len(list(folder.iterdir())) == 3
 
 
 def test_what_would_be_overwritten_is_named(tmp_path: Path) -> None:
@@ -155,6 +158,8 @@ def test_spread_says_how_it_was_found(tmp_path: Path) -> None:
     lines = out.splitlines()
     spread = lines[lines.index("Spread") :]
     assert [name for name in spread if name in usual] == list(usual)
+    # What has no limits is no target.
+    assert "Targets" not in lines
     without = run("spread", path, "--samples", "0").stdout.splitlines()
     assert "Spread" not in without
     exact = run("spread", *SINE).stdout.splitlines()

@@ -241,6 +241,7 @@ def test_peaks_of_a_critical_step() -> None:
     ("peak", "time", "known"),
     [
         ((2.0, 3.0, 0.0, 0.5), 3.0, "proved"),
+        ((2.0, 0.0, 0.0, 0.5), 0.0, "proved"),
         # Steady current of R = 1 at resonance from 1 V: 1 A.
         ((1.00005, 3.0, 0.0, 0.5), None, "proved: the steady state"),
         ((1.0002, 3.0, 0.0, 0.5), 3.0, "proved"),
@@ -256,8 +257,8 @@ def test_how_a_peak_is_known(
     value, steady = found.pop("value"), found.pop("steady")
     assert value == (None if math.isinf(peak[0]) else peak[0])
     assert steady == pytest.approx(1.0, rel=FEW_ROUNDINGS)
-    # A peak that is only approached has no worst angle: each is as bad.
-    angle = 0.5 if math.isfinite(peak[1]) else None
+    # A current at closing, or one that is only approached, has no worst angle: each is as bad.
+    angle = 0.5 if 0 < peak[1] < math.inf else None
     assert found == {"time": time, "closing_angle": angle, "gap": peak[2], "known": known}
 
 
