@@ -359,7 +359,7 @@ def _model_limits(found: Findings) -> str:
         " sheet are left out."
     )
     if bool(found.case.equation.underdamped):
-        # Measured: pololu.com/docs/0J16, 12 V supply and about 9 uF of ceramic.
+        # Measured; the source is beside the check in tests/published.
         told += (
             " High-permittivity ceramic capacitors lose capacitance under bias, and the voltage"
             " can then ring beyond twice the supply: almost 40 V from 12 V has been measured."
