@@ -52,6 +52,7 @@ class Door:
         """
         # The command line names its flags without reading any unit.
         from rlc.front.units import read
+        from rlc.solver.loop import BEYOND
 
         if self.word and text == self.word:
             return None
@@ -62,6 +63,8 @@ class Door:
         except InputError as error:
             hint = error.hint + (f' or "{self.word}"' if self.word else "")
             raise InputError("", text, error.rule, hint) from None
+        if value and not 1 / BEYOND <= abs(value) <= BEYOND:
+            raise InputError("", text, "is beyond any circuit")
         if self.least == "zero" and value < 0:
             raise InputError("", text, "must be zero or more")
         if self.least == "above zero" and value <= 0:
