@@ -36,7 +36,7 @@ def closing_angle(found: Findings) -> str:
     case, worst = found.case, found.worst_closing
     angles = {element: found.worst_angle(element) for element in ("current", "capacitor")}
     if case.source.closing_angle is None:
-        turn = math.pi if found.at_rest else 2 * math.pi
+        turn = math.pi if found.case.at_rest else 2 * math.pi
         apart = (angles["current"] - angles["capacitor"] + turn / 2) % turn - turn / 2
         if not abs(apart) > _SAME_ANGLE:
             return ""

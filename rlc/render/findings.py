@@ -267,11 +267,6 @@ class Findings:
         return _highest(ratio)
 
     @property
-    def at_rest(self) -> bool:
-        """Whether the loop is closed with no charge and no current in it."""
-        return not (self.case.capacitor_voltage or self.case.initial_current)
-
-    @property
     def searched(self) -> bool:
         """Whether other closings of a sine are looked at."""
         if not (self.sine and self.level):

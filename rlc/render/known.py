@@ -14,8 +14,8 @@ from rlc.solver.search import PROVED_GAP
 #: Signals whose peaks are shown, with the kind of their unit.
 PEAKS = (("current", "current"), ("capacitor", "voltage"), ("inductor", "voltage"))
 
-# Four digits are printed: what differs by less is the steady state.
-_STEADY = 1e-4
+#: Four digits are printed: a peak that passes the steady state by less is that.
+AS_STEADY = 1e-4
 
 
 class Known(NamedTuple):
@@ -70,7 +70,7 @@ def peak_of(case: Case, element: str) -> Known:
         known = "approached, never reached"
     elif gap > PROVED_GAP:
         known = f"searched; at most {show(gap, 'ratio', 2)} more"
-    elif 0 < value <= steady * (1 + _STEADY):
+    elif 0 < value <= steady * (1 + AS_STEADY):
         # Driven near resonance a late crest may pass the steady state by parts in a million.
         known, time = "proved: the steady state", np.nan
     else:

@@ -29,8 +29,10 @@ from rlc.render.figures import (
     pieces,
     shown,
 )
+from rlc.render.known import AS_STEADY
 from rlc.solver.case import Case
 from rlc.solver.quantities import REGISTER
+from rlc.solver.search import PROVED_GAP
 from rlc.solver.targets import Target
 
 if TYPE_CHECKING:
@@ -57,9 +59,6 @@ _ENVELOPE_FREQUENCIES = 3.0
 _LIMIT_REACH = 1.6
 # Steady state per volt above which the source cannot be told from the lossless resonance.
 _UNBOUNDED = 1e12
-_PROVED = 1e-6
-# Four digits are printed; what differs by less is the same peak.
-_SAME = 1e-4
 
 
 class _Trace(NamedTuple):
@@ -205,7 +204,7 @@ def _waveform(case: Case, trace: _Trace, time: Array, angle: Any) -> Array:
 def _span(case: Case, most_cycles: float) -> _Span:
     """The whole transient, or as much of it as can be read; longer for a late peak."""
     eq = case.equation
-    rate = item(np.where(eq.underdamped, eq.damping, eq.slow))
+    rate = item(eq.slowest)
     underdamped = bool(np.all(eq.underdamped))
     ringing = item(REGISTER["ringing_frequency"](case)) if underdamped else 0.0
     source = item(case.source.frequency)
@@ -243,8 +242,7 @@ def _band(
 ) -> tuple[Array, Array]:
     """Lowest and highest value over the batch at each time, the nominal included."""
     angle = batch.closing_angle_for(trace.element)
-    rest = not np.any(batch.capacitor_voltage) and not np.any(batch.initial_current)
-    if batch.source.worst_angle and rest:
+    if batch.source.worst_angle and batch.at_rest:
         # from rest half a turn only changes the sign: take the one next to the nominal
         angle = angle + np.pi * np.round((nominal_angle - angle) / np.pi)
     low, high = nominal, nominal
@@ -258,7 +256,7 @@ def _band(
 def _only_steady(case: Case, trace: _Trace) -> bool:
     """Whether the switch-on never passes its steady state by what the digits show."""
     steady = item(np.abs(case.signals(trace.element)[0].steady))
-    return item(case.peak(trace.element).value) <= steady * (1 + _SAME)
+    return item(case.peak(trace.element).value) <= steady * (1 + AS_STEADY)
 
 
 def _bounded(case: Case) -> bool:
@@ -329,7 +327,7 @@ def _peak(panel: Axes, case: Case, trace: _Trace, span: _Span, angle: Any) -> No
     peak = case.peak(trace.element)
     value, time, gap = item(peak.value), item(peak.time), item(peak.gap)
     size = f"peak {show(value, trace.kind)}"
-    more = f", at most {show(gap, 'ratio', 2)} more" if gap > _PROVED else ""
+    more = f", at most {show(gap, 'ratio', 2)} more" if gap > PROVED_GAP else ""
     approached = not np.isfinite(time)
     if not (np.isfinite(value) and _bounded(case)):
         note(panel, "grows without bound")

@@ -72,6 +72,11 @@ class Equation:
         return np.sqrt(self.natural_squared[0])
 
     @property
+    def slowest(self) -> Array:
+        """Rate at which what lasts longest decays: of the envelope, or the slow one [1/s]."""
+        return np.where(self.underdamped, self.damping, self.slow)
+
+    @property
     def gamma(self) -> Array:
         """Damping coefficient of the equation, 2 a [1/s]."""
         return 2 * self.damping
@@ -216,7 +221,7 @@ def kernels(eq: Equation, time: Array) -> Kernels:
         creeping = slow_decay * np.where(gap == 0, time, -np.expm1(-gap * time) / gap)
         s = np.where(eq.underdamped, ringing, creeping)
         base = np.where(eq.underdamped, envelope * cosine, slow_decay)
-        regular = base + np.where(eq.underdamped, eq.damping, eq.slow) * s
+        regular = base + eq.slowest * s
         # skew -+ root cancels on one side; their product is the coupling
         large = skew + np.where(skew >= 0, eq.root[0], -eq.root[0])
         small = coupling / large

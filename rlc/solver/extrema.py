@@ -80,7 +80,7 @@ def _grid(case: Case, count: int) -> Array:
     ringing = np.nan_to_num(float(REGISTER["ringing_frequency"](case)))
     frequencies = [each for each in (ringing, float(case.source.frequency)) if each]
     with np.errstate(divide="ignore"):
-        end = float(_TIME_CONSTANTS / np.where(eq.underdamped, eq.damping, eq.slow))
+        end = float(_TIME_CONSTANTS / eq.slowest)
     if frequencies:
         end = min(end, (count + 1) / min(frequencies))
     cycles = end * max(frequencies, default=0.0)

@@ -163,8 +163,7 @@ def time_constant(case: Case) -> Any:
     ----------
     .. [1] OpenStax, University Physics vol. 2, section 14.6, for the envelope.
     """
-    eq = case.equation
-    return 1.0 / np.where(eq.underdamped, eq.damping, eq.slow)
+    return 1.0 / case.equation.slowest
 
 
 def until(case: Case, at: Any) -> Array:

@@ -121,7 +121,7 @@ class _Search:
     def __init__(self, eq: Equation, omega: Array, parts: list[Signal], projected: bool) -> None:
         self.eq, self.omega, self.projected = eq, omega, projected
         self.parts = [_Part(eq, omega, part) for part in parts]
-        self.rate = np.where(eq.underdamped, eq.damping, eq.slow)
+        self.rate = eq.slowest
         self.amplitude = np.sum([part.amplitude for part in self.parts], axis=0)
         self.energy = np.sum([part.energy for part in self.parts], axis=0)
 

@@ -268,16 +268,15 @@ def _resonances(case: Case, parts: dict[str, Part]) -> Iterator[dict[str, float]
     omega = 2 * np.pi * float(case.source.frequency)
     if omega == 0:
         return
-    known = {"resistance", "inductance", "capacitance"}
-    values = {
-        name: (part.low, part.nominal, part.high) if (part := parts.get(name)) else (fixed,)
-        for name in sorted(known)
-        for fixed in [float(getattr(case.loop, name))]
-    }
+
+    def ends(field: str) -> tuple[float, ...]:
+        part = parts.get(field)
+        return (part.low, part.high) if part else (float(getattr(case.loop, field)),)
+
     extra = float(case.loop.source_inductance)
-    for resistance, inductance in product(values["resistance"], values["inductance"]):
+    for resistance, inductance in product(ends("resistance"), ends("inductance")):
         yield from _between(parts, resistance, inductance, 1 / (omega**2 * (inductance + extra)))
-    for resistance, capacitance in product(values["resistance"], values["capacitance"]):
+    for resistance, capacitance in product(ends("resistance"), ends("capacitance")):
         yield from _between(parts, resistance, 1 / (omega**2 * capacitance) - extra, capacitance)
 
 
