@@ -71,6 +71,8 @@ class Case:
         Voltage behind the capacitor's series resistance at closing [V].
     initial_current : array_like
         Loop current at closing [A].
+    either_polarity : bool
+        Whether the capacitor's voltage may be of either sign; the worse one counts.
 
     Raises
     ------
@@ -82,6 +84,7 @@ class Case:
     source: Source
     capacitor_voltage: Array = 0.0  # type: ignore[assignment]
     initial_current: Array = 0.0  # type: ignore[assignment]
+    either_polarity: bool = False
     _peaks: dict[str, Peak] = field(default_factory=dict, repr=False, init=False)
 
     def __post_init__(self) -> None:

@@ -1,0 +1,363 @@
+"""Courses of a source in time: straight lines between knots, and the surge of two exponentials."""
+
+from __future__ import annotations
+
+from dataclasses import dataclass
+from typing import Any, ClassVar
+
+import numpy as np
+from numpy.typing import NDArray
+
+from rlc.errors import InputError
+from rlc.solver.loop import BEYOND
+
+Array = NDArray[np.float64]
+
+#: Knots that a course may have.
+MOST_KNOTS = 4_000_000
+#: Pulses that a train may have; the loop's states are carried through each of them.
+MOST_PULSES = 100_000
+
+# IEC 60060-1: the front is 1/0.6 of the time from 30 % to 90 % of the peak.
+_LOW, _HIGH, _HALF = 0.3, 0.9, 0.5
+
+
+@dataclass(frozen=True, eq=False)
+class Piecewise:
+    """Straight lines from knot to knot; the last one is level and lasts for ever.
+
+    Parameters
+    ----------
+    kind : str
+        What it is called: ``ramp``, ``pulse`` or ``recorded``.
+    start : array_like
+        Shape (n,), rising from zero [s].
+    level : array_like
+        Shape (n,), the source's voltage just after each knot [V].
+    slope : array_like
+        Shape (n,), of the line that starts there; the last is zero [V/s].
+    period : float, optional
+        The lines are repeated after so long until the loop is steady; more than the last
+        knot [s].
+
+    Raises
+    ------
+    InputError
+        If the lines do not go together.
+    """
+
+    kind: str
+    start: Array
+    level: Array
+    slope: Array
+    period: float | None = None
+
+    def __post_init__(self) -> None:
+        for name in ("start", "level", "slope"):
+            value = np.asarray(getattr(self, name), dtype=np.float64)
+            if not np.all(np.isfinite(value)):
+                raise InputError(name, None, "must be finite")
+            if np.any(np.abs(value) > BEYOND):
+                raise InputError(name, None, f"is beyond any circuit, more than {BEYOND:g}")
+            object.__setattr__(self, name, value)
+        if not self.start.shape == self.level.shape == self.slope.shape or self.start.ndim != 1:
+            raise InputError("start, level, slope", None, "must be three rows of one length")
+        if not 1 <= self.start.size <= MOST_KNOTS:
+            raise InputError("start", self.start.size, f"has from 1 to {MOST_KNOTS} knots")
+        if self.start[0] != 0 or not np.all(np.diff(self.start) > 0):
+            raise InputError("start", None, "must rise from zero")
+        if self.slope[-1] != 0:
+            raise InputError("slope", float(self.slope[-1]), "the last line must be level")
+
+    @property
+    def final(self) -> float:
+        """The voltage that it ends on [V]."""
+        return float(self.level[-1])
+
+    @property
+    def largest(self) -> float:
+        """Largest magnitude at any time [V]."""
+        ends = self.level[:-1] + self.slope[:-1] * np.diff(self.start)
+        return float(max(np.max(np.abs(self.level)), np.max(np.abs(ends), initial=0.0)))
+
+    @property
+    def settled(self) -> float:
+        """When it has come to its final voltage; infinite if it is repeated [s]."""
+        return float(self.start[-1]) if self.period is None else np.inf
+
+    def repeated(self, count: int) -> Piecewise:
+        """The lines one after another.
+
+        Parameters
+        ----------
+        count : int
+            How many times, one or more.
+
+        Returns
+        -------
+        Piecewise
+            Without a period of its own.
+        """
+        assert self.period is not None
+        start = np.add.outer(np.arange(count) * self.period, self.start).ravel()
+        return Piecewise(self.kind, start, np.tile(self.level, count), np.tile(self.slope, count))
+
+    def at(self, time: Any) -> Array:
+        """The voltage at given times.
+
+        Parameters
+        ----------
+        time : array_like
+            Zero or more [s].
+
+        Returns
+        -------
+        Array
+            With the shape of `time` [V].
+        """
+        time = np.asarray(time, dtype=np.float64)
+        if self.period is not None:
+            time = np.mod(time, self.period)
+        index = np.searchsorted(self.start, time, side="right") - 1
+        return self.level[index] + self.slope[index] * (time - self.start[index])
+
+
+@dataclass(frozen=True)
+class Surge:
+    r"""An impulse voltage of two exponentials, :math:`k(e^{-\alpha t} - e^{-\beta t})`.
+
+    Parameters
+    ----------
+    scale : float
+        k, of the sign of the peak [V].
+    slow, fast : float
+        alpha and beta, 0 < alpha < beta [1/s].
+    """
+
+    kind: ClassVar[str] = "surge"
+    final: ClassVar[float] = 0.0
+    settled: ClassVar[float] = np.inf
+
+    scale: float
+    slow: float
+    fast: float
+
+    @property
+    def largest(self) -> float:
+        """Its peak, without sign [V]."""
+        top = np.log(self.fast / self.slow) / (self.fast - self.slow)
+        return float(np.abs(self.at(top)))
+
+    def at(self, time: Any) -> Array:
+        """The voltage at given times.
+
+        Parameters
+        ----------
+        time : array_like
+            Zero or more [s].
+
+        Returns
+        -------
+        Array
+            With the shape of `time` [V].
+        """
+        time = np.asarray(time, dtype=np.float64)
+        # exp(-alpha t) taken out: no cancellation at small times
+        rise = -np.expm1(-(self.fast - self.slow) * time)
+        return np.asarray(self.scale * np.exp(-self.slow * time) * rise)
+
+
+def ramp(voltage: float, rise_time: float) -> Piecewise:
+    """A straight rise from zero to a level that is held.
+
+    Parameters
+    ----------
+    voltage : float
+        The level, of either sign [V].
+    rise_time : float
+        From zero to the level, more than zero [s].
+
+    Returns
+    -------
+    Piecewise
+
+    Raises
+    ------
+    InputError
+        If the rise time is not above zero.
+    """
+    if not rise_time > 0:
+        raise InputError("rise_time", rise_time, "must be more than zero; a step is dc")
+    return Piecewise(
+        "ramp", np.array([0.0, rise_time]), np.array([0.0, voltage]),
+        np.array([voltage / rise_time, 0.0]),
+    )  # fmt: skip
+
+
+def pulse(
+    voltage: float,
+    width: float,
+    rise_time: float = 0.0,
+    fall_time: float = 0.0,
+    period: float | None = None,
+    count: int | None = 1,
+) -> Piecewise:
+    """A pulse from zero, once or repeated.
+
+    Parameters
+    ----------
+    voltage : float
+        Its level, of either sign [V].
+    width : float
+        Between the half levels of rise and fall, more than zero [s].
+    rise_time, fall_time : float
+        From zero to the level and back, zero or more, half of both at most the width [s].
+    period : float, optional
+        From one pulse to the next, at least the time a pulse lasts; with `count` [s].
+    count : int or None
+        How many pulses, 1 to 1e5; None to repeat them until the loop is steady.
+
+    Returns
+    -------
+    Piecewise
+
+    Raises
+    ------
+    InputError
+        If the times do not go together.
+    """
+    if not width > 0:
+        raise InputError("width", width, "must be more than zero")
+    for name, each in (("rise_time", rise_time), ("fall_time", fall_time)):
+        if not each >= 0:
+            raise InputError(name, each, "must be zero or more")
+    flat = width - (rise_time + fall_time) / 2
+    # rounding may leave a triangle with a top of no length
+    flat = 0.0 if abs(flat) <= 1e-12 * width else flat
+    if flat < 0:
+        rule = "must be at least half of rise and fall time together"
+        raise InputError("width", width, rule)
+    lasts = rise_time + flat + fall_time
+    if (period is None) != (count == 1):
+        raise InputError("period", period, "goes with a count of more than one pulse")
+    if count is not None and not 1 <= count <= MOST_PULSES:
+        raise InputError("count", count, f"must be from 1 to {MOST_PULSES}")
+    if period is not None and period <= lasts * (1 + 1e-12):
+        raise InputError("period", period, f"must be more than the pulse lasts, {lasts:g} s")
+    lines = [
+        (length, level, slope)
+        for length, level, slope in (
+            (rise_time, 0.0, voltage / rise_time if rise_time else 0.0),
+            (flat, voltage, 0.0),
+            (fall_time, voltage, -voltage / fall_time if fall_time else 0.0),
+        )
+        if length > 0
+    ]
+    start = np.cumsum([0.0, *(length for length, _, _ in lines)])
+    one = Piecewise(
+        "pulse", start, np.array([level for _, level, _ in lines] + [0.0]),
+        np.array([slope for *_, slope in lines] + [0.0]), period,
+    )  # fmt: skip
+    if count is None:
+        return one
+    return one if count == 1 else one.repeated(count)
+
+
+def recorded(time: Any, voltage: Any) -> Piecewise:
+    """A measured course: straight lines between its points, the last value held.
+
+    Parameters
+    ----------
+    time : array_like
+        Shape (n,), n of 2 or more, rising; the first point is the closing of the switch [s].
+    voltage : array_like
+        Shape (n,) [V].
+
+    Returns
+    -------
+    Piecewise
+
+    Raises
+    ------
+    InputError
+        If the points do not go together.
+    """
+    time, voltage = (np.asarray(each, dtype=np.float64) for each in (time, voltage))
+    if time.shape != voltage.shape or time.ndim != 1 or time.size < 2:
+        raise InputError(
+            "time, voltage", None, "must be two rows of one length, two points or more"
+        )
+    if not (np.all(np.isfinite(time)) and np.all(np.isfinite(voltage))):
+        raise InputError("time, voltage", None, "must be finite")
+    steps = np.diff(time)
+    if not np.all(steps > 0):
+        raise InputError("time", float(time[1:][steps <= 0][0]), "does not rise")
+    slope = np.append(np.diff(voltage) / steps, 0.0)
+    return Piecewise("recorded", time - time[0], voltage, slope)
+
+
+def surge(voltage: float, front_time: float, half_value_time: float) -> Surge:
+    r"""An impulse by the times that define it.
+
+    The front time is 1/0.6 of the time from 30 % to 90 % of the peak; a straight line through
+    these two points meets zero at the virtual origin, from which the time to half value on the
+    tail is counted. Both rates are solved for.
+
+    Parameters
+    ----------
+    voltage : float
+        Peak, of either sign [V].
+    front_time, half_value_time : float
+        T1 and T2, more than zero, such as 1.2 us and 50 us [s].
+
+    Returns
+    -------
+    Surge
+
+    Raises
+    ------
+    InputError
+        If no two exponentials have these times.
+
+    References
+    ----------
+    .. [1] IEC 60060-1, definitions of the lightning impulse voltage (from memory).
+    """
+    from scipy.optimize import brentq
+
+    for name, each in (("front_time", front_time), ("half_value_time", half_value_time)):
+        if not 0 < each <= BEYOND:
+            raise InputError(name, each, "must be more than zero")
+    wanted = half_value_time / front_time
+
+    def ratio(decades: float) -> float:
+        front, half = _defining_times(1.0, 1.0 + 10.0**decades)
+        return half / front
+
+    least, most = ratio(-3.0), ratio(6.0)
+    if not least < wanted < most:
+        rule = f"over front_time must be from {least:.3g} to {most:.3g} for two exponentials"
+        raise InputError("half_value_time", half_value_time, rule)
+    decades = brentq(lambda x: np.log(ratio(x) / wanted), -3.0, 6.0, xtol=1e-13, rtol=1e-13)
+    fast = 1.0 + 10.0**decades
+    pace = _defining_times(1.0, fast)[0] / front_time
+    unit = Surge(1.0, pace, fast * pace)
+    return Surge(voltage / unit.largest, unit.slow, unit.fast)
+
+
+def _defining_times(slow: float, fast: float) -> tuple[float, float]:
+    """Front time and time to half value of two exponentials."""
+    from scipy.optimize import brentq
+
+    wave = Surge(1.0, slow, fast)
+    top, peak = np.log(fast / slow) / (fast - slow), wave.largest
+
+    def when(share: float, low: float, high: float) -> float:
+        return float(brentq(lambda t: float(wave.at(t)) - share * peak, low, high, xtol=1e-300))
+
+    low, high = when(_LOW, 0.0, top), when(_HIGH, 0.0, top)
+    end = top
+    while float(wave.at(end)) > _HALF * peak:
+        end *= 2
+    front = (high - low) / (_HIGH - _LOW)
+    return front, when(_HALF, top, end) - (low - _LOW * front)
