@@ -34,8 +34,8 @@ class Piecewise:
         Shape (n,), rising from zero [s].
     level : array_like
         Shape (n,), the source's voltage just after each knot [V].
-    slope : array_like
-        Shape (n,), of the line that starts there; the last is zero [V/s].
+    end : array_like
+        Shape (n,), just before the next knot; of the last line its level [V].
     period : float, optional
         The lines are repeated after so long until the loop is steady; more than the last
         knot [s].
@@ -49,25 +49,25 @@ class Piecewise:
     kind: str
     start: Array
     level: Array
-    slope: Array
+    end: Array
     period: float | None = None
 
     def __post_init__(self) -> None:
-        for name in ("start", "level", "slope"):
+        for name in ("start", "level", "end"):
             value = np.asarray(getattr(self, name), dtype=np.float64)
             if not np.all(np.isfinite(value)):
                 raise InputError(name, None, "must be finite")
             if np.any(np.abs(value) > BEYOND):
                 raise InputError(name, None, f"is beyond any circuit, more than {BEYOND:g}")
             object.__setattr__(self, name, value)
-        if not self.start.shape == self.level.shape == self.slope.shape or self.start.ndim != 1:
-            raise InputError("start, level, slope", None, "must be three rows of one length")
+        if not self.start.shape == self.level.shape == self.end.shape or self.start.ndim != 1:
+            raise InputError("start, level, end", None, "must be three rows of one length")
         if not 1 <= self.start.size <= MOST_KNOTS:
             raise InputError("start", self.start.size, f"has from 1 to {MOST_KNOTS} knots")
         if self.start[0] != 0 or not np.all(np.diff(self.start) > 0):
             raise InputError("start", None, "must rise from zero")
-        if self.slope[-1] != 0:
-            raise InputError("slope", float(self.slope[-1]), "the last line must be level")
+        if self.end[-1] != self.level[-1]:
+            raise InputError("end", float(self.end[-1]), "the last line must be level")
 
     @property
     def final(self) -> float:
@@ -77,8 +77,12 @@ class Piecewise:
     @property
     def largest(self) -> float:
         """Largest magnitude at any time [V]."""
-        ends = self.level[:-1] + self.slope[:-1] * np.diff(self.start)
-        return float(max(np.max(np.abs(self.level)), np.max(np.abs(ends), initial=0.0)))
+        return float(max(np.max(np.abs(self.level)), np.max(np.abs(self.end))))
+
+    @property
+    def slope(self) -> Array:
+        """Of each line, shape (n,) [V/s]."""
+        return np.append((self.end - self.level)[:-1] / np.diff(self.start), 0.0)
 
     @property
     def settled(self) -> float:
@@ -100,7 +104,7 @@ class Piecewise:
         """
         assert self.period is not None
         start = np.add.outer(np.arange(count) * self.period, self.start).ravel()
-        return Piecewise(self.kind, start, np.tile(self.level, count), np.tile(self.slope, count))
+        return Piecewise(self.kind, start, np.tile(self.level, count), np.tile(self.end, count))
 
     def at(self, time: Any) -> Array:
         """The voltage at given times.
@@ -188,10 +192,8 @@ def ramp(voltage: float, rise_time: float) -> Piecewise:
     """
     if not rise_time > 0:
         raise InputError("rise_time", rise_time, "must be more than zero; a step is dc")
-    return Piecewise(
-        "ramp", np.array([0.0, rise_time]), np.array([0.0, voltage]),
-        np.array([voltage / rise_time, 0.0]),
-    )  # fmt: skip
+    level, end = np.array([0.0, voltage]), np.array([voltage, voltage])
+    return Piecewise("ramp", np.array([0.0, rise_time]), level, end)
 
 
 def pulse(
@@ -245,19 +247,13 @@ def pulse(
     if period is not None and period <= lasts * (1 + 1e-12):
         raise InputError("period", period, f"must be more than the pulse lasts, {lasts:g} s")
     lines = [
-        (length, level, slope)
-        for length, level, slope in (
-            (rise_time, 0.0, voltage / rise_time if rise_time else 0.0),
-            (flat, voltage, 0.0),
-            (fall_time, voltage, -voltage / fall_time if fall_time else 0.0),
-        )
-        if length > 0
+        line
+        for line in ((rise_time, 0.0, voltage), (flat, voltage, voltage), (fall_time, voltage, 0.0))
+        if line[0] > 0
     ]
-    start = np.cumsum([0.0, *(length for length, _, _ in lines)])
-    one = Piecewise(
-        "pulse", start, np.array([level for _, level, _ in lines] + [0.0]),
-        np.array([slope for *_, slope in lines] + [0.0]), period,
-    )  # fmt: skip
+    lengths, level, end = zip(*lines, strict=True)
+    start = np.cumsum([0.0, *lengths])
+    one = Piecewise("pulse", start, np.array([*level, 0.0]), np.array([*end, 0.0]), period)
     if count is None:
         return one
     return one if count == 1 else one.repeated(count)
@@ -292,8 +288,7 @@ def recorded(time: Any, voltage: Any) -> Piecewise:
     steps = np.diff(time)
     if not np.all(steps > 0):
         raise InputError("time", float(time[1:][steps <= 0][0]), "does not rise")
-    slope = np.append(np.diff(voltage) / steps, 0.0)
-    return Piecewise("recorded", time - time[0], voltage, slope)
+    return Piecewise("recorded", time - time[0], voltage, np.append(voltage[1:], voltage[-1]))
 
 
 def surge(voltage: float, front_time: float, half_value_time: float) -> Surge:

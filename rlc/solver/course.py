@@ -1,0 +1,244 @@
+"""A loop carried through straight lines of its source, from knot to knot.
+
+Each line starts from the exact state that the last one left. Two sums are carried: the states,
+and how far they are from balance with the source; a loop that follows a slow source is only
+known through the second, one that a short pulse has hardly moved only through the first.
+"""
+
+from __future__ import annotations
+
+from dataclasses import dataclass
+from typing import NamedTuple
+
+import numpy as np
+from numpy.typing import NDArray
+
+from rlc.solver.equation import Array, Equation, kernels
+from rlc.solver.lines import Lines, States, balance, lines
+from rlc.solver.shapes import Piecewise
+
+# So many knots are carried one after another, all blocks at once; a power of two keeps the
+# blocks of an even record at exact multiples of its step.
+_BLOCK = 256
+
+
+States2x2 = tuple[Array, Array, Array, Array]
+
+
+class _Step(NamedTuple):
+    """From one knot to the next: the propagator by rows, and what the source adds."""
+
+    a: Array
+    b: Array
+    c: Array
+    d: Array
+    to_states: States
+    to_distance: States
+
+
+@dataclass(frozen=True, eq=False)
+class Course:
+    """States at every knot; batch first, knots last.
+
+    Attributes
+    ----------
+    eq : Equation
+        The loops, with one more axis at the end.
+    shape : Piecewise
+        The source, without repetition.
+    states : (Array, Array)
+        Capacitor voltage behind the series resistance, and current [V], [A].
+    distance : (Array, Array)
+        The same, less the states in balance with the source just after the knot [V], [A].
+    near_balance : (Array of bool, Array of bool)
+        Where voltage and current are to be taken from the distance: it has been the smaller one.
+    """
+
+    eq: Equation
+    shape: Piecewise
+    states: States
+    distance: States
+    near_balance: tuple[NDArray[np.bool_], NDArray[np.bool_]]
+
+    def at(self, time: Array) -> tuple[Array, Array]:
+        """Capacitor voltage and current at given times.
+
+        Parameters
+        ----------
+        time : Array
+            Shape (n,), zero or more [s].
+
+        Returns
+        -------
+        capacitor_voltage, current : Array
+            Shape of the batch, then (n,) [V], [A].
+        """
+        shape, eq = self.shape, self.eq
+        index = np.searchsorted(shape.start, time, side="right") - 1
+        since, lost = _difference(time, shape.start[index])
+        level, slope = shape.level[index], shape.slope[index]
+        line = lines(eq, since)
+        moved = _propagated(line, eq, *(part[..., index] for part in self.states))
+        left = _propagated(line, eq, *(part[..., index] for part in self.distance))
+        source = level + slope * since
+        rest = balance(eq)
+        voltage, current = (
+            np.where(
+                self.near_balance[k][..., index],
+                rest[k] * source + slope * line.lag[k] + left[k],
+                moved[k] + level * line.step[k] + slope * line.ramp[k],
+            )
+            for k in (0, 1)
+        )
+        if lost.any():
+            # what rounding took from the time: 1e-16 of it is 1e-11 of a turn after 1e4 periods
+            a, b, c, d = eq.matrix
+            voltage, current = (
+                voltage + lost * (a * voltage + b * current),
+                current + lost * (c * voltage + d * current + eq.source_rate * source),
+            )
+        return voltage, current
+
+
+def follow(eq: Equation, shape: Piecewise, voltage: Array, current: Array) -> Course:
+    """Carry loops through a course of straight lines.
+
+    Parameters
+    ----------
+    eq : Equation
+        A batch of loops, with one more axis of length one at the end.
+    shape : Piecewise
+        The source, without repetition.
+    voltage, current : Array
+        States at closing; broadcast against the batch with its last axis [V], [A].
+
+    Returns
+    -------
+    Course
+    """
+    batch = np.broadcast_shapes(eq.damping.shape, np.shape(voltage), np.shape(current))
+    rest_voltage, rest_current = balance(eq)
+    level = shape.level[0]
+    first = np.broadcast_to(voltage, batch), np.broadcast_to(current, batch)
+    apart = first[0] - rest_voltage * level, first[1] - rest_current * level
+    if shape.start.size > 1:
+        step = _steps(eq, shape)
+        across = _across_blocks(eq, shape.start)
+        states = _carry(step, step.to_states, first, across)
+        distance = _carry(step, step.to_distance, apart, across)
+    else:
+        states, distance = first, apart
+    scale = np.abs(eq.matrix[1] / eq.matrix[2])  # squared impedance of the two states
+    size, far = (
+        np.maximum.accumulate(part[0] ** 2 + scale * part[1] ** 2, axis=-1)
+        for part in (states, distance)
+    )
+    near = far < size
+    lower = np.maximum.accumulate(np.abs(distance[0]), axis=-1) < np.maximum.accumulate(
+        np.abs(states[0]), axis=-1
+    )
+    return Course(eq, shape, states, distance, (near & lower, near))
+
+
+def _difference(a: Array, b: Array) -> tuple[Array, Array]:
+    """a - b, and what rounding takes from it."""
+    high = a - b
+    part = high - a
+    return high, (a - (high - part)) - (b + part)
+
+
+def _propagated(line: Lines, eq: Equation, voltage: Array, current: Array) -> States:
+    _, b, c, _ = eq.matrix
+    kernel = line.kernel
+    return (
+        voltage * kernel.capacitor + b * current * kernel.s,
+        current * kernel.current + c * voltage * kernel.s,
+    )
+
+
+def _steps(eq: Equation, shape: Piecewise) -> _Step:
+    width, lost = _difference(shape.start[1:], shape.start[:-1])
+    if np.all(width == width[0]):
+        width, lost = width[:1], lost[:1]
+    level, end, slope = shape.level[:-1], shape.end[:-1], shape.slope[:-1]
+    jump = shape.level[1:] - end
+    line = lines(eq, width)
+    kernel, (a, b, c, d) = line.kernel, eq.matrix
+    propagator = (kernel.capacitor, b * kernel.s, c * kernel.s, kernel.current)
+    states = tuple(level * s + slope * r for s, r in zip(line.step, line.ramp, strict=True))
+    left = tuple(slope * lag for lag in line.lag)
+    if lost.any():
+        p, q, r, s = propagator
+        propagator = (
+            p + lost * (a * p + b * r), q + lost * (a * q + b * s),
+            r + lost * (c * p + d * r), s + lost * (c * q + d * s),
+        )  # fmt: skip
+        states = (
+            states[0] + lost * (a * states[0] + b * states[1]),
+            states[1] + lost * (c * states[0] + d * states[1] + eq.source_rate * end),
+        )
+        rest = balance(eq)
+        left = (
+            left[0] + lost * (a * left[0] + b * left[1] - rest[0] * slope),
+            left[1] + lost * (c * left[0] + d * left[1] - rest[1] * slope),
+        )
+    left = tuple(part - rest * jump for part, rest in zip(left, balance(eq), strict=True))
+    return _Step(*propagator, states, left)  # type: ignore[arg-type]
+
+
+def _blocks(values: Array) -> Array:
+    """Steps on the last axis cut into blocks: step in the block first, blocks last."""
+    count = values.shape[-1]
+    if count == 1:
+        return values[np.newaxis]
+    block = min(_BLOCK, count)
+    number = -(-count // block)
+    padded = np.zeros((*values.shape[:-1], number * block))
+    padded[..., :count] = values
+    return np.ascontiguousarray(
+        np.moveaxis(padded.reshape(*values.shape[:-1], number, block), -1, 0)
+    )
+
+
+def _across_blocks(eq: Equation, start: Array) -> States2x2 | None:
+    """Propagators from the first knot of a block to each of its steps' ends."""
+    count = start.size - 1
+    if count <= _BLOCK:
+        return None
+    origin = np.repeat(start[:-1:_BLOCK], _BLOCK)[:count]
+    kernel = kernels(eq, start[1:] - origin)
+    _, b, c, _ = eq.matrix
+    parts = (kernel.capacitor, b * kernel.s, c * kernel.s, kernel.current)
+    return tuple(_blocks(part) for part in parts)  # type: ignore[return-value]
+
+
+def _carry(step: _Step, added: States, first: States, across: States2x2 | None) -> States:
+    """All blocks are advanced together from zero, the first one from the states at closing;
+    then each gets what the block before it has ended on."""
+    count = added[0].shape[-1]
+    a, b, c, d = (_blocks(part) for part in step[:4])
+    voltage, current = (_blocks(part) for part in added)
+    v, i = np.zeros(voltage.shape[1:]), np.zeros(voltage.shape[1:])
+    v[..., 0], i[..., 0] = (part[..., 0] for part in first)
+    for row in range(voltage.shape[0]):
+        k = min(row, a.shape[0] - 1)
+        voltage[row] += a[k] * v + b[k] * i
+        current[row] += c[k] * v + d[k] * i
+        v, i = voltage[row], current[row]
+    if across is not None:
+        p, q, r, s = across
+        before, behind = np.zeros(v.shape), np.zeros(v.shape)
+        for block in range(1, v.shape[-1]):
+            last = block - 1
+            x, y = before[..., last], behind[..., last]
+            before[..., block] = p[-1, ..., last] * x + q[-1, ..., last] * y + v[..., last]
+            behind[..., block] = r[-1, ..., last] * x + s[-1, ..., last] * y + i[..., last]
+        voltage += p * before + q * behind
+        current += r * before + s * behind
+
+    def joined(start: Array, rows: Array) -> Array:
+        steps = np.moveaxis(rows, 0, -1)
+        steps = steps.reshape(*steps.shape[:-2], -1)[..., :count]
+        return np.concatenate([np.broadcast_to(start, (*steps.shape[:-1], 1)), steps], axis=-1)
+
+    return joined(first[0], voltage), joined(first[1], current)
