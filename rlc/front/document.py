@@ -12,6 +12,8 @@ from typing import Any
 from rlc.errors import InputError, SheetError
 from rlc.front.flags import FLAGS, SOURCE_LEVELS, TOLERANCE_FLAGS, Flag, source_levels
 from rlc.front.inputs import Change
+from rlc.front.sources import ALTERNATING, SOURCES
+from rlc.front.textfile import check_file, unreadable, whole
 
 #: A sheet is a page or two; anything far beyond is some other file.
 LARGEST_SHEET = 256 * 1024
@@ -101,7 +103,7 @@ def read_document(path: str | Path) -> Document:
         line = int(where[1]) if where else None
         raise SheetError(str(path), ((line, InputError("", None, rule, hint)),)) from None
     except RecursionError:
-        raise _whole(path, "is nested too deeply for a sheet") from None
+        raise whole(path, "is nested too deeply for a sheet") from None
     return Document(str(path), data, _key_lines(text))
 
 
@@ -141,9 +143,11 @@ def with_flags(document: Document, given: Mapping[str, str]) -> Document:
 def _other_source(data: dict[str, Any], level: Flag) -> list[Change]:
     """Drop what does not go with the level that a flag has given, and say so."""
     kind, source, switch_on = SOURCE_LEVELS[level.key], data["source"], data.get("switch_on")
-    useless = [("source", key) for key in SOURCE_LEVELS if key != level.key]
-    if kind == "dc":
-        useless += [("source", "frequency"), ("switch_on", "closing_angle")]
+    known = dict.fromkeys(key for table in SOURCES.values() for key in table.model_fields)
+    kept = SOURCES[kind].model_fields.keys() - (SOURCE_LEVELS.keys() - {level.key})
+    useless = [("source", key) for key in known if key not in kept]
+    if kind not in ALTERNATING:
+        useless.append(("switch_on", "closing_angle"))
     changes = []
     if source.get("kind") not in (None, kind):
         changes.append(Change(level.option, "source.kind", source["kind"], kind))
@@ -155,37 +159,20 @@ def _other_source(data: dict[str, Any], level: Flag) -> list[Change]:
     return changes
 
 
-def _whole(path: str | Path, rule: str, hint: str = "") -> SheetError:
-    return SheetError(str(path), ((None, InputError("", None, rule, hint)),))
-
-
 def _text(path: str | Path) -> str:
-    file = Path(path)
+    check_file(path, "sheet", LARGEST_SHEET, 'Write one with "rlc new filter FILE"')
     try:
-        if file.is_dir():
-            raise _whole(path, "is a directory", "Name the sheet in it")
-        if not file.exists():
-            raise _whole(path, "does not exist", 'Write one with "rlc new filter FILE"')
-        if not file.is_file():
-            raise _whole(path, "is no ordinary file")
-        size = file.stat().st_size
-        if size > LARGEST_SHEET:
-            rule = f"has {size} bytes, and a sheet has at most {LARGEST_SHEET}"
-            raise _whole(path, rule, "Is it the right file?")
-        raw = file.read_bytes()
-    except (OSError, ValueError) as error:
-        if isinstance(error, SheetError):
-            raise
-        reason = getattr(error, "strerror", None) or str(error)
-        raise _whole(path, f"cannot be read: {reason}") from None
+        raw = Path(path).read_bytes()
+    except OSError as error:
+        raise unreadable(path, error) from None
     try:
         # Windows editors put a byte-order mark in front.
         text = raw.decode("utf-8-sig")
     except UnicodeDecodeError as error:
         rule = f"is no text in UTF-8: byte {error.start + 1} is out of place"
-        raise _whole(path, rule, "Is it the right file?") from None
+        raise whole(path, rule, "Is it the right file?") from None
     if "\0" in text:
-        raise _whole(path, "is no text: it holds zero bytes", "Is it the right file?")
+        raise whole(path, "is no text: it holds zero bytes", "Is it the right file?")
     return text
 
 
@@ -194,6 +181,7 @@ def _key_lines(text: str) -> dict[KeyPath, int]:
     lines: dict[KeyPath, int] = {}
     counts: dict[KeyPath, int] = {}
     table: KeyPath = ()
+    rows: KeyPath = ()
     closing = ""
     for number, line in enumerate(text.splitlines(), start=1):
         if closing:
@@ -206,8 +194,14 @@ def _key_lines(text: str) -> dict[KeyPath, int]:
                 lines.setdefault(table, number)
                 table = (*table, counts[table])
             lines.setdefault(table, number)
+        elif rows and line.lstrip().startswith("{"):
+            # The tables of a list that goes on over several lines.
+            for _ in range(line.count("{")):
+                counts[rows] = counts.get(rows, -1) + 1
+                lines[(*rows, counts[rows])] = number
         elif key := _KEY.match(line):
             names = _names(key[1])
+            rows = table + names if key[2].partition("#")[0].strip() == "[" else ()
             for end in range(1, len(names) + 1):
                 lines.setdefault(table + names[:end], number)
             for mark in ('"""', "'''"):

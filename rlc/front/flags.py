@@ -6,7 +6,7 @@ from collections.abc import Mapping
 from typing import NamedTuple
 
 from rlc.errors import InputError
-from rlc.front.door import Door
+from rlc.front.door import ChargeDoor, ClosingAngleDoor, Door
 
 #: Random units unless stated otherwise: enough to tell 99.9 % from 99 %, at seconds of work.
 SAMPLES = 2000
@@ -66,12 +66,12 @@ FLAGS: tuple[Flag, ...] = (
         "Inside the source.",
     ),
     Flag(
-        "--closing-angle", "switch_on", "closing_angle", Door("angle", word="worst"),
-        'Of a sine at closing, from its rising zero: "30 deg", or worst.',
+        "--closing-angle", "switch_on", "closing_angle", ClosingAngleDoor(),
+        'Of a sine at closing, from its rising zero: "30 deg", "0 deg +- 15 deg", random, worst.',
     ),
     Flag(
-        "--capacitor-voltage", "switch_on", "capacitor_voltage", _VOLTS,
-        "On the capacitor before closing.",
+        "--capacitor-voltage", "switch_on", "capacitor_voltage", ChargeDoor(),
+        'On the capacitor before closing: "-5 V"; of either polarity: "+- 325 V".',
     ),
     Flag(
         "--initial-current", "switch_on", "initial_current", Door("current"),

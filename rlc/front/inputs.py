@@ -63,6 +63,8 @@ class Change(NamedTuple):
     new: str | None
 
     def __str__(self) -> str:
+        if isinstance(self.old, list):
+            return f"{self.option} drops {self.key}, {len(self.old)} of them"
         if self.old is None:
             return f'{self.option} adds {self.key} = "{self.new}"'
         if self.new is None:

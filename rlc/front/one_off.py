@@ -6,9 +6,10 @@ from collections.abc import Mapping
 from typing import Any
 
 from rlc.errors import InputError, SheetError
+from rlc.front.door import Charge
 from rlc.front.flags import FLAGS, SOURCE_LEVELS, TOLERANCE_FLAGS
 from rlc.front.inputs import Inputs, Loaded
-from rlc.front.marking import KINDS, note_on
+from rlc.front.marking import KINDS
 from rlc.front.units import Tolerance, read_tolerance
 from rlc.solver.case import Case
 from rlc.solver.loop import make_loop
@@ -60,7 +61,7 @@ def read_flags(given: Mapping[str, str]) -> Loaded:
         except InputError as error:
             problems.append(InputError(flag.option, error.value, error.rule, error.hint))
             continue
-        note = "" if value is None else note_on(value, flag.door.kind)
+        note = flag.door.note(value)
         notes += [f"{flag.option}: {note}"] if note else []
     problems += _missing(given)
     tolerances: dict[str, Tolerance] = {}
@@ -118,6 +119,6 @@ def _case(values: Mapping[str, Any]) -> Case:
             values.get("--closing-angle", 0.0),
             rms=values.get("--source-rms"),
         )
-    return Case(
-        loop, source, values.get("--capacitor-voltage", 0.0), values.get("--initial-current", 0.0)
-    )
+    charge = values.get("--capacitor-voltage", Charge(0.0))
+    current = values.get("--initial-current", 0.0)
+    return Case(loop, source, charge.voltage, current, charge.either_polarity)

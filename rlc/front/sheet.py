@@ -4,44 +4,30 @@ from __future__ import annotations
 
 from typing import Annotated, Any, ClassVar, Literal
 
-from pydantic import (
-    BaseModel,
-    ConfigDict,
-    Field,
-    ValidationInfo,
-    field_validator,
-    model_validator,
-)
+from pydantic import Field, ValidationInfo, field_validator, model_validator
 
 from rlc.errors import InputError
-from rlc.front.door import Door
+from rlc.front.door import Charge, ChargeDoor, ClosingAngleDoor, Door, WholeDoor
 from rlc.front.inputs import Inputs
+from rlc.front.sources import AnySource
+from rlc.front.table import (
+    Amperes,
+    AmperesAbove,
+    Farads,
+    HenriesAbove,
+    Ohms,
+    OhmsAbove,
+    Table,
+    VoltsAbove,
+    Watts,
+)
 from rlc.front.units import Tolerance, read_tolerance
 from rlc.solver.case import Case
 from rlc.solver.loop import ELEMENTS, Loop, make_loop
 from rlc.solver.parts import Distribution, Part
 from rlc.solver.quantities import REGISTER
-from rlc.solver.source import Source, constant, sine
+from rlc.solver.source import Window
 from rlc.solver.targets import MOST_OPERATIONS, Fuse, Ratings, Target
-
-Ohms = Annotated[float, Door("resistance", "zero")]
-OhmsAbove = Annotated[float, Door("resistance", "above zero")]
-Henries = Annotated[float, Door("inductance", "zero")]
-HenriesAbove = Annotated[float, Door("inductance", "above zero")]
-Farads = Annotated[float, Door("capacitance", "above zero")]
-Volts = Annotated[float, Door("voltage")]
-VoltsAbove = Annotated[float, Door("voltage", "above zero")]
-Amperes = Annotated[float, Door("current")]
-AmperesAbove = Annotated[float, Door("current", "above zero")]
-Watts = Annotated[float, Door("power", "above zero")]
-Hertz = Annotated[float, Door("frequency", "above zero")]
-
-
-class Table(BaseModel):
-    """A table of the sheet; unknown keys are errors."""
-
-    # Built once, for the whole sheet, when the first one is read.
-    model_config = ConfigDict(extra="forbid", frozen=True, defer_build=True)
 
 
 class Toleranced(Table):
@@ -181,45 +167,7 @@ class FuseTable(Table):
     """
 
     melting_let_through: Annotated[float, Door("let_through", "above zero")]
-    operations: int = Field(ge=1, le=MOST_OPERATIONS, strict=True)
-
-
-class Dc(Table):
-    """``[source]`` with kind = "dc".
-
-    Attributes
-    ----------
-    voltage : float
-        Level, of either sign [V].
-    resistance, inductance : float
-        Inside the source, zero or more [ohm], [H].
-    """
-
-    kind: Literal["dc"]
-    voltage: Volts
-    resistance: Ohms = 0.0
-    inductance: Henries = 0.0
-
-
-class Sine(Table):
-    """``[source]`` with kind = "sine": rms or amplitude, never both.
-
-    Attributes
-    ----------
-    rms, amplitude : float or None
-        Root mean square or peak value, more than zero [V].
-    frequency : float
-        More than zero [Hz].
-    resistance, inductance : float
-        Inside the source, zero or more [ohm], [H].
-    """
-
-    kind: Literal["sine"]
-    rms: VoltsAbove | None = None
-    amplitude: VoltsAbove | None = None
-    frequency: Hertz
-    resistance: Ohms = 0.0
-    inductance: Henries = 0.0
+    operations: Annotated[int, WholeDoor(1, MOST_OPERATIONS)]
 
 
 class SwitchOn(Table):
@@ -227,16 +175,16 @@ class SwitchOn(Table):
 
     Attributes
     ----------
-    closing_angle : float or None
+    closing_angle : float, Window or None
         Of a sine, from its rising zero; None for the worst one [rad].
-    capacitor_voltage : float
-        Behind the series resistance [V].
+    capacitor_voltage : Charge
+        Behind the series resistance, of stated or of either polarity.
     initial_current : float
         In the loop [A].
     """
 
-    closing_angle: Annotated[float | None, Door("angle", word="worst")] = 0.0
-    capacitor_voltage: Volts = 0.0
+    closing_angle: Annotated[float | Window | None, ClosingAngleDoor()] = 0.0
+    capacitor_voltage: Annotated[Charge, ChargeDoor()] = Charge(0.0)
     initial_current: Amperes = 0.0
 
 
@@ -271,11 +219,12 @@ class TargetTable(Table):
         if entry is None:
             # The quantity's name is the error to mend first.
             return None
-        if info.field_name != "at":
-            return Door(entry.kind).open(text)
-        if entry.at is None:
+        is_place = info.field_name == "at"
+        if is_place and entry.at is None:
             entry.refuse(text, None, "")
-        return Door(entry.at or "", "above zero").open(text)
+        door = Door(entry.at or "", "above zero") if is_place else Door(entry.kind)
+        value: float = door.open(text)
+        return value
 
     @field_validator("goal")
     @classmethod
@@ -312,8 +261,8 @@ class Sheet(Table):
         One line of at most 120 characters; may be empty.
     resistor, inductor, capacitor : Resistor, Inductor, Capacitor
         The three parts.
-    source : Dc or Sine
-        What drives them.
+    source : SourceTable
+        What drives them, of one of the kinds.
     load, fuse : LoadTable or None, FuseTable or None
         None if the sheet has no such table.
     switch_on : SwitchOn
@@ -326,7 +275,7 @@ class Sheet(Table):
     resistor: Resistor
     inductor: Inductor
     capacitor: Capacitor
-    source: Annotated[Dc | Sine, Field(discriminator="kind")]
+    source: Annotated[AnySource, Field(discriminator="kind")]
     load: LoadTable | None = None
     fuse: FuseTable | None = None
     switch_on: SwitchOn = Field(default_factory=SwitchOn)
@@ -351,12 +300,6 @@ class Sheet(Table):
             source_inductance=self.source.inductance,
         )
 
-    def _source(self) -> Source:
-        if isinstance(self.source, Dc):
-            return constant(self.source.voltage)
-        level, angle = self.source, self.switch_on.closing_angle
-        return sine(level.amplitude, level.frequency, angle, rms=level.rms)
-
     def inputs(self) -> Inputs:
         """The solver's objects.
 
@@ -380,9 +323,10 @@ class Sheet(Table):
         )
         case = Case(
             self._loop(),
-            self._source(),
-            states.capacitor_voltage,  # type: ignore[arg-type]
+            self.source.drive(states.closing_angle),
+            states.capacitor_voltage.voltage,  # type: ignore[arg-type]
             states.initial_current,  # type: ignore[arg-type]
+            states.capacitor_voltage.either_polarity,
         )
         fuse = Fuse(self.fuse.melting_let_through, self.fuse.operations) if self.fuse else None
         rated = ratings.targets() + ((fuse.target(case),) if fuse else ())

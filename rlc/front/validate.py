@@ -2,7 +2,7 @@
 
 from __future__ import annotations
 
-from collections.abc import Iterator, Mapping
+from collections.abc import Iterable, Iterator, Mapping
 from difflib import get_close_matches
 from pathlib import Path
 from typing import Any, get_args
@@ -10,33 +10,41 @@ from typing import Any, get_args
 from pydantic import BaseModel, ValidationError
 
 from rlc.errors import InputError, SheetError
+from rlc.front.contradictions import ORDER, contradictions
 from rlc.front.document import Document, KeyPath, read_document, with_flags
 from rlc.front.door import Door
 from rlc.front.inputs import Loaded
-from rlc.front.marking import note_on
-from rlc.front.sheet import Dc, Sheet, Sine, Table
-from rlc.solver.quantities import REGISTER
+from rlc.front.sheet import Sheet
+from rlc.front.sources import SOURCES, OrderTable, Sine
 
-_SOURCES: dict[str, type[Table]] = {"dc": Dc, "sine": Sine}
-_TABLES: dict[str, type[BaseModel]] = {
-    name: kind
+_TABLES: dict[str, tuple[type[BaseModel], ...]] = {
+    name: models
     for name, info in Sheet.model_fields.items()
-    for kind in (info.annotation, *get_args(info.annotation))
-    if isinstance(kind, type) and issubclass(kind, BaseModel)
+    if (
+        models := tuple(
+            kind
+            for kind in (info.annotation, *get_args(info.annotation))
+            if isinstance(kind, type) and issubclass(kind, BaseModel)
+        )
+    )
 }
 _EXAMPLES = {
     "resistor.value": '"12 ohm"',
     "inductor.value": '"33 mH"',
     "capacitor.value": '"1 uF"',
-    "source.kind": '"dc" or "sine"',
     "source.voltage": '"24 V"',
     "source.frequency": '"50 Hz"',
+    "source.rise_time": '"2 ms"',
+    "source.width": '"5 ms"',
+    "source.front_time": '"1.2 us"',
+    "source.half_value_time": '"50 us"',
+    "source.file": '"record.csv"',
+    "source.orders.number": "5",
     "load.resistance": '"10 kohm"',
     "fuse.melting_let_through": '"0.9 A^2 s"',
     "fuse.operations": "10000",
 }
 _SINE = 'kind = "sine", rms = "24 V", frequency = "50 Hz"'
-_LEVEL = 'Write rms = "24 V" or amplitude = "34 V"'
 
 
 def read_sheet(path: str | Path, flags: Mapping[str, str]) -> Loaded:
@@ -59,13 +67,17 @@ def read_sheet(path: str | Path, flags: Mapping[str, str]) -> Loaded:
         With everything that is wrong with the sheet.
     """
     document = with_flags(read_document(path), flags)
-    problems = dict(_contradictions(document.data))
+    said = dict(contradictions(document.data))
+    problems = dict(said)
     try:
-        sheet = Sheet.model_validate(document.data)
+        sheet = Sheet.model_validate(document.data, context=Path(path).parent)
     except ValidationError as error:
         for each in error.errors():
             at, found = _problem(each, document)
-            problems.setdefault(at, found)
+            # A table that contradicts itself makes no source; why is said at its keys.
+            told = any(known[: len(at)] == at for known in said)
+            if not (told and each["type"] == "value_error"):
+                problems.setdefault(at, found)
     if problems:
         ordered = sorted(problems, key=lambda at: document.line_of(at) or 0)
         raise SheetError(
@@ -85,46 +97,22 @@ def _placed(at: KeyPath, found: InputError, document: Document) -> tuple[int | N
     return line, InputError(name, found.value, found.rule, found.hint)
 
 
-def _contradictions(data: Mapping[str, Any]) -> Iterator[tuple[KeyPath, InputError]]:
-    """What keys say against each other; looked for even where single values are wrong."""
-    source, switch_on, targets = (data.get(key) for key in ("source", "switch_on", "target"))
-    kind = source.get("kind") if isinstance(source, dict) else None
-    if isinstance(source, dict) and kind == "sine":
-        levels = [key for key in ("rms", "amplitude") if key in source]
-        if len(levels) == 2:
-            rule = "is given beside rms, and a sine is given by one of them"
-            yield ("source", "amplitude"), InputError("", source["amplitude"], rule)
-        elif not levels and "voltage" in source:
-            rule = "does not say whether the sine's rms or its amplitude (peak) is meant"
-            yield ("source", "voltage"), InputError("", source["voltage"], rule, _LEVEL)
-        elif not levels:
-            yield ("source",), InputError("", None, "has neither rms nor amplitude", _LEVEL)
-    if kind == "dc" and isinstance(switch_on, dict) and "closing_angle" in switch_on:
-        rule = "belongs to a sine source, and this one is dc"
-        angle = switch_on["closing_angle"]
-        yield ("switch_on", "closing_angle"), InputError("", angle, rule)
-    for index, row in enumerate(targets if isinstance(targets, list) else ()):
-        entry = REGISTER.get(str(row.get("quantity"))) if isinstance(row, dict) else None
-        if entry and kind == "dc" and entry.at == "frequency" and "at" in row:
-            rule = f"{entry.name} of a dc source is not asked for at a frequency"
-            if not entry.per_volt:
-                yield ("target", index, "at"), InputError("", row["at"], rule)
-
-
 def _problem(error: Any, document: Document) -> tuple[KeyPath, InputError]:
     """One of pydantic's errors in our words, and where it is."""
     # A source's place holds its kind, which is no key of the sheet.
     at: KeyPath = tuple(
         part
         for index, part in enumerate(error["loc"])
-        if (error["loc"][0], index) != ("source", 1) or part not in _SOURCES
+        if (error["loc"][0], index) != ("source", 1) or part not in SOURCES
     )
     kind, value = error["type"], error["input"]
     cause = error.get("ctx", {}).get("error")
     if isinstance(cause, InputError):
         # A rule between keys names the one to change; its value is shown as it was typed.
-        if cause.name and cause.name != at[-1]:
-            value = value.get(cause.name) if isinstance(value, dict) else None
+        if isinstance(value, dict) and cause.name in value:
+            at, value = (*at, cause.name), value[cause.name]
+        elif cause.name and cause.name != at[-1]:
+            value = None
         return at, InputError(cause.name, value, cause.rule, cause.hint)
     if kind == "missing":
         return _missing(at)
@@ -133,11 +121,13 @@ def _problem(error: Any, document: Document) -> tuple[KeyPath, InputError]:
     if kind.startswith("union_tag"):
         given = value.get("kind") if isinstance(value, dict) else None
         rule = "is missing" if given is None else "is no kind of source"
-        hint = f"Write kind = {_EXAMPLES['source.kind']}"
+        hint = f"Write kind = {_either(SOURCES)}"
         return ("source", "kind"), InputError("", given, rule, hint)
     if kind == "literal_error":
         return at, InputError("", value, *_no_choice(at, value, document.data))
     if kind in ("model_type", "model_attributes_type", "tuple_type"):
+        if _is_order(at):
+            return at, InputError("", value, "must be tables, each below a line [[source.orders]]")
         line = f"[[{at[0]}]]" if at[0] == "target" else f"[{at[0]}]"
         return at, InputError("", value, f"must be a table, with a line {line} above its keys")
     return at, InputError("", value, error["msg"].replace("Input should be", "must be"))
@@ -146,21 +136,35 @@ def _problem(error: Any, document: Document) -> tuple[KeyPath, InputError]:
 def _missing(at: KeyPath) -> tuple[KeyPath, InputError]:
     if at[-1] in _TABLES and at[-1] != "source" and len(at) == 1:
         at = (*at, "value")
-    example = _EXAMPLES.get(".".join(str(part) for part in at), "")
+    example = _EXAMPLES.get(".".join(part for part in at if isinstance(part, str)), "")
     if at == ("source",):
         hint = f"Write [source] and below it {_SINE}"
+    elif at == ("source", "orders"):
+        hint = ORDER
     else:
-        hint = f"Write below [{at[0]}] {at[-1]} = {example}" if example else ""
+        table = "[[source.orders]]" if _is_order(at) else f"[{at[0]}]"
+        hint = f"Write below {table} {at[-1]} = {example}" if example else ""
     return at, InputError("", None, "is missing", hint)
+
+
+def _is_order(at: KeyPath) -> bool:
+    return at[:2] == ("source", "orders")
+
+
+def _either(words: Iterable[str]) -> str:
+    *some, last = (f'"{word}"' for word in words)
+    return f"{', '.join(some)} or {last}" if some else last
 
 
 def _model_at(at: KeyPath, data: Mapping[str, Any]) -> type[BaseModel]:
     """The model of the table around a key."""
     if len(at) == 1:
         return Sheet
+    if _is_order(at):
+        return OrderTable
     if at[0] == "source":
-        return _SOURCES.get(str(data["source"].get("kind")), Sine)
-    return _TABLES[str(at[0])]
+        return SOURCES.get(str(data["source"].get("kind")), Sine)
+    return _TABLES[str(at[0])][0]
 
 
 def _no_choice(at: KeyPath, value: Any, data: Mapping[str, Any]) -> tuple[str, str]:
@@ -182,8 +186,14 @@ def _unknown(at: KeyPath, data: Mapping[str, Any]) -> tuple[str, str]:
     """Rule and hint for a key that does not belong where it stands."""
     key = str(at[-1])
     here = [info.alias or name for name, info in _model_at(at, data).model_fields.items()]
-    for name, model in _TABLES.items():
-        if len(at) > 1 and name != at[0] and key in model.model_fields:
+    if at[0] == "source" and len(at) == 2:
+        kinds = [kind for kind, table in SOURCES.items() if key in table.model_fields]
+        if kinds:
+            own = data["source"]["kind"]
+            return f'belongs to a source of kind {_either(kinds)}, and this one is "{own}"', ""
+    for name, models in _TABLES.items():
+        elsewhere = len(at) > 1 and name != at[0]
+        if elsewhere and any(key in model.model_fields for model in models):
             return f"is a key of [{name}], not of [{at[0]}]", f"Move it below [{name}]"
     near = get_close_matches(key, here, 1)
     return "is an unknown key", f'Did you mean "{near[0]}"?' if near else (
@@ -202,6 +212,6 @@ def _notes(sheet: Sheet, document: Document) -> Iterator[str]:
                 (part for part in (*info.metadata, *nested) if isinstance(part, Door)), None
             )
             value = getattr(table, key)
-            note = note_on(value, door.kind) if door and value is not None else ""
+            note = door.note(value) if door else ""
             if note:
                 yield f"{document.options.get((name, key)) or f'{name}.{key}'}: {note}"

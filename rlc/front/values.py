@@ -1,4 +1,4 @@
-"""The solver's objects, built from SI numbers, text with units, or pint quantities."""
+"""A loop and its switch-on, built from SI numbers, text with units, or pint quantities."""
 
 from __future__ import annotations
 
@@ -8,13 +8,12 @@ from typing import Any
 import numpy as np
 from numpy.typing import NDArray
 
+from rlc.front.door import ChargeDoor, open_as
 from rlc.front.units import to_si
 from rlc.solver import case as _case
 from rlc.solver import loop as _loop
-from rlc.solver import source as _source
 from rlc.solver.case import Waveforms
 from rlc.solver.quantities import lookup
-from rlc.solver.source import Source
 from rlc.solver.steady import SteadyState
 
 Array = NDArray[np.float64]
@@ -57,58 +56,6 @@ class Loop(_loop.Loop):
         super().__post_init__()
 
 
-def constant(voltage: Any) -> Source:
-    """A constant voltage, stepped on at t = 0.
-
-    Parameters
-    ----------
-    voltage : str, float, array_like or pint quantity
-        Its level [V].
-
-    Returns
-    -------
-    Source
-
-    Raises
-    ------
-    InputError
-        If it cannot be read.
-    """
-    return _source.constant(to_si(voltage, "voltage", "voltage"))
-
-
-def sine(
-    *, rms: Any = None, amplitude: Any = None, frequency: Any, closing_angle: Any = 0.0
-) -> Source:
-    """The voltage amplitude * sin(2 pi f t + closing angle), switched on at t = 0.
-
-    Parameters
-    ----------
-    rms, amplitude : str, float, array_like or pint quantity
-        Root mean square or peak value, one of them [V].
-    frequency : str, float, array_like or pint quantity
-        More than zero [Hz].
-    closing_angle : str, float, array_like or pint quantity
-        From the rising zero [rad], "30 deg"; or "worst", to be searched for.
-
-    Returns
-    -------
-    Source
-
-    Raises
-    ------
-    InputError
-        If both or neither of `rms` and `amplitude` are given, or a value cannot be read.
-    """
-    worst = isinstance(closing_angle, str) and closing_angle == "worst"
-    return _source.sine(
-        None if amplitude is None else to_si(amplitude, "voltage", "amplitude"),
-        to_si(frequency, "frequency", "frequency"),
-        None if worst else to_si(closing_angle, "angle", "closing_angle"),
-        rms=None if rms is None else to_si(rms, "voltage", "rms"),
-    )
-
-
 @dataclass(frozen=True, eq=False)
 class Case(_case.Case):
     """One switch-on, or a batch of them: a loop, its source, its states at closing.
@@ -118,9 +65,11 @@ class Case(_case.Case):
     loop : Loop
         One loop or a batch; everything else broadcasts against it.
     source : Source
-        From :func:`constant` or :func:`sine`.
+        From :mod:`rlc.front.drives`, such as :func:`rlc.front.drives.sine`.
     capacitor_voltage, initial_current : str, float, array_like or pint quantity
-        States at closing [V], [A].
+        States at closing [V], [A]; "± 325 V" is of either polarity.
+    either_polarity : bool
+        Whether the capacitor's voltage may be of either sign; the worse one counts.
 
     Raises
     ------
@@ -129,6 +78,11 @@ class Case(_case.Case):
     """
 
     def __post_init__(self) -> None:
+        if isinstance(self.capacitor_voltage, str):
+            charge = open_as(ChargeDoor(), self.capacitor_voltage, "capacitor_voltage")
+            object.__setattr__(self, "capacitor_voltage", charge.voltage)
+            either = charge.either_polarity or self.either_polarity
+            object.__setattr__(self, "either_polarity", either)
         for name, kind in (("capacitor_voltage", "voltage"), ("initial_current", "current")):
             object.__setattr__(self, name, to_si(getattr(self, name), kind, name))
         super().__post_init__()
