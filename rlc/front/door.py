@@ -31,6 +31,8 @@ class Door:
         Key of :data:`rlc.front.units.KINDS`.
     least : {"any", "zero", "above zero"}
         Lower limit.
+    most : float
+        Upper limit [unit of `kind`].
     """
 
     #: What a hint offers beside the kind's example.
@@ -38,6 +40,7 @@ class Door:
 
     kind: str
     least: Literal["any", "zero", "above zero"] = "any"
+    most: float = math.inf
 
     def __get_pydantic_core_schema__(self, *_: object) -> Any:
         """Let a model use it as the annotation of a key."""
@@ -64,7 +67,7 @@ class Door:
             Without a name: who asks knows what the value is called.
         """
         # The command line names its flags without reading any unit.
-        from rlc.front.units import read
+        from rlc.front.units import read, show
         from rlc.solver.loop import BEYOND
 
         bare = isinstance(text, int | float) and not isinstance(text, bool)
@@ -79,6 +82,8 @@ class Door:
             raise InputError("", text, "must be zero or more")
         if self.least == "above zero" and value <= 0:
             raise InputError("", text, "must be more than zero")
+        if value > self.most:
+            raise InputError("", text, f"is more than {show(self.most, self.kind)}")
         return value
 
     def note(self, value: Any) -> str:
@@ -102,6 +107,8 @@ class ClosingAngleDoor(Door):
     ----------
     kind, least : str
         Always an angle, of either sign.
+    most : float
+        None [rad].
     """
 
     also = ', "0 deg +- 15 deg", "random" or "worst"'
@@ -189,6 +196,8 @@ class ChargeDoor(Door):
     ----------
     kind, least : str
         Always a voltage, of either sign.
+    most : float
+        None [V].
     """
 
     also = ' or "+- 325 V"'

@@ -126,7 +126,7 @@ def _header(path: str | Path, rows: Iterator[tuple[int, str]]) -> _Header:
     def column(kind: str) -> _Column:
         places = [place for place, name in enumerate(names) if name == kind]
         if len(places) != 1:
-            rule = f"names two columns {kind}" if places else f"names no column {kind}"
+            rule = f'names {"two columns" if places else "no column"} "{kind}"'
             raise refuse("header", text.strip(), rule)
         (place,) = places
         part = parts[place]
@@ -204,9 +204,9 @@ def _first_fault(path: str | Path, file: TextIO, header: _Header) -> SheetError:
 
 def _other_count(text: str, count: int, header: _Header) -> InputError:
     rule = f"has {count} column{'s' * (count > 1)}, and the header names {header.columns}"
-    hint = ""
+    hint = "Columns are separated as in the header"
     if count > header.columns and header.separator == ",":
-        hint = "If the comma is a decimal mark, write a point, as in 1.5"
+        hint = "If the comma is a decimal mark, write a point instead, as in 1.5"
     return InputError("row", text[:_SHOWN], rule, hint)
 
 

@@ -210,7 +210,9 @@ class TargetTable(Table):
     across: Literal[ELEMENTS] | None = None  # type: ignore[valid-type]
     min: float | None = None
     max: float | None = None
-    goal: Annotated[float | None, Door("ratio", "above zero")] = Field(default=None, alias="yield")
+    goal: Annotated[float | None, Door("ratio", "above zero", most=1.0)] = Field(
+        default=None, alias="yield"
+    )
 
     @field_validator("at", "min", "max", mode="plain")
     @classmethod
@@ -225,13 +227,6 @@ class TargetTable(Table):
         door = Door(entry.at or "", "above zero") if is_place else Door(entry.kind)
         value: float = door.open(text)
         return value
-
-    @field_validator("goal")
-    @classmethod
-    def _is_share(cls, goal: float) -> float:
-        if goal > 1:
-            raise InputError("", f"{100 * goal:g} %", "is more than 100 %")
-        return goal
 
     @model_validator(mode="after")
     def _agrees(self) -> TargetTable:

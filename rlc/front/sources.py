@@ -126,7 +126,7 @@ class OrderTable(Table):
     number : int
         Multiple of the fundamental's frequency, 2 to 1000.
     share : float or None
-        Its amplitude over the fundamental's, zero or more [1].
+        Its amplitude over the fundamental's, zero to 1 [1].
     rms, amplitude : float or None
         Its root mean square or peak value, zero or more [V].
     phase : float
@@ -134,7 +134,8 @@ class OrderTable(Table):
     """
 
     number: Annotated[int, WholeDoor(2, MOST_ORDER)]
-    share: Annotated[float | None, Door("ratio", "zero")] = None
+    # "6" for "6 %" would be six times the fundamental; a harmonic that is above it has an rms.
+    share: Annotated[float | None, Door("ratio", "zero", most=1.0)] = None
     rms: VoltsZero | None = None
     amplitude: VoltsZero | None = None
     phase: Radians = 0.0
