@@ -2,7 +2,7 @@
 
 from __future__ import annotations
 
-from dataclasses import dataclass, field
+from dataclasses import dataclass, field, replace
 from functools import cached_property
 from typing import Any
 
@@ -10,51 +10,23 @@ import numpy as np
 from numpy.typing import NDArray
 
 from rlc.errors import InputError
-from rlc.solver.driven import driven_from_rest
-from rlc.solver.equation import Equation, angular, equation_of, free_response, kernels, phase
+from rlc.solver.course import Course, follow
+from rlc.solver.equation import Equation, angular, equation_of
 from rlc.solver.loop import Loop
-from rlc.solver.peaks import Peak, Signal, constant_source_extrema, constant_source_peak
-from rlc.solver.search import sine_peak
-from rlc.solver.source import Source
+from rlc.solver.peaking import find_peaks
+from rlc.solver.peaks import Peak, Signal, constant_source_extrema
+from rlc.solver.shapes import MOST_PULSES, Piecewise
+from rlc.solver.source import ANY_ANGLE, Order, Source
 from rlc.solver.steady import SteadyState, steady_state
+from rlc.solver.waveforms import Waveforms, waveforms
 
 Array = NDArray[np.float64]
 
 _PEAKED = ("current", "current_rate", "capacitor", "inductor", "dielectric")
 _FEW_LOOPS = 32
 _ANGLE = 1e-12
-
-
-@dataclass(frozen=True, eq=False)
-class Waveforms:
-    """The switch-on in time; all arrays share one shape, times on the last axis.
-
-    The last two are slopes; they follow from the states, without any difference in time.
-
-    Attributes
-    ----------
-    time : Array
-        Since closing [s].
-    source : Array
-        The source's inner voltage [V].
-    current : Array
-        Of the loop [A].
-    resistor_voltage, inductor_voltage, capacitor_voltage : Array
-        Across the parts' terminals [V].
-    current_rate : Array
-        Slope of the current [A/s].
-    capacitor_voltage_rate : Array
-        Slope of the capacitor's terminal voltage [V/s].
-    """
-
-    time: Array
-    source: Array
-    current: Array
-    resistor_voltage: Array
-    inductor_voltage: Array
-    capacitor_voltage: Array
-    current_rate: Array
-    capacitor_voltage_rate: Array
+# A train of pulses is steady when so many time constants have passed: 1e-12 is left.
+_STEADY = float(np.log(1e12))
 
 
 @dataclass(frozen=True, eq=False)
@@ -159,26 +131,61 @@ class Case:
         InputError
             If there is no such element.
         """
+        return self._rotating(element, Order(1, 1.0)), self.fixed_signal(element)
+
+    def rotating_signals(self, element: str) -> list[Signal]:
+        """An element's responses from rest, one for the fundamental and each harmonic.
+
+        Parameters
+        ----------
+        element : str
+            As for :meth:`rlc.solver.loop.Loop.weights`.
+
+        Returns
+        -------
+        list of Signal
+            Each to exp(j n omega t) for the order's amplitude and phase; slopes per second
+            [V], [A] or [A/s].
+        """
+        return [self._rotating(element, order) for order in self.source.every_order]
+
+    def _rotating(self, element: str, order: Order) -> Signal:
         w = self.loop.weights(element)
-        a, b, c, d = self.equation.matrix
         amplitude = self.source.amplitude
-        omega = angular(self.source.frequency)[0]
-        zero = np.zeros(self.loop.shape)
-        full = self.steady
+        if order.number > 1:
+            amplitude = amplitude * (order.share * np.exp(1j * order.phase))
+        frequency = order.number * self.source.frequency
+        omega = angular(frequency)[0]
+        full = self.steady if order.number == 1 else self.steady_at(frequency)
         with np.errstate(invalid="ignore"):
             state, current = amplitude * full.dielectric, amplitude * full.current
             steady = w.capacitor_voltage * state + w.current * current + w.source * amplitude
             free = w.capacitor_voltage * state + w.current * current
             # the free part's slope is w(A x0 + b v) - j omega w X: exactly zero where x' is
             pushed = w.current * self.equation.source_rate * amplitude
-            rotating = Signal(steady, -free, pushed - 1j * omega * free)
+            return Signal(steady, -free, pushed - 1j * omega * free)
+
+    def fixed_signal(self, element: str) -> Signal:
+        """An element's response to the initial states alone.
+
+        Parameters
+        ----------
+        element : str
+            As for :meth:`rlc.solver.loop.Loop.weights`.
+
+        Returns
+        -------
+        Signal
+            Its steady part is zero; slopes per second [V], [A] or [A/s].
+        """
+        w, zero = self.loop.weights(element), np.zeros(self.loop.shape)
+        a, b, c, d = self.equation.matrix
         v0, i0 = self.capacitor_voltage, self.initial_current
-        fixed = Signal(
+        return Signal(
             zero,
             w.capacitor_voltage * v0 + w.current * i0 + zero,
             w.capacitor_voltage * (a * v0 + b * i0) + w.current * (c * v0 + d * i0) + zero,
         )
-        return rotating, fixed
 
     def constant_signal(self, element: str) -> Signal:
         """The element's signal under a constant source, initial states included.
@@ -238,44 +245,54 @@ class Case:
         if element not in self._peaks:
             # A search costs about the same for a few signals as for one.
             few = element in _PEAKED and self.loop.resistance.size <= _FEW_LOOPS
-            self._peaks.update(self._find_peaks(_PEAKED if few else (element,)))
+            self._peaks.update(find_peaks(self, _PEAKED if few else (element,)))
         return self._peaks[element]
 
-    def _find_peaks(self, elements: tuple[str, ...]) -> dict[str, Peak]:
-        if self.source.kind == "dc":
-            return {
-                element: constant_source_peak(self.equation, self.constant_signal(element))
-                for element in elements
-            }
-        shape = (len(elements), *self.shape)
+    @cached_property
+    def lines(self) -> Piecewise | None:
+        """The source's straight lines, a train that is to become steady repeated so often."""
+        shape = self.source.shape
+        if not isinstance(shape, Piecewise) or shape.period is None:
+            return shape if isinstance(shape, Piecewise) else None
+        with np.errstate(divide="ignore"):
+            needed = np.max(_STEADY / (self.equation.slowest * shape.period))
+        if not needed < MOST_PULSES:
+            rule = f"needs more than {MOST_PULSES} pulses, for little is lost in each"
+            hint = "State a count of pulses"
+            raise InputError("count", "until steady", rule, hint)
+        return shape.repeated(int(np.ceil(needed)) + 1)
 
-        def flat(value: Any) -> Any:
-            return np.broadcast_to(value, shape).reshape(-1)
+    @property
+    def repeats(self) -> float:
+        """Period of a train that is repeated until the loop is steady; else zero [s]."""
+        shape = self.source.shape
+        return (isinstance(shape, Piecewise) and shape.period) or 0.0
 
-        def stacked(signals: tuple[Signal, ...]) -> Signal:
-            together = (
-                np.stack([np.broadcast_to(part, self.shape) for part in parts])
-                for parts in zip(*signals, strict=True)
-            )
-            return Signal(*(flat(part) for part in together))
+    @property
+    def course_end(self) -> float:
+        """When the last line of such a train ends; infinite for other sources [s]."""
+        if self.lines is None or not self.repeats:
+            return np.inf
+        shape = self.source.shape
+        assert isinstance(shape, Piecewise)
+        return self.lines.start.size // shape.start.size * self.repeats
 
-        rotating, fixed = zip(*(self.signals(element) for element in elements), strict=True)
-        angle = self.source.closing_angle
-        found = sine_peak(
-            equation_of(self.loop.map(flat)),
-            flat(angular(self.source.frequency)[0]),
-            stacked(rotating),
-            stacked(fixed),
-            None if angle is None else flat(angle),
+    @cached_property
+    def course(self) -> Course:
+        """The loop carried through the source's straight lines."""
+        assert self.lines is not None
+        voltage, current = (
+            np.broadcast_to(part, self.shape)[..., np.newaxis]
+            for part in (self.capacitor_voltage, self.initial_current)
         )
-        parts = (part.reshape(shape) for part in (found.value, found.time, found.gap, found.angle))
-        return {element: Peak(*each) for element, *each in zip(elements, *parts, strict=True)}
+        return follow(equation_of(self.loop.column()), self.lines, voltage, current)
 
     def closing_angle_for(self, element: str) -> Array:
         """The closing angle: as given, or the worst one for this element.
 
-        The worst one is within a turn from the rising zero, from rest within half a turn: the
-        other half only changes signs. Where a peak is only approached every angle is as bad.
+        The worst one is within its window, else within a turn from the rising zero; from rest
+        without even harmonics within half a turn: the other half only changes signs. Where a
+        peak is only approached every angle is as bad.
 
         Parameters
         ----------
@@ -287,12 +304,39 @@ class Case:
         Array
             From the source's rising zero [rad].
         """
-        if self.source.closing_angle is not None:
-            return self.source.closing_angle
-        turn = np.pi if self.at_rest else 2 * np.pi
+        source = self.source
+        if source.closing_angle is not None:
+            return source.closing_angle
+        if source.window not in (None, ANY_ANGLE):
+            return self.peak(element).angle
+        odd = all(order.number % 2 for order in source.orders)
+        turn = np.pi if self.at_rest and odd else 2 * np.pi
         angle: Array = np.mod(self.peak(element).angle, turn)
         # What rounding leaves beside the rising zero is the zero itself.
         return np.where((angle < _ANGLE) | (turn - angle < _ANGLE), 0.0, angle)
+
+    def closed_for(self, element: str) -> Case:
+        """The switch-on with angle and polarity settled: as given, or the worst for an element.
+
+        Parameters
+        ----------
+        element : str
+            As for :meth:`rlc.solver.loop.Loop.weights`.
+
+        Returns
+        -------
+        Case
+            With one closing angle and one capacitor voltage for each loop.
+        """
+        source, voltage = self.source, self.capacitor_voltage
+        if self.either_polarity and np.any(voltage):
+            voltage = voltage * self.peak(element).polarity
+        elif not (source.alternating and source.worst_angle):
+            return self
+        if source.alternating and source.worst_angle:
+            angle = self.closing_angle_for(element)
+            source = replace(source, closing_angle=angle, window=None)
+        return Case(self.loop, source, voltage, self.initial_current)
 
     def waveforms(self, time: Any, closing_angle: Any = None) -> Waveforms:
         """The switch-on at given times.
@@ -317,39 +361,9 @@ class Case:
         time = np.asarray(time, dtype=np.float64)
         if not np.all(time >= 0):
             raise InputError("time", float(np.min(time)), "must be zero or more")
-        loop = self.loop.column()
-        eq = equation_of(loop)
-
-        def column(value: Any) -> Array:
-            return np.asarray(value, dtype=np.float64)[..., np.newaxis]
-
         angle = self.source.closing_angle if closing_angle is None else closing_angle
-        if angle is None:
+        if angle is None and self.source.alternating:
             raise InputError("closing_angle", "worst", "waveforms need one closing angle")
-        amplitude, frequency = column(self.source.amplitude), column(self.source.frequency)
-        turn = np.exp(1j * column(angle))
-        driven_voltage, driven_current = driven_from_rest(eq, frequency, time)
-        free_voltage, free_current = free_response(
-            eq, kernels(eq, time), column(self.capacitor_voltage), column(self.initial_current)
-        )
-        state = amplitude * np.imag(turn * driven_voltage) + free_voltage
-        current = amplitude * np.imag(turn * driven_current) + free_current
-        cosine, sine = phase(angular(frequency), time)
-        source = amplitude * np.imag(turn * (cosine + 1j * sine)) + 0 * current
-
-        def across(element: str) -> Any:
-            w = loop.weights(element)
-            return w.capacitor_voltage * state + w.current * current + w.source * source
-
-        terminals, rate = loop.weights("capacitor"), across("current_rate")
-        a, b, _, _ = eq.matrix
-        return Waveforms(
-            np.broadcast_to(time, current.shape),
-            source,
-            current,
-            across("resistor"),
-            across("inductor"),
-            across("capacitor"),
-            rate,
-            terminals.capacitor_voltage * (a * state + b * current) + terminals.current * rate,
-        )
+        if self.either_polarity and np.any(self.capacitor_voltage):
+            raise InputError("capacitor_voltage", None, "waveforms need one polarity")
+        return waveforms(self, time, angle)

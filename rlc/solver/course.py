@@ -60,6 +60,17 @@ class Course:
     distance: States
     near_balance: tuple[NDArray[np.bool_], NDArray[np.bool_]]
 
+    @property
+    def free(self) -> States:
+        """What keeps the states from balance just after each knot, the better known way."""
+        _, near = self.near_balance
+        level = self.shape.level
+        voltage, current = (
+            np.where(near, apart, state - rest * level)
+            for apart, state, rest in zip(self.distance, self.states, balance(self.eq), strict=True)
+        )
+        return voltage, current
+
     def at(self, time: Array) -> tuple[Array, Array]:
         """Capacitor voltage and current at given times.
 

@@ -53,12 +53,15 @@ class Peak:
         The true value exceeds ``value`` by no more than this share of it [1].
     angle : Array
         Closing angle of the source at which it occurs [rad].
+    polarity : Array
+        Sign of the capacitor's voltage at closing, if either is possible: 1 as given, else -1.
     """
 
     value: Array
     time: Array
     gap: Array
     angle: Array
+    polarity: Array = 1.0  # type: ignore[assignment]
 
 
 def first_extremum(eq: Equation, value: Array, slope: Array) -> Array:

@@ -1,31 +1,26 @@
-r"""The largest value of a signal under a sine, over all time, with an upper bound.
+r"""The largest value of a signal over all time, with an upper bound.
 
 Branch and bound over intervals of time, for a batch of loops at once. An interval is dropped
 when what the signal can reach there is no more than the best value found; the rest is cut
-into four. Upper bounds on an interval of half width h around m, the smallest of:
+into four. Upper bounds on an interval of half width h around m, the smaller of:
 
-- Taylor: :math:`\max|y(m) \pm h\,y'(m)| + \tfrac12 h^2 \max|y''|`, the remainder from the
-  energy norm of the free motion, which never grows, or from its two decaying exponentials;
-- steady amplitude plus the free motion's envelope at the interval's start;
-- underdamped: the beat of source and ringing, which is slow where the two are close.
+- Taylor: :math:`\max|y(m) \pm h\,y'(m)| + \tfrac12 h^2 \max|y''|`;
+- what the held part and free motion come to at most (:mod:`rlc.solver.motion`).
 
-Bounds hold up to the rounding of double precision.
+Where the closing angle is to be found as well and its effect is no single wave, an interval is
+a rectangle of time and angle. Bounds hold up to the rounding of double precision.
 """
 
 from __future__ import annotations
 
-from dataclasses import fields
-from typing import Any
+from dataclasses import dataclass
+from typing import Any, NamedTuple
 
 import numpy as np
 from numpy.typing import NDArray
 
 from rlc.solver.equation import Equation, kernels
-from rlc.solver.peaks import Peak, Signal
-
-Array = NDArray[np.float64]
-Complex = NDArray[np.complex128]
-Index = NDArray[np.intp]
+from rlc.solver.motion import Array, Bounds, Index, Motion, Moved, take
 
 #: Relative gap between the value found and the proved upper bound.
 PROVED_GAP = 1e-9
@@ -33,298 +28,417 @@ PROVED_GAP = 1e-9
 _CELLS_AT_ONCE = 200_000
 # A loop of extreme quality rings through billions of periods; its search ends with a wider gap.
 _MOST_CELLS, _MOST_CELLS_PER_LOOP = 2_000_000, 20_000
-_EXPONENT_LIMIT = 300.0
-_GRID, _ZOOMS = np.linspace(-1.0, 1.0, 257), 5
+_POLISH_STEPS = 6
 
 
-def sine_peak(
-    eq: Equation,
-    angular_frequency: Array,
-    rotating: Signal,
-    fixed: Signal,
-    closing_angle: Array | None,
-) -> Peak:
-    r"""Largest magnitude under a sine over all time.
+@dataclass(frozen=True, eq=False)
+class Rows:
+    """What is searched: a row per loop, or per loop and line of its source.
+
+    Attributes
+    ----------
+    eq : Equation
+        Shape (n,).
+    parts : tuple of Motion
+        Signals whose magnitudes add up; turned by the closing angle if `turns` is given.
+    group : Array of int
+        Shape (n,), the loop that a row belongs to.
+    start, duration : Array
+        Shape (n,), since closing; a duration may be infinite [s].
+    quickest : Array
+        Shape (n,), the largest rate at which anything changes [1/s].
+    top : Array, optional
+        Shape (n,), what the held parts together never pass [V, A or A/s].
+    turns : tuple of int, optional
+        How many turns each part makes with one of the closing angle: the signal is the sum of
+        Im(exp(j k angle) y_k), and of real parts without a turn.
+    window : (Array, Array), optional
+        Shape (n,) each: limits of the closing angle, with `turns` [rad].
+    frame : Array, optional
+        Shape (n,), the source's angular frequency if every closing angle is possible, with
+        `turns`. The source's angle at the time is then searched in place of that at closing:
+        along a line on which it is constant late moments differ by free motion alone [rad/s].
+    """
+
+    eq: Equation
+    parts: tuple[Motion, ...]
+    group: Index
+    start: Array
+    duration: Array
+    quickest: Array
+    top: Array | None = None
+    turns: tuple[int, ...] = ()
+    window: tuple[Array, Array] | None = None
+    frame: Array | None = None
+
+
+@dataclass(eq=False)
+class Best:
+    """The best value of each loop so far; filled in by :func:`search`.
+
+    Attributes
+    ----------
+    value : Array
+        Shape (loops,) [V, A or A/s].
+    time : Array
+        Since closing; infinite where it is only approached [s].
+    gap : Array
+        The true value is higher by no more than this share [1].
+    angle : Array
+        Closing angle, if it was searched for as well [rad].
+    row : Array of int
+        Where it was found; -1 for a value known beforehand.
+    """
+
+    value: Array
+    time: Array
+    gap: Array
+    angle: Array
+    row: NDArray[np.intp]
+
+
+def known_before(value: Array, time: Array | None = None) -> Best:
+    """What is known before a search, such as the amplitude that is approached.
 
     Parameters
     ----------
-    eq : Equation
-        A batch of loops, shape (n,).
-    angular_frequency : Array
-        Of the source, shape (n,), more than zero [rad/s].
-    rotating : Signal
-        Complex response from rest to :math:`e^{j\omega t}` times the amplitude; the response
-        to the sine is its imaginary part after turning by the closing angle [V, A or A/s].
-    fixed : Signal
-        Response to the initial states alone; its steady part is zero [V, A or A/s].
-    closing_angle : Array or None
-        Shape (n,) [rad]; None for the angle that makes the peak largest.
+    value : Array
+        Shape (loops,) [V, A or A/s].
+    time : Array, optional
+        When it is reached; never if not given [s].
 
     Returns
     -------
-    Peak
-        Shape (n,); its gap is at most `PROVED_GAP` unless the search had to stop before.
-
-    Notes
-    -----
-    At one moment the largest :math:`|\Im(e^{j\varphi}Y) + y_0|` over all closing angles is
-    :math:`|Y| + |y_0|`, so the worst angle needs one search over time and no scan of angles.
-    A loop without losses never loses its free motion, which comes into step with the source
-    arbitrarily closely; its peak is the sum of their largest values, approached and not reached.
+    Best
     """
-    if closing_angle is None:
-        parts = [rotating, fixed]
-    else:
-        turn = np.exp(1j * closing_angle)
-        parts = [
-            Signal(
-                rotating.steady * turn,
-                np.imag(rotating.value * turn) + np.real(fixed.value),
-                np.imag(rotating.slope * turn) + np.real(fixed.slope),
-            )
-        ]
-    search = _Search(eq, angular_frequency, parts, projected=closing_angle is not None)
-    value, time, left = search.run(PROVED_GAP)
-    angle = search.angles(time) if closing_angle is None else closing_angle
-    return Peak(value, time, left, angle)
+    never = np.full(value.shape, np.inf) if time is None else time.copy()
+    zero = np.zeros(value.shape)
+    return Best(value.copy(), never, zero, zero.copy(), np.full(value.shape, -1))
 
 
-def _take(eq: Equation, which: Index) -> Equation:
-    def pick(value: object) -> object:
-        if isinstance(value, tuple):
-            return tuple(pick(item) for item in value)
-        return np.asarray(value)[which]
+class _Cells(NamedTuple):
+    """Intervals: row, middle and half width in time, the same in angle, upper bound."""
 
-    return Equation(**{f.name: pick(getattr(eq, f.name)) for f in fields(Equation)})  # type: ignore[arg-type]
+    which: Index
+    at: Array
+    half: Array
+    angle: Array
+    swing: Array
+    bound: Array
+
+    def pick(self, where: Any) -> _Cells:
+        return _Cells(*(part[where] for part in self))
 
 
-class _Part:
-    """One signal's constants, with what bounds its free motion."""
+def search(rows: Rows, best: Best, gap: float = PROVED_GAP) -> None:
+    """Raise the best values to the largest ones over all rows.
 
-    def __init__(self, eq: Equation, omega: Array, signal: Signal) -> None:
-        zero = np.zeros(omega.shape)
-        self.steady = signal.steady + zero
-        self.value, self.slope = signal.value + zero, signal.slope + zero
-        self.omega = omega
-        self.amplitude = np.abs(self.steady)
-        self.energy = np.hypot(np.abs(self.value), np.abs(self.slope) / eq.natural)
-        with np.errstate(all="ignore"):
-            root = np.where(eq.underdamped, 1j, 1.0) * eq.root[0]
-            first = np.where(eq.underdamped, -eq.damping + root, -eq.slow)
-            second = -eq.damping - root
-            # amplitudes of the two exponentials; infinite at critical damping
-            self.first = (self.slope - second * self.value) / (first - second)
-            self.second = (first * self.value - self.slope) / (first - second)
+    Parameters
+    ----------
+    rows : Rows
+        What is searched.
+    best : Best
+        What is known beforehand; changed in place. Its gap becomes `gap`, or wider where the
+        search had to stop before.
+    gap : float
+        Relative gap to be proved, more than zero [1].
+    """
+    _Search(rows, best).run(gap)
 
 
 class _Search:
-    def __init__(self, eq: Equation, omega: Array, parts: list[Signal], projected: bool) -> None:
-        self.eq, self.omega, self.projected = eq, omega, projected
-        self.parts = [_Part(eq, omega, part) for part in parts]
-        self.rate = eq.slowest
-        self.amplitude = np.sum([part.amplitude for part in self.parts], axis=0)
-        self.energy = np.sum([part.energy for part in self.parts], axis=0)
+    def __init__(self, rows: Rows, best: Best) -> None:
+        self.rows, self.best = rows, best
+        self.eq = rows.eq
+        zero = np.zeros(rows.group.size)
+        low, high = rows.window or (zero, zero)
+        self.angle, self.swing = (low + high) / 2, (high - low) / 2
+        self.energy = np.sum([part.energy for part in rows.parts], axis=0)
+        amplitude = np.sum([part.amplitude for part in rows.parts], axis=0)
+        self.top = amplitude if rows.top is None else np.minimum(amplitude, rows.top)
 
-    def run(self, gap: float) -> tuple[Array, Array, Array]:
-        """Values, times and the gaps that are left."""
-        every = np.arange(self.omega.size)
-        best, when = self.amplitude.copy(), np.full(self.omega.size, np.inf)
-        self._improve(every, np.zeros(every.size), best, when)
-        left = np.full(self.omega.size, gap)
-        undamped = self.eq.damping == 0
-        if undamped.any():
-            best[undamped] = self._never_decaying(np.flatnonzero(undamped))
-            when[undamped] = np.inf
-            left[undamped] = 0.0
-        which, middle, half = self._first_cells(best, gap, np.flatnonzero(~undamped))
-        bound = np.full(which.size, np.inf)
-        seen, most = 0, _MOST_CELLS + _MOST_CELLS_PER_LOOP * self.omega.size
-        while which.size:
-            live = bound > best[which] * (1 + gap)
-            which, middle, half, bound = which[live], middle[live], half[live], bound[live]
+    def run(self, gap: float) -> None:
+        rows, best = self.rows, self.best
+        every = np.arange(rows.group.size)
+        at_start = self._record(every, np.zeros(every.size), self.angle)
+        best.gap = np.maximum(best.gap, gap)
+        ends = np.flatnonzero(np.isfinite(rows.duration))
+        at_end = np.full(every.size, np.inf)
+        at_end[ends] = self._record(ends, rows.duration[ends], self.angle[ends])
+        cells = self._first_cells(gap, self._beyond_chord(np.maximum(at_start, at_end), gap))
+        seen, most = 0, _MOST_CELLS + _MOST_CELLS_PER_LOOP * best.value.size
+        while cells.which.size:
+            cells = cells.pick(cells.bound > best.value[rows.group[cells.which]] * (1 + gap))
             if seen > most:
-                anywhere = self.amplitude[which] + self.energy[which]
-                np.maximum.at(left, which, np.minimum(bound, anywhere) / best[which] - 1)
+                self._give_up(cells)
                 break
-            now = slice(max(0, which.size - _CELLS_AT_ONCE), None)
-            cells, at, width = which[now], middle[now], half[now]
-            seen += cells.size
-            top = self._bounds(cells, at, width, best, when)
-            keep = top > best[cells] * (1 + gap)
-            cut = width[keep, np.newaxis] / 4
-            children = (at[keep, np.newaxis] + cut * np.array([-3.0, -1.0, 1.0, 3.0])).ravel()
-            which = np.r_[which[: now.start], np.repeat(cells[keep], 4)]
-            middle = np.r_[middle[: now.start], children]
-            half = np.r_[half[: now.start], np.repeat(cut.ravel(), 4)]
-            bound = np.r_[bound[: now.start], np.repeat(top[keep], 4)]
-        self._polish(best, when)
-        return best, when, left
+            now = cells.pick(slice(max(0, cells.which.size - _CELLS_AT_ONCE), None))
+            later = cells.pick(slice(0, cells.which.size - now.which.size))
+            seen += now.which.size
+            children = self._cut(now, gap)
+            cells = _Cells(*(np.concatenate(pair) for pair in zip(later, children, strict=True)))
+        self._polish()
 
-    def _first_cells(self, best: Array, gap: float, loops: Index) -> tuple[Index, Array, Array]:
-        """Intervals that double in length until the free motion no longer matters."""
-        eq = _take(self.eq, loops)
-        unit = 1.0 / np.maximum(eq.natural, self.omega[loops])
-        floor = gap * np.maximum(best[loops], 1e-9 * self.energy[loops])
-        rate = self.rate[loops]
-        cells: list[tuple[Index, Array, Array]] = []
+    def _give_up(self, cells: _Cells) -> None:
+        best, group = self.best, self.rows.group[cells.which]
+        if cells.which.size:
+            anywhere = self.top[cells.which] + self.energy[cells.which]
+            top = np.minimum(cells.bound, anywhere) if not self._lines() else cells.bound
+            np.maximum.at(best.gap, group, top / best.value[group] - 1)
+
+    def _lines(self) -> bool:
+        return any(part.line is not None for part in self.rows.parts)
+
+    def _beyond_chord(self, ends: Array, gap: float) -> Index:
+        """Rows that may pass the larger of their two ends: |y| <= ends + h^2/8 max|y''|."""
+        rows = self.rows
+        short = rows.duration * rows.quickest < 1.0
+        if not short.any():
+            return np.arange(short.size)
+        which = np.flatnonzero(short)
+        eq, half = take(self.eq, which), rows.duration[which] / 2
+        moved = self._moved(which, half, eq)
+        bend = np.sum(
+            [
+                part.bounds(eq, which, half, half, each).bend
+                for part, each in zip(rows.parts, moved, strict=True)
+            ],
+            axis=0,
+        )
+        top = np.full(short.size, np.inf)
+        if self._turned:
+            return np.arange(short.size)
+        top[which] = ends[which] + half * half / 2 * bend
+        return np.flatnonzero(top > self.best.value[rows.group] * (1 + gap))
+
+    @property
+    def _turned(self) -> bool:
+        return bool(self.rows.turns)
+
+    def _first_cells(self, gap: float, which: Index) -> _Cells:
+        """Intervals that double in length until nothing but the source is left."""
+        rows, eq = self.rows, take(self.eq, which)
+        unit, duration = 1.0 / rows.quickest[which], rows.duration[which]
+        floor = gap * np.maximum(self.best.value[rows.group[which]], 1e-9 * self.energy[which])
+        rate = eq.slowest
+        lasting = any(part.lasting for part in rows.parts)
+        whole = np.isfinite(duration) & ((eq.damping == 0) | lasting)
+        found: list[tuple[Index, Array, Array]] = []
         for k in range(-1, 200):
             start, end = (0.0 * unit, unit) if k < 0 else (unit * 2.0**k, unit * 2.0 ** (k + 1))
-            with np.errstate(divide="ignore"):
+            end = np.minimum(end, duration)
+            with np.errstate(divide="ignore", invalid="ignore"):
                 memory = np.minimum(1.0 / eq.root[0], np.maximum(start, 1.0 / rate))
-            tail = np.zeros(loops.size)
-            for part in self.parts:
-                value, slope = np.abs(part.value[loops]), np.abs(part.slope[loops])
-                tail += value * (1 + rate * memory) + slope * memory
-            live = np.exp(-rate * start) * tail > floor
+                memory = np.where(rate > 0, memory, 0.0)
+            tail = np.sum([part.tail(which, start, memory, rate) for part in rows.parts], axis=0)
+            live = (start < duration) & ((tail > floor) | whole)
             if not live.any():
                 break
             half = (end - start) / 2
-            cells.append((loops[live], (start + half)[live], half[live]))
-        if not cells:
-            return loops[:0], unit[:0], unit[:0]
-        loop_column, middle, half_width = zip(*cells, strict=True)
-        return np.concatenate(loop_column), np.concatenate(middle), np.concatenate(half_width)
+            found.append((which[live], (start + half)[live], half[live]))
+        if not found:
+            return _Cells(which[:0], *(unit[:0] for _ in range(5)))
+        row, middle, half = (np.concatenate(part) for part in zip(*found, strict=True))
+        bound = np.full(row.size, np.inf)
+        return _Cells(row, middle, half, self.angle[row], self.swing[row], bound)
 
-    def _never_decaying(self, loops: Index) -> Array:
-        """Steady amplitude plus the largest that free motion of constant size comes to.
-
-        The parts swing together, so the largest of their sum is sought over one turn: on a
-        grid, then on ever finer ones around its best point.
-        """
-        rate = self.eq.natural[loops, np.newaxis]
-        best, width = np.zeros((loops.size, 1)), np.pi / 2
-        largest = np.zeros(loops.size)
-        for _ in range(_ZOOMS):
-            turn = best + width * _GRID
-            size = np.zeros(turn.shape)
-            with np.errstate(invalid="ignore"):
-                for part in self.parts:
-                    value, slope = part.value[loops, np.newaxis], part.slope[loops, np.newaxis]
-                    size += np.abs(value * np.cos(turn) + slope / rate * np.sin(turn))
-            at = size.argmax(axis=-1)[:, np.newaxis]
-            best = np.take_along_axis(turn, at, axis=-1)
-            largest = np.take_along_axis(size, at, axis=-1)[:, 0]
-            width *= 2 * (_GRID[1] - _GRID[0])
-        total: Array = self.amplitude[loops] + largest
-        return np.where(np.isfinite(total), total, np.inf)
-
-    def _motion(self, which: Index, time: Array) -> list[tuple[Any, Any, Any, Any, Any]]:
-        """Per part: value, slope, curvature, and the free part's value and slope."""
-        eq = _take(self.eq, which)
-        omega = self.omega[which]
+    def _moved(self, which: Index, time: Array, eq: Equation) -> list[Moved]:
         kernel = kernels(eq, time)
-        turn = np.exp(1j * omega * time)
-        rest = kernel.regular - eq.gamma * kernel.s
-        stiffness = eq.natural_squared[0]
-        motion = []
-        for part in self.parts:
-            value, slope = part.value[which], part.slope[which]
-            free = value * kernel.regular + slope * kernel.s
-            speed = slope * rest - stiffness * value * kernel.s
-            steady = part.steady[which] * turn
-            held: Any = (steady, 1j * omega * steady, -omega * omega * steady)
-            if self.projected:
-                held = (np.imag(held[0]), np.imag(held[1]), np.imag(held[2]))
-            curve = -eq.gamma * speed - stiffness * free
-            motion.append((held[0] + free, held[1] + speed, held[2] + curve, free, speed))
-        return motion
+        return [part.at(eq, kernel, which, time) for part in self.rows.parts]
 
-    def _improve(self, which: Index, time: Array, best: Array, when: Array) -> None:
-        size = np.sum([np.abs(m[0]) for m in self._motion(which, time)], axis=0)
-        self._record(which, time, size, best, when)
+    def _size(self, which: Index, time: Array, angle: Array, moved: list[Moved]) -> Array:
+        """Magnitude of the signal, at an angle as it is searched."""
+        if not self._turned:
+            return _sum(moved)
+        return np.abs(self._together(self._framed(which, time, moved), angle)[0])
 
-    @staticmethod
-    def _record(which: Index, time: Array, size: Array, best: Array, when: Array) -> None:
-        better = size > best[which]
+    def _record(self, which: Index, time: Array, angle: Array) -> Array:
+        size = self._size(which, time, angle, self._moved(which, time, take(self.eq, which)))
+        self._keep(which, time, angle, size)
+        return size
+
+    def _keep(self, which: Index, time: Array, angle: Array, size: Array) -> None:
+        best, rows = self.best, self.rows
+        group = rows.group[which]
+        better = size > best.value[group]
         if better.any():
-            which, time, size = which[better], time[better], size[better]
-            np.maximum.at(best, which, size)
-            top = size >= best[which]
-            when[which[top]] = time[top]
+            which, time, angle, size = which[better], time[better], angle[better], size[better]
+            group = group[better]
+            np.maximum.at(best.value, group, size)
+            top = size >= best.value[group]
+            group, which, time, angle = group[top], which[top], time[top], angle[top]
+            if rows.frame is not None:
+                angle = angle - rows.frame[which] * time
+            best.time[group] = rows.start[which] + time
+            best.angle[group], best.row[group] = angle, which
 
-    def _bounds(self, which: Index, at: Array, half: Array, best: Array, when: Array) -> Array:
-        """Upper bounds on intervals; the values at their middles are recorded on the way."""
-        eq = _take(self.eq, which)
-        start = at - half
-        size, top = np.zeros(which.size), np.zeros(which.size)
-        before, after, bend = np.zeros(which.size), np.zeros(which.size), np.zeros(which.size)
-        omega = self.omega[which]
-        growth = np.exp(np.minimum(eq.gamma * half, _EXPONENT_LIMIT))
-        with np.errstate(all="ignore"):
-            slow = np.exp(-eq.slow * start)
-            fast = np.exp(-eq.fast * start)
-        for part, (value, slope, _, free, speed) in zip(
-            self.parts, self._motion(which, at), strict=True
-        ):
-            magnitude = np.abs(value)
-            size += magnitude
-            energy = np.hypot(np.abs(free), np.abs(speed) / eq.natural) * growth
-            energy = np.minimum(energy, part.energy[which])
-            curvature = eq.natural * (eq.gamma + eq.natural) * energy
-            reach = energy
-            with np.errstate(all="ignore"):
-                first, second = np.abs(part.first[which]), np.abs(part.second[which])
-                two = first * slow + second * fast
-                bent = first * slow * eq.slow**2 + second * fast * eq.fast**2
-                over = ~eq.underdamped
-                reach = np.where(over, np.fmin(reach, two), reach)
-                curvature = np.where(over, np.fmin(curvature, bent), curvature)
-            curvature = curvature + omega * omega * part.amplitude[which]
-            before += np.abs(value - half * slope)
-            after += np.abs(value + half * slope)
-            bend += curvature
-            top += np.fmin(part.amplitude[which] + reach, self._beat(part, eq, which, at, half))
-        self._record(which, at, size, best, when)
-        # the parts' slopes cancel at the top of their sum, so their lines are taken together
-        return np.fmin(top, np.maximum(before, after) + 0.5 * half * half * bend)
+    def _framed(self, which: Index, time: Array, moved: list[Moved]) -> list[Moved]:
+        """The parts as seen while turning with the source."""
+        rows = self.rows
+        if rows.frame is None:
+            return moved
+        seen = []
+        for k, part, each in zip(rows.turns, rows.parts, moved, strict=True):
+            if not k:
+                seen.append(each)
+                continue
+            rate = 1j * k * rows.frame[which]
+            back = np.exp(-rate * time)
+            (term,) = part.terms
+            curve = each.bend - rate * rate * (each.value - each.free)
+            seen.append(
+                Moved(
+                    term.phasor[which] + back * each.free,
+                    back * (each.speed - rate * each.free),
+                    back * (curve - 2 * rate * each.speed + rate * rate * each.free),
+                    each.free,
+                    each.speed,
+                )
+            )
+        return seen
 
-    def _beat(self, part: _Part, eq: Equation, which: Index, at: Array, half: Array) -> Array:
-        """Bound for a ringing loop: |S + A exp((s1 - j omega) t)| turns slowly near resonance."""
-        with np.errstate(all="ignore"):
-            gap_rate = -eq.damping + 1j * (eq.root[0] - self.omega[which])
-            first: Any = part.first[which]
-            together: Any
-            if self.projected:
-                # a real free part is twice the real part of its first exponential
-                together, apart = 2j * first, np.zeros(which.size)
-            else:
-                together = first
-                apart = np.abs(part.second[which]) * np.exp(-eq.damping * (at - half))
-            drift = together * np.exp(gap_rate * at)
-            spread = np.expm1(np.minimum(np.abs(gap_rate) * half, _EXPONENT_LIMIT))
-            bound = np.abs(part.steady[which] + drift) + np.abs(drift) * spread + apart
-            return np.where(eq.underdamped, bound, np.inf)
+    def _framed_bounds(self, which: Index, bounds: list[Bounds]) -> list[Bounds]:
+        """The bounds as seen while turning with the source: only free motion moves."""
+        rows = self.rows
+        if rows.frame is None:
+            return bounds
+        seen = []
+        for k, each in zip(rows.turns, bounds, strict=True):
+            rate = k * rows.frame[which]
+            reach, speed, bend = each.free
+            turning = speed + rate * reach, bend + 2 * rate * speed + rate * rate * reach
+            seen.append(Bounds(each.value, *turning, each.free))
+        return seen
 
-    def _polish(self, best: Array, when: Array) -> None:
-        """Newton's method on the magnitude's slope, kept only where it raises the value."""
-        for _ in range(6):
-            which = np.flatnonzero(np.isfinite(when) & (when > 0))
+    def _together(self, moved: list[Moved], angle: Array) -> tuple[Array, ...]:
+        """At an angle: value, slopes in time and angle, second derivatives."""
+        value, slope, bend, aslant, mixed, round_ = (np.zeros(angle.size) for _ in range(6))
+        for k, part in zip(self.rows.turns, moved, strict=True):
+            if not k:
+                value, slope, bend = value + part.value, slope + part.slope, bend + part.bend
+                continue
+            turn = np.exp(1j * k * angle)
+            wave, pace = turn * part.value, turn * part.slope
+            value, slope = value + wave.imag, slope + pace.imag
+            bend = bend + (turn * part.bend).imag
+            aslant, mixed = aslant + k * wave.real, mixed + k * pace.real
+            round_ = round_ - k * k * wave.imag
+        return value, slope, aslant, bend, mixed, round_
+
+    def _cut(self, cells: _Cells, gap: float) -> _Cells:
+        """Intervals in quarters, along time or angle, those left out that hold nothing more."""
+        top, in_time, in_angle = self._bound(cells)
+        keep = top > self.best.value[self.rows.group[cells.which]] * (1 + gap)
+        kept = cells.pick(keep)
+        across = (in_angle > in_time)[keep]
+        steps = np.array([-0.75, -0.25, 0.25, 0.75])
+        along, aside = (
+            np.where(side, 0.0, width)[:, np.newaxis] * steps
+            for side, width in ((across, kept.half), (~across, kept.swing))
+        )
+        return _Cells(
+            np.repeat(kept.which, 4),
+            (kept.at[:, np.newaxis] + along).ravel(),
+            np.repeat(np.where(across, kept.half, kept.half / 4), 4),
+            (kept.angle[:, np.newaxis] + aside).ravel(),
+            np.repeat(np.where(across, kept.swing / 4, kept.swing), 4),
+            np.repeat(top[keep], 4),
+        )
+
+    def _bound(self, cells: _Cells) -> tuple[Array, Array, Array]:
+        """Upper bounds, and what time and angle add to them; middles are recorded on the way."""
+        which, at, half, angle, swing, _ = cells
+        eq = take(self.eq, which)
+        moved = self._moved(which, at, eq)
+        bounds = [
+            part.bounds(eq, which, at, half, each)
+            for part, each in zip(self.rows.parts, moved, strict=True)
+        ]
+        anywhere = np.sum([each.value for each in bounds], axis=0)
+        if not self._lines():
+            reach = np.sum([each.free[0] for each in bounds], axis=0)
+            anywhere = np.fmin(anywhere, self.top[which] + reach)
+        in_angle = np.zeros(which.size)
+        if self._turned:
+            value, slope, aslant, *_ = self._together(self._framed(which, at, moved), angle)
+            size, bounds = np.abs(value), self._framed_bounds(which, bounds)
+            pairs = list(zip(self.rows.turns, bounds, strict=True))
+            mixed = np.sum([k * each.slope for k, each in pairs], axis=0)
+            round_ = np.sum([k * k * each.value for k, each in pairs], axis=0)
+            bend = np.sum([each.bend for each in bounds], axis=0)
+            in_time = half * (np.abs(slope) + half / 2 * bend)
+            in_angle = swing * (np.abs(aslant) + swing / 2 * round_)
+            taylor = size + in_time + in_angle + half * swing * mixed
+        else:
+            size = _sum(moved)
+            # the parts' slopes cancel at the top of their sum, so their lines are taken together
+            before, after = (
+                np.sum([np.abs(each.value + side * each.slope) for each in moved], axis=0)
+                for side in (-half, half)
+            )
+            in_time = half * half / 2 * np.sum([each.bend for each in bounds], axis=0)
+            taylor = np.maximum(before, after) + in_time
+        self._keep(which, at, angle, size)
+        return np.fmin(anywhere, taylor), in_time, in_angle
+
+    def _polish(self) -> None:
+        """Newton's method on the slopes, kept only where it raises the value."""
+        best, rows = self.best, self.rows
+        for _ in range(_POLISH_STEPS):
+            loops = np.flatnonzero((best.row >= 0) & np.isfinite(best.time))
+            which = best.row[loops]
+            time, angle = best.time[loops] - rows.start[which], best.angle[loops]
+            if rows.frame is not None:
+                angle = angle + rows.frame[which] * time
+            loops, which, time, angle = (
+                part[(time > 0) & (time < rows.duration[which])]
+                for part in (loops, which, time, angle)
+            )
             if not which.size:
                 return
-            time = when[which]
-            slope, bend = np.zeros(which.size), np.zeros(which.size)
-            with np.errstate(all="ignore"):
-                for value, speed, curve, _, _ in self._motion(which, time):
-                    size = np.abs(value)
-                    along = np.where(size > 0, np.real(np.conj(value) * speed) / size, 0.0)
-                    turn = np.abs(speed) ** 2 + np.real(np.conj(value) * curve)
-                    slope += along
-                    bend += np.where(size > 0, (turn - along**2) / size, 0.0)
-                step = -slope / bend
-            good = np.isfinite(step) & (bend < 0) & (time + step > 0)
-            which, time = which[good], (time + step)[good]
-            size = np.sum([np.abs(m[0]) for m in self._motion(which, time)], axis=0)
+            moved = self._moved(which, time, take(self.eq, which))
+            step, turned = self._newton(self._framed(which, time, moved), which, angle)
+            later = time + step
+            good = np.isfinite(later) & (later > 0) & (later <= rows.duration[which])
+            loops, which, later, turned = (part[good] for part in (loops, which, later, turned))
+            moved = self._moved(which, later, take(self.eq, which))
+            size = self._size(which, later, turned, moved)
             # the value is flat to rounding around the top; the time still gains digits
-            keep = size >= best[which] * (1 - 1e-15)
-            when[which[keep]] = time[keep]
-            best[which[keep]] = np.maximum(best[which[keep]], size[keep])
+            keep = size >= best.value[loops] * (1 - 1e-15)
+            loops = loops[keep]
+            best.time[loops] = (rows.start[which] + later)[keep]
+            if rows.frame is not None:
+                turned = turned - rows.frame[which] * later
+            best.angle[loops] = turned[keep]
+            best.value[loops] = np.maximum(best.value[loops], size[keep])
 
-    def angles(self, time: Array) -> Array:
-        """Closing angle at which the peak occurs, from 0 to 2 pi; half a turn is immaterial
-        from rest [rad]."""
-        at = np.where(np.isfinite(time), time, 0.0)
-        motion = self._motion(np.arange(time.size), at)
-        rotating = np.where(np.isfinite(time), motion[0][0], self.parts[0].steady)
-        against = np.where(np.real(motion[1][0]) < 0, -np.pi / 2, np.pi / 2)
-        angle: Array = np.mod(against - np.angle(rotating), 2 * np.pi)
-        return angle
+    def _newton(self, moved: list[Moved], which: Index, angle: Array) -> tuple[Array, Array]:
+        """The step in time, and the next closing angle; not a number away from a top."""
+        with np.errstate(all="ignore"):
+            if self._turned:
+                value, slope, aslant, bend, mixed, round_ = self._together(moved, angle)
+                sign = np.sign(value)
+                determinant = bend * round_ - mixed * mixed
+                low, high = self.angle - self.swing, self.angle + self.swing
+                if self.rows.frame is not None:
+                    low, high = low - np.inf, high + np.inf
+                free = (angle > low[which]) & (angle < high[which]) & (determinant > 0)
+                both = (mixed * aslant - round_ * slope) / determinant
+                step = np.where(free, both, -slope / bend)
+                turned = np.where(free, (mixed * slope - bend * aslant) / determinant, 0.0)
+                top = sign * bend < 0
+                ahead = np.clip(angle + turned, low[which], high[which])
+                return np.where(top, step, np.nan), ahead
+            slope, bend = np.zeros(which.size), np.zeros(which.size)
+            for each in moved:
+                size = np.abs(each.value)
+                along = np.where(size > 0, np.real(np.conj(each.value) * each.slope) / size, 0.0)
+                turn = np.abs(each.slope) ** 2 + np.real(np.conj(each.value) * each.bend)
+                slope += along
+                bend += np.where(size > 0, (turn - along**2) / size, 0.0)
+            return np.where(bend < 0, -slope / bend, np.nan), angle
+
+
+def _sum(moved: list[Moved]) -> Any:
+    """The largest that the parts come to when their magnitudes add up."""
+    return np.sum([np.abs(each.value) for each in moved], axis=0)

@@ -1,0 +1,321 @@
+"""From a switch-on to the rows that are searched for its peaks, and back."""
+
+from __future__ import annotations
+
+from dataclasses import replace
+from typing import TYPE_CHECKING, Any, NamedTuple
+
+import numpy as np
+from numpy.typing import NDArray
+
+from rlc.solver.equation import Equation, angular, equation_of, kernels
+from rlc.solver.lines import balance, final_lag
+from rlc.solver.motion import Index, Motion, Term, take
+from rlc.solver.peaks import Peak, Signal, constant_source_peak
+from rlc.solver.search import Best, Rows, known_before, search
+from rlc.solver.shapes import Surge
+from rlc.solver.source import ANY_ANGLE, Window
+
+if TYPE_CHECKING:
+    from rlc.solver.case import Case
+
+Array = NDArray[np.float64]
+
+_QUARTER_TURN = np.pi / 2
+# Nearer to a root of the loop a rate of the surge is moved by so much: the two exponentials'
+# amplitudes would be known to less than the gap that the answer then states.
+_APART, _APART_GAP = 1e-7, 1e-6
+
+
+def find_peaks(case: Case, elements: tuple[str, ...]) -> dict[str, Peak]:
+    """Largest magnitudes over all time, of several signals at once.
+
+    Parameters
+    ----------
+    case : Case
+        One switch-on or a batch.
+    elements : tuple of str
+        As for :meth:`rlc.solver.loop.Loop.weights`.
+
+    Returns
+    -------
+    dict of str to Peak
+        Each with the batch's shape.
+    """
+    source = case.source
+    whole_turn = source.worst_angle and not source.orders and source.window in (None, ANY_ANGLE)
+    if case.either_polarity and np.any(case.capacitor_voltage) and not whole_turn:
+        # at the worst of all angles the other polarity is the other half of the turn
+        one = replace(case, either_polarity=False)
+        other = replace(one, capacitor_voltage=-case.capacitor_voltage)
+        first, second = find_peaks(one, elements), find_peaks(other, elements)
+        return {name: _worse(first[name], second[name]) for name in elements}
+    if source.shape is not None:
+        carried = _surge_peaks if isinstance(source.shape, Surge) else _course_peaks
+        return {element: carried(case, element) for element in elements}
+    if not source.alternating:
+        return {
+            element: constant_source_peak(case.equation, case.constant_signal(element))
+            for element in elements
+        }
+    return _alternating_peaks(case, elements)
+
+
+def _worse(one: Peak, other: Peak) -> Peak:
+    """The larger of two peaks, loop by loop; the second one is that of the other polarity."""
+    second = other.value > one.value
+    value, time, gap, angle = (
+        np.where(second, b, a)
+        for a, b in (
+            (one.value, other.value),
+            (one.time, other.time),
+            (one.gap, other.gap),
+            (one.angle, other.angle),
+        )
+    )
+    return Peak(value, time, gap, angle, np.where(second, -1.0, 1.0))
+
+
+def _alternating_peaks(case: Case, elements: tuple[str, ...]) -> dict[str, Peak]:
+    """All signals and loops in one search, a row each."""
+    shape = (len(elements), *case.shape)
+    source = case.source
+
+    def flat(value: Any) -> Any:
+        return np.broadcast_to(value, shape).reshape(-1)
+
+    def stacked(signals: Any) -> Signal:
+        together = (
+            np.stack([np.broadcast_to(part, case.shape) for part in parts])
+            for parts in zip(*signals, strict=True)
+        )
+        return Signal(*(flat(part) for part in together))
+
+    rows = _Waves(
+        equation_of(case.loop.map(flat)),
+        flat(angular(source.frequency)[0]),
+        stacked([case.fixed_signal(element) for element in elements]),
+        [
+            stacked(each)
+            for each in zip(*(case.rotating_signals(name) for name in elements), strict=True)
+        ],
+        tuple(order.number for order in source.every_order),
+        None if source.closing_angle is None else flat(source.closing_angle),
+        source.window or ANY_ANGLE,
+    )
+    best = rows.highest()
+    columns = (part.reshape(shape) for part in (best.value, best.time, best.gap, best.angle))
+    return {name: Peak(*each) for name, *each in zip(elements, *columns, strict=True)}
+
+
+class _Waves(NamedTuple):
+    """Rows under a sine and its harmonics: what the search is built from."""
+
+    eq: Equation
+    omega: Array
+    fixed: Signal
+    waves: list[Signal]
+    numbers: tuple[int, ...]
+    angle: Array | None
+    window: Window
+
+    def highest(self) -> Best:
+        """Search the rows that decay; those that never do have a largest value of their own."""
+        top = self._steady_top()
+        best = known_before(top)
+        undamped = self.eq.damping == 0
+        lossless, lossy = np.flatnonzero(undamped), np.flatnonzero(~undamped)
+        if lossless.size:
+            # free motion comes into step with the source arbitrarily closely
+            free = known_before(np.zeros(top.size))
+            bounded = lossless[np.isfinite(top[lossless])]
+            period = 2 * np.pi / self.eq.natural[bounded]
+            search(self._rows(bounded, period, top, held=False), free)
+            best.value[bounded] += free.value[bounded]
+            best.angle[bounded], best.gap[bounded] = free.angle[bounded], free.gap[bounded]
+        if lossy.size:
+            search(self._rows(lossy, np.full(lossy.size, np.inf), top), best)
+        if self.angle is not None:
+            best.angle = self.angle
+        elif not self._turned:
+            best.angle = self._worst_angles(best)
+        elif self._whole_turn:
+            best.angle = np.mod(best.angle, ANY_ANGLE.high)
+        return best
+
+    @property
+    def _turned(self) -> bool:
+        """Whether the angle's effect is no single wave, or the angle may not be any."""
+        return self.angle is None and (len(self.waves) > 1 or not self._whole_turn)
+
+    @property
+    def _whole_turn(self) -> bool:
+        return self.window.high - self.window.low >= ANY_ANGLE.high
+
+    def _steady_top(self) -> Array:
+        """Largest magnitude of the steady state, the same at any closing angle."""
+        sizes = [np.abs(each.steady) for each in self.waves]
+        total: Array = np.sum(sizes, axis=0)
+        which = np.flatnonzero(np.isfinite(total))
+        if len(sizes) == 1 or not which.size:
+            return total
+        eq, still = take(self.eq, which), Signal(0.0, 0.0, 0.0)
+        steady = Motion(eq, still, self._terms(which, 1.0), real=True)
+        best = known_before(np.zeros(total.size))
+        slowest, fastest = self.omega[which], max(self.numbers) * self.omega[which]
+        period = 2 * np.pi / slowest
+        search(Rows(eq, (steady,), which, 0.0 * period, period, fastest), best)
+        total[which] = best.value[which]
+        return total
+
+    def _terms(self, which: Index, turn: Any) -> list[Term]:
+        """The steady waves as real parts, each turned by its share of the closing angle."""
+        return [
+            Term(-1j * turn**k * each.steady[which], 1j * k * self.omega[which])
+            for k, each in zip(self.numbers, self.waves, strict=True)
+        ]
+
+    def _rows(self, which: Index, duration: Array, top: Array, held: bool = True) -> Rows:
+        eq = take(self.eq, which)
+        fixed = Signal(*(np.real(np.broadcast_to(each, top.shape))[which] for each in self.fixed))
+        parts, turns, limits, frame = [], (), None, None
+        if self.angle is not None:
+            turn = np.exp(1j * self.angle[which])
+            value, slope = (
+                np.real(start)
+                + np.sum(
+                    [
+                        np.imag(turn**k * getattr(each, name)[which])
+                        for k, each in zip(self.numbers, self.waves, strict=True)
+                    ],
+                    axis=0,
+                )
+                for name, start in (("value", fixed.value), ("slope", fixed.slope))
+            )
+            terms = self._terms(which, turn) if held else []
+            free = Signal(0.0, value, slope)
+            parts = [Motion(eq, free, terms, real=True)]
+        else:
+            for k, each in zip(self.numbers, self.waves, strict=True):
+                free = Signal(0.0, each.value[which], each.slope[which])
+                term = Term(each.steady[which], 1j * k * self.omega[which])
+                parts.append(Motion(eq, free, [term] if held else [], real=False))
+            parts.append(Motion(eq, fixed, real=True))
+            if self._turned:
+                zero = np.zeros(which.size)
+                turns = (*self.numbers, 0)
+                limits = (self.window.low + zero, self.window.high + zero)
+                if held and self._whole_turn:
+                    frame = self.omega[which]
+        quickest = np.maximum(eq.natural, max(self.numbers) * self.omega[which] * held)
+        start = np.zeros(which.size)
+        held_top = top[which] if held else None
+        return Rows(
+            eq, tuple(parts), which, start, duration, quickest, held_top, turns, limits, frame
+        )
+
+    def _worst_angles(self, best: Best) -> Array:
+        """Closing angle at which the rotating part stands across, on the initial states' side."""
+        every = np.arange(best.value.size)
+        reached = np.isfinite(best.time)
+        at = np.where(reached, best.time, 0.0)
+        rows = self._rows(every, at, best.value)
+        kernel = kernels(self.eq, at)
+        moved = [part.at(self.eq, kernel, every, at) for part in rows.parts]
+        rotating = np.where(reached, moved[0].value, self.waves[0].steady)
+        against = np.where(np.real(moved[1].value) < 0, -_QUARTER_TURN, _QUARTER_TURN)
+        angle: Array = np.mod(against - np.angle(rotating), 2 * np.pi)
+        return angle
+
+
+def _course_peaks(case: Case, element: str) -> Peak:
+    """Under straight lines of the source: the last line in closed form, the others searched."""
+    course = case.course
+    shape, w = course.shape, case.loop.weights(element)
+    batch = case.shape
+    eq = equation_of(case.loop.map(lambda part: np.broadcast_to(part, batch).ravel()))
+
+    def column(value: Any) -> Array:
+        return np.broadcast_to(value, batch).ravel()[:, np.newaxis]
+
+    rest, lag = balance(eq), final_lag(eq)
+    level, slope = shape.level, shape.slope
+    # what is free on each line: the distance from balance, less the lag behind a ramp
+    voltage, current = (
+        part.reshape(-1, level.size) - column(behind) * slope
+        for part, behind in zip(course.free, lag, strict=True)
+    )
+    a, b, c, d = (column(entry) for entry in eq.matrix)
+    weight_v, weight_i, weight_s = (column(part) for part in w)
+    at_rest = weight_v * column(rest[0]) + weight_i * column(rest[1]) + weight_s
+    behind = weight_v * column(lag[0]) + weight_i * column(lag[1])
+    start = at_rest * level + behind * slope
+    free = weight_v * voltage + weight_i * current
+    pace = weight_v * (a * voltage + b * current) + weight_i * (c * voltage + d * current)
+    loops, lines = free.shape
+    if case.repeats:
+        best = known_before(np.zeros(loops))
+        ends = np.append(shape.start[1:], case.course_end)
+    else:
+        last = Signal(start[:, -1], free[:, -1], pace[:, -1])
+        final = constant_source_peak(eq, last)
+        best = known_before(final.value, shape.start[-1] + final.time)
+        ends, lines = shape.start[1:], lines - 1
+    group = np.repeat(np.arange(loops), lines)
+    row_eq = take(eq, group)
+    motion = Motion(
+        row_eq,
+        Signal(0.0, free[:, :lines].ravel(), pace[:, :lines].ravel()),
+        line=(start[:, :lines].ravel(), (at_rest * slope)[:, :lines].ravel()),
+        real=True,
+    )
+    begin = np.tile(shape.start[:lines], loops)
+    width = np.tile((ends - shape.start[:lines]), loops)
+    search(Rows(row_eq, (motion,), group, begin, width, row_eq.natural), best)
+    if case.repeats:
+        # reached in the last period only: that of the steady train
+        best.time[best.time > case.course_end - case.repeats] = np.inf
+    value, time, gap = (part.reshape(batch) for part in (best.value, best.time, best.gap))
+    return Peak(value, time, gap, np.full(batch, _QUARTER_TURN))
+
+
+def _surge_peaks(case: Case, element: str) -> Peak:
+    """Under two exponentials, by partial fractions."""
+    surge = case.source.shape
+    assert isinstance(surge, Surge)
+    batch, w = case.shape, case.loop.weights(element)
+    eq = equation_of(case.loop.map(lambda part: np.broadcast_to(part, batch).ravel()))
+
+    def flat(value: Any) -> Array:
+        return np.broadcast_to(value, batch).ravel()
+
+    weight_v, weight_i, weight_s = (flat(part) for part in w)
+    a, b, c, d = eq.matrix
+    voltage, current = flat(case.capacitor_voltage), flat(case.initial_current)
+    moved, terms = np.zeros(voltage.size, bool), []
+    for size, rate in ((surge.scale, surge.slow), (-surge.scale, surge.fast)):
+        pace = np.full(voltage.size, rate)
+        for root in (eq.slow, eq.fast):
+            near = ~eq.underdamped & (np.abs(pace - root) < _APART * root)
+            moved |= near
+            pace = np.where(near, root * (1 + _APART), pace)
+        below = eq.natural_squared[0] - pace * (eq.gamma - pace)
+        held_v = size * eq.matrix[1] * eq.source_rate / below
+        held_i = size * (-pace - a) * eq.source_rate / below
+        terms.append(Term(weight_v * held_v + weight_i * held_i + weight_s * size, -pace))
+        voltage, current = voltage - held_v, current - held_i
+    free = Signal(
+        0.0,
+        weight_v * voltage + weight_i * current,
+        weight_v * (a * voltage + b * current) + weight_i * (c * voltage + d * current),
+    )
+    # without losses the ringing stays when the surge has gone
+    motion = Motion(eq, free, terms, real=True)
+    best = known_before(np.where(eq.damping == 0, motion.energy, 0.0))
+    every = np.arange(voltage.size)
+    quickest = np.maximum(eq.natural, surge.fast)
+    forever = np.full(every.size, np.inf)
+    search(Rows(eq, (motion,), every, np.zeros(every.size), forever, quickest), best)
+    gap = np.where(moved, np.maximum(best.gap, _APART_GAP), best.gap)
+    value, time, gap = (part.reshape(batch) for part in (best.value, best.time, gap))
+    return Peak(value, time, gap, np.full(batch, _QUARTER_TURN))

@@ -1,0 +1,137 @@
+"""The switch-on in time: every voltage and the current, at given moments."""
+
+from __future__ import annotations
+
+from dataclasses import dataclass
+from typing import TYPE_CHECKING, Any
+
+import numpy as np
+from numpy.typing import NDArray
+
+from rlc.solver.driven import driven_from_rest
+from rlc.solver.equation import angular, equation_of, free_response, kernels, phase
+from rlc.solver.shapes import Surge
+from rlc.solver.surging import surge_from_rest
+
+if TYPE_CHECKING:
+    from rlc.solver.case import Case
+
+Array = NDArray[np.float64]
+
+
+@dataclass(frozen=True, eq=False)
+class Waveforms:
+    """The switch-on in time; all arrays share one shape, times on the last axis.
+
+    The last two are slopes; they follow from the states, without any difference in time.
+
+    Attributes
+    ----------
+    time : Array
+        Since closing [s].
+    source : Array
+        The source's inner voltage [V].
+    current : Array
+        Of the loop [A].
+    resistor_voltage, inductor_voltage, capacitor_voltage : Array
+        Across the parts' terminals [V].
+    current_rate : Array
+        Slope of the current [A/s].
+    capacitor_voltage_rate : Array
+        Slope of the capacitor's terminal voltage [V/s].
+    """
+
+    time: Array
+    source: Array
+    current: Array
+    resistor_voltage: Array
+    inductor_voltage: Array
+    capacitor_voltage: Array
+    current_rate: Array
+    capacitor_voltage_rate: Array
+
+
+def column(value: Any) -> Array:
+    """An array with one more axis at the end, to meet an axis of times."""
+    return np.asarray(value, dtype=np.float64)[..., np.newaxis]
+
+
+def states(case: Case, time: Array, closing_angle: Any) -> tuple[Array, Array, Array]:
+    """Source voltage, capacitor voltage and current at given times.
+
+    Parameters
+    ----------
+    case : Case
+        One switch-on or a batch.
+    time : Array
+        Shape (n,), zero or more [s].
+    closing_angle : array_like
+        Of an alternating source; else not read [rad].
+
+    Returns
+    -------
+    source, capacitor_voltage, current : Array
+        Shape of the batch, then (n,); the capacitor's behind its series resistance [V], [V], [A].
+    """
+    source, shape = case.source, case.source.shape
+    if case.lines is not None:
+        return case.lines.at(time), *case.course.at(time)
+    eq = equation_of(case.loop.column())
+    free_voltage, free_current = free_response(
+        eq, kernels(eq, time), column(case.capacitor_voltage), column(case.initial_current)
+    )
+    if isinstance(shape, Surge):
+        voltage, current = surge_from_rest(eq, shape, time)
+        return shape.at(time), voltage + free_voltage, current + free_current
+    amplitude, frequency = column(source.amplitude), column(source.frequency)
+    turn = np.exp(1j * column(closing_angle))
+    level, voltage, current = 0.0 * free_voltage, free_voltage, free_current
+    for order in source.every_order:
+        share = amplitude * order.share
+        turned = turn**order.number * np.exp(1j * order.phase)
+        own = order.number * frequency
+        driven_voltage, driven_current = driven_from_rest(eq, own, time)
+        voltage = voltage + share * np.imag(turned * driven_voltage)
+        current = current + share * np.imag(turned * driven_current)
+        cosine, sine = phase(angular(own), time)
+        level = level + share * np.imag(turned * (cosine + 1j * sine))
+    return level, voltage, current
+
+
+def waveforms(case: Case, time: Array, closing_angle: Any) -> Waveforms:
+    """Every voltage and the current at given times.
+
+    Parameters
+    ----------
+    case : Case
+        One switch-on or a batch.
+    time : Array
+        Shape (n,), zero or more [s].
+    closing_angle : array_like
+        Of an alternating source; else not read [rad].
+
+    Returns
+    -------
+    Waveforms
+        Shape of the batch, then (n,).
+    """
+    source, state, current = states(case, time, closing_angle)
+    source = source + 0.0 * current
+    loop = case.loop.column()
+    a, b, _, _ = loop.state_matrix()
+
+    def across(element: str) -> Any:
+        w = loop.weights(element)
+        return w.capacitor_voltage * state + w.current * current + w.source * source
+
+    terminals, rate = loop.weights("capacitor"), across("current_rate")
+    return Waveforms(
+        np.broadcast_to(time, current.shape),
+        source,
+        current,
+        across("resistor"),
+        across("inductor"),
+        across("capacitor"),
+        rate,
+        terminals.capacitor_voltage * (a * state + b * current) + terminals.current * rate,
+    )
