@@ -25,7 +25,7 @@ LARGEST_RECORD = 100 * MOST_KNOTS
 
 _EXAMPLE = "time [us], voltage [V]"
 _COLUMN = re.compile(r"(.*?)\s*(?:\[(.*)\]|\((.*)\))")
-_PLAIN = re.compile(r"[+-]?(?:[0-9]+\.?[0-9]*|\.[0-9]+)(?:[eE][+-]?[0-9]+)?")
+_PLAIN = re.compile(r"[+-]?(?:[0-9]+(?:\.[0-9]*)?|\.[0-9]+)(?:[eE][+-]?[0-9]+)?")
 _SHOWN, _LONGEST_HEADER = 60, 4000
 
 

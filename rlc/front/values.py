@@ -12,9 +12,9 @@ from rlc.front.door import ChargeDoor, open_as
 from rlc.front.units import to_si
 from rlc.solver import case as _case
 from rlc.solver import loop as _loop
-from rlc.solver.case import Waveforms
 from rlc.solver.quantities import lookup
 from rlc.solver.steady import SteadyState
+from rlc.solver.waveforms import Waveforms
 
 Array = NDArray[np.float64]
 

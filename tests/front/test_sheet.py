@@ -8,59 +8,12 @@ import os
 from pathlib import Path
 
 import pytest
+from sheets import GOOD
+from sheets import write_sheet as write
 
-from rlc.errors import InputError, SheetError
+from rlc.errors import SheetError
 from rlc.front.document import LARGEST_SHEET
-from rlc.front.flags import FLAGS, TOLERANCE_FLAGS
 from rlc.front.load import load
-from rlc.front.marking import KINDS
-
-GOOD = """\
-title = "Buoy light"
-[resistor]
-value = "12 ohm"
-tolerance = "1 %"
-rated_power = "5 W"
-[inductor]
-value = "33 mH"
-tolerance = "0.5 mH"
-winding_resistance = "2.2 ohm"
-rated_current = "0.8 A"
-saturation_current = "2 A"
-[capacitor]
-value = "1u0"
-tolerance = "-20 % / +80 %"
-series_resistance = "0.1 ohm"
-rated_voltage = "250 V"
-rated_voltage_rms = "160 V"
-[load]
-resistance = "10 kohm"
-[source]
-kind = "sine"
-rms = "24 V"
-frequency = "880 Hz"
-resistance = "0.5 ohm"
-inductance = "10 uH"
-[switch_on]
-closing_angle = "30 deg"
-capacitor_voltage = "-5 V"
-initial_current = "10 mA"
-[[target]]
-quantity = "bandwidth"
-max = "80 Hz"
-yield = "99 %"
-[[target]]
-quantity = "gain"
-across = "resistor"
-at = "300 Hz"
-max = 0.03
-"""
-
-
-def write(folder: Path, text: str) -> Path:
-    path = folder / "sheet.toml"
-    path.write_text(text, encoding="utf-8")
-    return path
 
 
 def problems(folder: Path, text: str) -> list[str]:
@@ -314,75 +267,6 @@ def test_a_slip_that_may_be_meant_gets_a_note(tmp_path: Path) -> None:
     assert [note.split(":")[0] for note in loaded.notes] == ["inductor.value"]
 
 
-def test_flags_alone_make_the_same_loop_as_a_sheet(tmp_path: Path) -> None:
-    flags = {
-        "--resistance": "12 ohm",
-        "--inductance": "33 mH",
-        "--capacitance": "1u0",
-        "--winding-resistance": "2.2 ohm",
-        "--series-resistance": "0.1 ohm",
-        "--load": "10 kohm",
-        "--source-rms": "24 V",
-        "--frequency": "880 Hz",
-        "--source-resistance": "0.5 ohm",
-        "--source-inductance": "10 uH",
-        "--closing-angle": "30 deg",
-        "--capacitor-voltage": "-5 V",
-        "--initial-current": "10 mA",
-    }
-    assert repr(load(None, flags).inputs.case) == repr(load(write(tmp_path, GOOD)).inputs.case)
-
-
-def test_a_flag_replaces_a_value_and_is_named_in_errors(tmp_path: Path) -> None:
-    path = write(tmp_path, GOOD)
-    loaded = load(path, {"--resistance": "15 ohm", "--source-amplitude": "10 V"})
-    assert loaded.inputs.case.loop.resistance == 15.0
-    assert loaded.inputs.case.source.amplitude == 10.0
-    assert [str(change) for change in loaded.changes] == [
-        '--resistance replaces resistor.value = "12 ohm" by "15 ohm"',
-        '--source-amplitude adds source.amplitude = "10 V"',
-        '--source-amplitude drops source.rms = "24 V"',
-    ]
-    with pytest.raises(SheetError) as caught:
-        load(path, {"--resistance": "15"})
-    assert str(caught.value).startswith("--resistance = '15': has no unit")
-
-
-def test_a_dc_flag_turns_a_sine_sheet_into_dc(tmp_path: Path) -> None:
-    loaded = load(write(tmp_path, GOOD), {"--source-dc": "48 V"})
-    case = loaded.inputs.case
-    assert [str(change) for change in loaded.changes] == [
-        '--source-dc adds source.voltage = "48 V"',
-        '--source-dc replaces source.kind = "sine" by "dc"',
-        '--source-dc drops source.rms = "24 V"',
-        '--source-dc drops source.frequency = "880 Hz"',
-        '--source-dc drops switch_on.closing_angle = "30 deg"',
-    ]
-    assert case.source.kind == "dc"
-    assert case.source.amplitude == 48.0
-    assert case.loop.source_resistance == 0.5
-
-
-def test_flags_that_contradict_each_other() -> None:
-    with pytest.raises(InputError, match="--source-rms and --source-dc: are given together"):
-        load(None, {"--source-rms": "1 V", "--source-dc": "1 V"})
-    with pytest.raises(InputError, match="--frequency = '50 Hz': does not go with --source-dc"):
-        load(None, {"--source-dc": "1 V", "--frequency": "50 Hz"})
-
-
-def test_an_unknown_flag_is_refused_with_the_nearest_known() -> None:
-    with pytest.raises(InputError, match=r"is no flag .* Did you mean \"--resistance\"\?"):
-        load(None, {"--resistence": "1 ohm"})
-
-
-def test_nothing_at_all_asks_for_a_sheet() -> None:
-    with pytest.raises(SheetError) as caught:
-        load()
-    first, *rest = str(caught.value).splitlines()
-    assert first == "no sheet is named. Name one, or give at least these flags"
-    assert len(rest) == 4
-
-
 def test_a_part_of_zero_cannot_go_below_and_may_have_a_plus_side(tmp_path: Path) -> None:
     zero = GOOD.replace('"12 ohm"', '"0 ohm"')
     found = problems(tmp_path, zero.replace('"1 %"', '"0.5 ohm"'))
@@ -408,38 +292,3 @@ def test_distributions_arrive_with_their_sigmas(tmp_path: Path) -> None:
 def test_values_beyond_any_circuit_are_refused(tmp_path: Path, value: str) -> None:
     text = GOOD.replace('"33 mH"', f'"{value}"').replace('"0.5 mH"', '"5 %"')
     assert problems(tmp_path, text) == [f"7: inductor.value = '{value}': is beyond any circuit"]
-
-
-def test_flags_that_are_missing_are_named_as_flags() -> None:
-    with pytest.raises(SheetError) as caught:
-        load(None, {"--resistance": "1 ohm", "--source-rms": "1 V"})
-    assert str(caught.value).splitlines() == [
-        '--inductance: is missing. For example "10 mH"',
-        '--capacitance: is missing. For example "4.7 uF"',
-        '--frequency: is missing. For example "50 Hz"',
-    ]
-
-
-def test_a_flag_and_its_key_in_the_sheet_pass_the_same_door(tmp_path: Path) -> None:
-    """Each flag once beside a sheet and once alone, with texts that some doors refuse."""
-    sine = {"--source-rms": "24 V", "--frequency": "880 Hz"}
-    beside = {
-        "rms": {"--frequency": "880 Hz"},
-        "amplitude": {"--frequency": "880 Hz"},
-        "voltage": {},
-    }
-    parts = {"--resistance": "12 ohm", "--inductance": "33 mH", "--capacitance": "1u0"}
-    path = write(tmp_path, GOOD)
-    for flag in FLAGS + TOLERANCE_FLAGS:
-        unit = "%" if flag.key == "tolerance" else KINDS[flag.door.kind].symbol
-        for number in ("-1", "0", "1"):
-            given = {flag.option: f"{number} {unit}"}
-            alone = parts | beside.get(flag.key, sine) | given
-            said = []
-            for sheet, flags in ((path, given), (None, alone)):
-                try:
-                    load(sheet, flags)
-                    said.append("")
-                except SheetError as error:
-                    said.append(str(error).removeprefix(f"{path}: "))
-            assert said[0] == said[1]
