@@ -15,7 +15,8 @@ from rlc.solver.case import Case
 from rlc.solver.extrema import Extrema
 from rlc.solver.loop import ELEMENTS, Loop
 from rlc.solver.parts import Part
-from rlc.solver.quantities import REGISTER, Quantity
+from rlc.solver.quantities import REGISTER
+from rlc.solver.quantity import Quantity
 from rlc.solver.spread import CONFIDENCE, Outcome
 from rlc.solver.sweep import Sweep
 

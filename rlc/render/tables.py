@@ -16,7 +16,8 @@ from rlc.render.known import PEAKS, peak_of
 from rlc.render.layout import named_rows, new_table
 from rlc.solver.case import Case
 from rlc.solver.loop import ELEMENTS
-from rlc.solver.quantities import REGISTER, Quantity
+from rlc.solver.quantities import REGISTER
+from rlc.solver.quantity import Quantity
 
 if TYPE_CHECKING:
     from rlc.solver.extrema import Extrema

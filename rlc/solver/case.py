@@ -250,7 +250,13 @@ class Case:
 
     @cached_property
     def lines(self) -> Piecewise | None:
-        """The source's straight lines, a train that is to become steady repeated so often."""
+        """The source's straight lines, a train that is to become steady repeated so often.
+
+        Raises
+        ------
+        InputError
+            If that takes more pulses than a course may have.
+        """
         shape = self.source.shape
         if not isinstance(shape, Piecewise) or shape.period is None:
             return shape if isinstance(shape, Piecewise) else None
@@ -314,6 +320,33 @@ class Case:
         angle: Array = np.mod(self.peak(element).angle, turn)
         # What rounding leaves beside the rising zero is the zero itself.
         return np.where((angle < _ANGLE) | (turn - angle < _ANGLE), 0.0, angle)
+
+    def one(self, index: tuple[int, ...]) -> Case:
+        """One switch-on out of the batch.
+
+        Parameters
+        ----------
+        index : tuple of int
+            Its place in the batch.
+
+        Returns
+        -------
+        Case
+            Of shape ().
+        """
+
+        def pick(value: Any) -> Any:
+            return None if value is None else np.broadcast_to(value, self.shape)[index]
+
+        source = self.source
+        source = replace(
+            source,
+            amplitude=pick(source.amplitude),
+            frequency=pick(source.frequency),
+            closing_angle=pick(source.closing_angle),
+        )
+        states = pick(self.capacitor_voltage), pick(self.initial_current)
+        return Case(self.loop.map(pick), source, *states, self.either_polarity)
 
     def closed_for(self, element: str) -> Case:
         """The switch-on with angle and polarity settled: as given, or the worst for an element.

@@ -227,9 +227,9 @@ def _carry(step: _Step, added: States, first: States, across: States2x2 | None) 
     """All blocks are advanced together from zero, the first one from the states at closing;
     then each gets what the block before it has ended on."""
     count = added[0].shape[-1]
-    a, b, c, d = (_blocks(part) for part in step[:4])
+    a, b, c, d = (_blocks(part) for part in (step.a, step.b, step.c, step.d))
     voltage, current = (_blocks(part) for part in added)
-    v, i = np.zeros(voltage.shape[1:]), np.zeros(voltage.shape[1:])
+    v, i = np.zeros_like(voltage[0]), np.zeros_like(voltage[0])
     v[..., 0], i[..., 0] = (part[..., 0] for part in first)
     for row in range(voltage.shape[0]):
         k = min(row, a.shape[0] - 1)
@@ -238,8 +238,8 @@ def _carry(step: _Step, added: States, first: States, across: States2x2 | None) 
         v, i = voltage[row], current[row]
     if across is not None:
         p, q, r, s = across
-        before, behind = np.zeros(v.shape), np.zeros(v.shape)
-        for block in range(1, v.shape[-1]):
+        before, behind = np.zeros_like(v), np.zeros_like(v)
+        for block in range(1, voltage.shape[-1]):
             last = block - 1
             x, y = before[..., last], behind[..., last]
             before[..., block] = p[-1, ..., last] * x + q[-1, ..., last] * y + v[..., last]

@@ -8,15 +8,13 @@ import numpy as np
 from numpy.typing import NDArray
 
 from rlc.solver.case import Case
-from rlc.solver.quantities import REGISTER
+from rlc.solver.results import ringing
+from rlc.solver.shapes import Surge
+from rlc.solver.turning_points import settled, steps_until, turning_points
 
 Array = NDArray[np.float64]
 
 SIGNALS = ("current", "capacitor")
-
-_STEPS_PER_CYCLE, _FEWEST_STEPS, _MOST_STEPS = 64, 1024, 400_000
-_SECTIONS, _SECTIONINGS = 32, 9
-_TIME_CONSTANTS = 40.0
 
 
 @dataclass(frozen=True)
@@ -43,9 +41,8 @@ class Extrema:
 def first_extrema(case: Case, count: int = 8) -> Extrema:
     """Solve for the first turning points of current and capacitor voltage.
 
-    A turning point is a zero of the slope, which follows exactly from the two states. Zeros are
-    bracketed on steps of a 64th of the shorter period, ringing or source, and closed by
-    sectioning to rounding. With the worst closing angle it is that of the largest current.
+    A turning point is a zero of the slope, which follows exactly from the two states. Where
+    angle or polarity are open they are those of the largest current.
 
     Parameters
     ----------
@@ -59,53 +56,31 @@ def first_extrema(case: Case, count: int = 8) -> Extrema:
     Extrema
         Fewer than `count`, or none, where the loop settles without turning.
     """
-    angle = float(case.closing_angle_for("current"))
-    grid = _grid(case, count)
+    closed = case.closed_for("current")
+    angle = float(np.asarray(closed.source.closing_angle))
+    steps = steps_until(closed, _end(closed, count))
     times, kinds = [np.zeros(0)], [np.zeros(0, dtype=int)]
     for index, signal in enumerate(SIGNALS):
-        found = _zeros(case, signal, angle, grid, count)
+        found = turning_points(closed, signal, steps, count)
         times.append(found)
         kinds.append(np.full(found.size, index))
     time, kind = np.concatenate(times), np.concatenate(kinds)
     order = np.argsort(time, kind="stable")[:count]
     time = time[order]
-    waves = case.waveforms(time, angle)
+    waves = closed.waveforms(time)
     of = tuple(SIGNALS[index] for index in kind[order])
     return Extrema(angle, time, waves.current, waves.capacitor_voltage, of)
 
 
-def _grid(case: Case, count: int) -> Array:
-    """Steps over as many periods as extrema are asked for; finer near closing."""
-    eq = case.equation
-    ringing = np.nan_to_num(float(REGISTER["ringing_frequency"](case)))
-    frequencies = [each for each in (ringing, float(case.source.frequency)) if each]
-    with np.errstate(divide="ignore"):
-        end = float(_TIME_CONSTANTS / eq.slowest)
-    if frequencies:
-        end = min(end, (count + 1) / min(frequencies))
-    cycles = end * max(frequencies, default=0.0)
-    steps = int(np.clip(cycles * _STEPS_PER_CYCLE, _FEWEST_STEPS, _MOST_STEPS))
-    # An overdamped current turns within its fast time constant, long before the slow one.
-    start = min(1e-9 * end, 1e-3 / float(eq.quickest))
-    return np.union1d(np.linspace(0.0, end, steps), np.geomspace(start, end, _FEWEST_STEPS))
-
-
-def _zeros(case: Case, signal: str, angle: float, grid: Array, count: int) -> Array:
-    """The first times at which the slope of a signal changes its sign."""
-    slope = _slope(case, signal, grid, angle)
-    before = np.flatnonzero(np.sign(slope[:-1]) * np.sign(slope[1:]) < 0)[:count]
-    low, high, sign = grid[before], grid[before + 1], np.sign(slope[before])
-    parts = np.linspace(0.0, 1.0, _SECTIONS + 1)[:, np.newaxis]
-    for _ in range(_SECTIONINGS):
-        cuts = low + (high - low) * parts
-        same = np.sign(_slope(case, signal, cuts.ravel(), angle).reshape(cuts.shape)) == sign
-        # The last cut before the sign has changed for the first time.
-        last = np.maximum(np.argmin(same[1:], axis=0), 0)
-        low = np.take_along_axis(cuts, last[np.newaxis], axis=0)[0]
-        high = np.take_along_axis(cuts, last[np.newaxis] + 1, axis=0)[0]
-    return (low + high) / 2
-
-
-def _slope(case: Case, signal: str, time: Array, angle: float) -> Array:
-    waves = case.waveforms(time, angle)
-    return waves.current_rate if signal == "current" else waves.capacitor_voltage_rate
+def _end(case: Case, count: int) -> float:
+    """Over as many periods as extrema are asked for, after which there is no more."""
+    source = case.source
+    frequencies = [float(np.nan_to_num(ringing(case))), float(source.frequency)]
+    slowest = min((each for each in frequencies if each), default=0.0)
+    end = settled(case)
+    if not slowest:
+        return end
+    # A source that takes its time has turning points of its own.
+    course = case.lines.start[: count + 1] if case.lines is not None else np.zeros(1)
+    fading = 1.0 / source.shape.slow if isinstance(source.shape, Surge) else 0.0
+    return min(end, float(course[-1]) + fading + (count + 1) / slowest)

@@ -28,7 +28,20 @@ _EXPONENT_LIMIT = 300.0
 
 
 def take(eq: Equation, which: Index) -> Equation:
-    """The equations of some rows."""
+    """The equations of some rows.
+
+    Parameters
+    ----------
+    eq : Equation
+        Shape (n,).
+    which : Array of int
+        Places of the rows, from zero [1].
+
+    Returns
+    -------
+    Equation
+        With the shape of `which`.
+    """
 
     def pick(value: object) -> object:
         if isinstance(value, tuple):
@@ -59,7 +72,7 @@ class Moved(NamedTuple):
     value, slope, bend : Array or Complex
         The signal and its first two derivatives [V, A or A/s], per second, per second squared.
     free, speed : Array or Complex
-        Value and slope of the free part alone.
+        Value and slope of the free part alone [V, A or A/s], per second.
     """
 
     value: Any
@@ -75,9 +88,9 @@ class Bounds(NamedTuple):
     Attributes
     ----------
     value, slope, bend : Array
-        Of the signal and its first two derivatives.
+        Of the signal and its first two derivatives [V, A or A/s], per second, per second squared.
     free : (Array, Array, Array)
-        The same of its free part alone.
+        The same of its free part alone [V, A or A/s], per second, per second squared.
     """
 
     value: Array
@@ -130,7 +143,20 @@ class Motion:
             self.second = (first * self.value - self.slope) / (first - second)
 
     def held(self, which: Index, time: Array) -> tuple[Any, Any, Any]:
-        """The held part and its first two derivatives."""
+        """The held part and its first two derivatives.
+
+        Parameters
+        ----------
+        which : Array of int
+            Places of the rows, from zero [1].
+        time : Array
+            One per row, since its start [s].
+
+        Returns
+        -------
+        value, slope, bend : Array or Complex
+            One per row [V, A or A/s], per second, per second squared.
+        """
         value: Any = np.zeros(which.size)
         slope: Any = np.zeros(which.size)
         bend: Any = np.zeros(which.size)
@@ -155,7 +181,7 @@ class Motion:
         kernel : Kernels
             Of these rows at these times.
         which : Array of int
-            Rows.
+            Places of the rows, from zero [1].
         time : Array
             One per row, since its start [s].
 
@@ -182,7 +208,7 @@ class Motion:
         eq : Equation
             Of these rows.
         which : Array of int
-            Rows.
+            Places of the rows, from zero [1].
         at, half : Array
             Middle and half width of each interval, not before the row's start [s].
         moved : Moved
@@ -254,7 +280,7 @@ class Motion:
         Parameters
         ----------
         which : Array of int
-            Rows.
+            Places of the rows, from zero [1].
         start : Array
             The time [s].
         memory : Array
@@ -265,7 +291,7 @@ class Motion:
         Returns
         -------
         Array
-            Magnitude, one per row.
+            Magnitude, one per row [V, A or A/s].
         """
         value, slope = np.abs(self.value[which]), np.abs(self.slope[which])
         free = np.exp(-rate * start) * (value * (1 + rate * memory) + slope * memory)

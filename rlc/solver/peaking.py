@@ -12,9 +12,10 @@ from rlc.solver.equation import Equation, angular, equation_of, kernels
 from rlc.solver.lines import balance, final_lag
 from rlc.solver.motion import Index, Motion, Term, take
 from rlc.solver.peaks import Peak, Signal, constant_source_peak
-from rlc.solver.search import Best, Rows, known_before, search
+from rlc.solver.search import Best, known_before, search
 from rlc.solver.shapes import Surge
 from rlc.solver.source import ANY_ANGLE, Window
+from rlc.solver.turning import Rows
 
 if TYPE_CHECKING:
     from rlc.solver.case import Case
@@ -61,6 +62,29 @@ def find_peaks(case: Case, elements: tuple[str, ...]) -> dict[str, Peak]:
     return _alternating_peaks(case, elements)
 
 
+def steady_peak(case: Case, element: str) -> Array:
+    """Largest magnitude of a signal in steady state, or its final one.
+
+    Parameters
+    ----------
+    case : Case
+        One switch-on or a batch.
+    element : str
+        As for :meth:`rlc.solver.loop.Loop.weights`.
+
+    Returns
+    -------
+    Array
+        With the batch's shape; infinite at an undamped resonance, nan for a train of pulses
+        [V, A or A/s].
+    """
+    if case.repeats:
+        return np.full(case.shape, np.nan)
+    if not case.source.orders:
+        return np.broadcast_to(np.abs(case.signals(element)[0].steady), case.shape)
+    return _waves(case, (element,)).steady_top().reshape(case.shape)
+
+
 def _worse(one: Peak, other: Peak) -> Peak:
     """The larger of two peaks, loop by loop; the second one is that of the other polarity."""
     second = other.value > one.value
@@ -79,6 +103,13 @@ def _worse(one: Peak, other: Peak) -> Peak:
 def _alternating_peaks(case: Case, elements: tuple[str, ...]) -> dict[str, Peak]:
     """All signals and loops in one search, a row each."""
     shape = (len(elements), *case.shape)
+    best = _waves(case, elements).highest()
+    columns = (part.reshape(shape) for part in (best.value, best.time, best.gap, best.angle))
+    return {name: Peak(*each) for name, *each in zip(elements, *columns, strict=True)}
+
+
+def _waves(case: Case, elements: tuple[str, ...]) -> _Waves:
+    shape = (len(elements), *case.shape)
     source = case.source
 
     def flat(value: Any) -> Any:
@@ -91,7 +122,7 @@ def _alternating_peaks(case: Case, elements: tuple[str, ...]) -> dict[str, Peak]
         )
         return Signal(*(flat(part) for part in together))
 
-    rows = _Waves(
+    return _Waves(
         equation_of(case.loop.map(flat)),
         flat(angular(source.frequency)[0]),
         stacked([case.fixed_signal(element) for element in elements]),
@@ -103,9 +134,6 @@ def _alternating_peaks(case: Case, elements: tuple[str, ...]) -> dict[str, Peak]
         None if source.closing_angle is None else flat(source.closing_angle),
         source.window or ANY_ANGLE,
     )
-    best = rows.highest()
-    columns = (part.reshape(shape) for part in (best.value, best.time, best.gap, best.angle))
-    return {name: Peak(*each) for name, *each in zip(elements, *columns, strict=True)}
 
 
 class _Waves(NamedTuple):
@@ -121,7 +149,7 @@ class _Waves(NamedTuple):
 
     def highest(self) -> Best:
         """Search the rows that decay; those that never do have a largest value of their own."""
-        top = self._steady_top()
+        top = self.steady_top()
         best = known_before(top)
         undamped = self.eq.damping == 0
         lossless, lossy = np.flatnonzero(undamped), np.flatnonzero(~undamped)
@@ -152,7 +180,7 @@ class _Waves(NamedTuple):
     def _whole_turn(self) -> bool:
         return self.window.high - self.window.low >= ANY_ANGLE.high
 
-    def _steady_top(self) -> Array:
+    def steady_top(self) -> Array:
         """Largest magnitude of the steady state, the same at any closing angle."""
         sizes = [np.abs(each.steady) for each in self.waves]
         total: Array = np.sum(sizes, axis=0)
@@ -178,7 +206,9 @@ class _Waves(NamedTuple):
     def _rows(self, which: Index, duration: Array, top: Array, held: bool = True) -> Rows:
         eq = take(self.eq, which)
         fixed = Signal(*(np.real(np.broadcast_to(each, top.shape))[which] for each in self.fixed))
-        parts, turns, limits, frame = [], (), None, None
+        parts: list[Motion] = []
+        turns: tuple[int, ...] = ()
+        limits, frame = None, None
         if self.angle is not None:
             turn = np.exp(1j * self.angle[which])
             value, slope = (

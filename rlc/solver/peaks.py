@@ -54,7 +54,8 @@ class Peak:
     angle : Array
         Closing angle of the source at which it occurs [rad].
     polarity : Array
-        Sign of the capacitor's voltage at closing, if either is possible: 1 as given, else -1.
+        Sign of the capacitor's voltage at closing, if either is possible: 1 as given, else
+        -1 [1].
     """
 
     value: Array

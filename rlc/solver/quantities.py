@@ -9,23 +9,14 @@ inner voltage delivers, its own resistance included.
 
 from __future__ import annotations
 
-from collections.abc import Callable
-from dataclasses import dataclass
-from typing import Any, Literal
-
 import numpy as np
-from numpy.typing import NDArray
 
 from rlc.errors import InputError
 from rlc.solver import results
-from rlc.solver.case import Case
-from rlc.solver.loop import ELEMENTS
+from rlc.solver.passed import let_through_time
+from rlc.solver.quantity import Quantity
 from rlc.solver.steady import capacitor_voltage_maximum, half_power_frequencies
 from rlc.solver.transient import logarithmic_decrement, overshoot, settling_time
-
-Array = NDArray[np.float64]
-At = float | Array | None
-Across = str | None
 
 _AC = "OpenStax, University Physics vol. 2, sections 15.2 to 15.5"
 _FREE = "OpenStax, University Physics vol. 2, section 14.6"
@@ -33,92 +24,7 @@ _STEP = "step response of a second-order system: K. Ogata, Modern Control Engine
 _SEARCH = "steady state plus free motion; branch and bound over time, proved to 1e-9"
 
 SETTLING_BAND = 0.02
-
-
-@dataclass(frozen=True)
-class Quantity:
-    """One named result.
-
-    Attributes
-    ----------
-    name, symbol, kind : str
-        Key, formula symbol, and the kind of unit (see :mod:`rlc.front.units`).
-    group : {"loop", "steady", "switch-on"}
-        What it needs: the parts, the source, or the closing as well.
-    convention, definition, formula, source : str
-        Peak or rms and signs; words; formula; where it is published.
-    compute : callable
-        From a Case, ``at`` and ``across`` to an array with the batch's shape, in SI units.
-        Not a number where the quantity does not exist, infinite where it is unbounded.
-    at : str or None
-        Kind of the optional ``at``: "frequency", "time" or "ratio".
-    across : bool
-        Whether the quantity names an element.
-    """
-
-    name: str
-    symbol: str
-    kind: str
-    group: Literal["loop", "steady", "switch-on"]
-    convention: str
-    definition: str
-    formula: str
-    source: str
-    compute: Callable[[Case, At, Across], Any]
-    at: str | None = None
-    across: bool = False
-
-    def refuse(self, at: At, across: Across, source: str) -> None:
-        """Check that it can be asked for like this.
-
-        Parameters
-        ----------
-        at : float or Array or None
-            Frequency, time or band, more than zero [Hz], [s], [1].
-        across : str or None
-            One of the loop's elements.
-        source : str
-            Kind of the source, ``dc`` or ``sine``; or empty if it is not known yet.
-
-        Raises
-        ------
-        InputError
-            If `at` or `across` is out of range, or does not go with the quantity or the source.
-        """
-        if at is not None and self.at is None:
-            raise InputError("at", at, f"{self.name} is not asked for at a stated value")
-        if at is not None and not np.all(np.isfinite(at) & (np.asarray(at) > 0)):
-            raise InputError("at", at, "must be more than zero and finite")
-        if at is not None and self.at == "frequency" and source == "dc" and not self.per_volt:
-            raise InputError(
-                "at", at, f"{self.name} of a dc source is not asked for at a frequency"
-            )
-        if across is not None and not self.across:
-            raise InputError("across", across, f"{self.name} does not name an element")
-        if across is not None and across not in ELEMENTS:
-            raise InputError("across", across, f"is none of {', '.join(ELEMENTS)}")
-
-    @property
-    def per_volt(self) -> bool:
-        """Whether the source's level does not matter."""
-        return self.kind in ("resistance", "angle", "number")
-
-    def __call__(self, case: Case, at: At = None, across: Across = None) -> Array:
-        """Evaluate for a batch; an array ``at`` broadcasts against it.
-
-        Raises
-        ------
-        InputError
-            If ``at`` or ``across`` is given and the quantity has none, or is out of range.
-        """
-        self.refuse(at, across, case.source.kind)
-        shape = np.broadcast_shapes(
-            case.loop.shape, np.shape(case.source.amplitude), np.shape(case.source.frequency)
-        )
-        with np.errstate(all="ignore"):
-            value = np.asarray(self.compute(case, at, across), dtype=np.float64)
-        return np.broadcast_to(value, np.broadcast_shapes(shape, value.shape))
-
+HALF = 0.5
 
 _ROWS: tuple[Quantity, ...] = (
     Quantity(
@@ -344,11 +250,45 @@ _ROWS: tuple[Quantity, ...] = (
     ),
     Quantity(
         "let_through", "I^2 t", "let_through", "switch-on",
-        "to the stated time; else over all time (dc) or the first source period (sine); worst"
-        " angle: its own",
+        "to the stated time; else over all time, of a source with a frequency over its first"
+        " period; worst angle: its own",
         "Integral of the squared current, what a fuse or contact must pass.",
         "integral of i^2 dt; C V^2/(2 R) for a step from rest without a load", _STEP,
         lambda c, at, across: results.until(c, at), "time",
+    ),
+    Quantity(
+        "let_through_time", "t_I2t", "time", "switch-on",
+        "share stated with at, else half, of the let-through over all time or over the period",
+        "When the running let-through has come to a share of the whole.",
+        "t with integral to t = share * whole", _STEP,
+        lambda c, at, across: let_through_time(c, HALF if at is None else at), "ratio",
+    ),
+    Quantity(
+        "current_exceeding_time", "t_i>", "time", "switch-on",
+        "of the current stated with at, peak; none if never",
+        "When the current first exceeds a stated one.", "first t with |i(t)| > stated", _SEARCH,
+        lambda c, at, across: results.exceeding(c, "current", at, 0), "current",
+    ),
+    Quantity(
+        "capacitor_voltage_exceeding_time", "t_C>", "time", "switch-on",
+        "of the voltage stated with at, peak at the terminals; none if never",
+        "When the capacitor voltage first exceeds a stated one.",
+        "first t with |v_C(t)| > stated", _SEARCH,
+        lambda c, at, across: results.exceeding(c, "capacitor", at, 0), "voltage",
+    ),
+    Quantity(
+        "current_exceeding_duration", "T_i>", "time", "switch-on",
+        "of the current stated with at, peak; infinite if again and again",
+        "For how long in all the current exceeds a stated one.",
+        "sum of times with |i(t)| > stated", _SEARCH,
+        lambda c, at, across: results.exceeding(c, "current", at, 1), "current",
+    ),
+    Quantity(
+        "capacitor_voltage_exceeding_duration", "T_C>", "time", "switch-on",
+        "of the voltage stated with at, peak at the terminals; infinite if again and again",
+        "For how long in all the capacitor voltage exceeds a stated one.",
+        "sum of times with |v_C(t)| > stated", _SEARCH,
+        lambda c, at, across: results.exceeding(c, "capacitor", at, 1), "voltage",
     ),
     Quantity(
         "stored_energy", "W", "energy", "switch-on",

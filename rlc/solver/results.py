@@ -8,8 +8,9 @@ import numpy as np
 from numpy.typing import NDArray
 
 from rlc.solver.case import Case
+from rlc.solver.exceeding import exceeded_of
+from rlc.solver.passed import let_through, whole_let_through
 from rlc.solver.steady import SteadyState
-from rlc.solver.transient import let_through, total_let_through
 
 Array = NDArray[np.float64]
 
@@ -141,7 +142,7 @@ def beat(case: Case) -> Any:
     Array
         Zero or more; not a number for a constant source or where nothing rings [Hz].
     """
-    if case.source.kind == "dc":
+    if not case.source.alternating:
         return np.nan
     return np.abs(case.source.frequency - ringing(case))
 
@@ -167,7 +168,7 @@ def time_constant(case: Case) -> Any:
 
 
 def until(case: Case, at: Any) -> Array:
-    """Let-through to a stated time, else over all time (dc) or a source period (sine).
+    """Let-through to a stated time, else over all time or a period of the source.
 
     Parameters
     ----------
@@ -183,9 +184,31 @@ def until(case: Case, at: Any) -> Array:
     """
     if at is not None:
         return let_through(case, at)
-    if case.source.kind == "dc":
-        return total_let_through(case)
-    return let_through(case, 1.0 / case.source.frequency)
+    return whole_let_through(case)
+
+
+def exceeding(case: Case, element: str, limit: Any, which: int) -> Any:
+    """When a limit is first exceeded, or for how long.
+
+    Parameters
+    ----------
+    case : Case
+        One switch-on or a batch.
+    element : {"current", "capacitor"}
+        The loop current, or the voltage at the capacitor's terminals.
+    limit : array_like or None
+        Of the magnitude; nothing is exceeded without one [A or V].
+    which : int
+        0 for the first moment, 1 for the duration [1].
+
+    Returns
+    -------
+    Array
+        Not a number where it does not exist [s].
+    """
+    if limit is None:
+        return np.nan
+    return exceeded_of(case, element, limit)[which]
 
 
 def peak_time(case: Case, element: str) -> Array:

@@ -13,6 +13,7 @@ a rectangle of time and angle. Bounds hold up to the rounding of double precisio
 
 from __future__ import annotations
 
+from collections.abc import Sequence
 from dataclasses import dataclass
 from typing import Any, NamedTuple
 
@@ -20,7 +21,8 @@ import numpy as np
 from numpy.typing import NDArray
 
 from rlc.solver.equation import Equation, kernels
-from rlc.solver.motion import Array, Bounds, Index, Motion, Moved, take
+from rlc.solver.motion import Array, Index, Moved, take
+from rlc.solver.turning import Rows, framed, framed_bounds, together
 
 #: Relative gap between the value found and the proved upper bound.
 PROVED_GAP = 1e-9
@@ -29,47 +31,6 @@ _CELLS_AT_ONCE = 200_000
 # A loop of extreme quality rings through billions of periods; its search ends with a wider gap.
 _MOST_CELLS, _MOST_CELLS_PER_LOOP = 2_000_000, 20_000
 _POLISH_STEPS = 6
-
-
-@dataclass(frozen=True, eq=False)
-class Rows:
-    """What is searched: a row per loop, or per loop and line of its source.
-
-    Attributes
-    ----------
-    eq : Equation
-        Shape (n,).
-    parts : tuple of Motion
-        Signals whose magnitudes add up; turned by the closing angle if `turns` is given.
-    group : Array of int
-        Shape (n,), the loop that a row belongs to.
-    start, duration : Array
-        Shape (n,), since closing; a duration may be infinite [s].
-    quickest : Array
-        Shape (n,), the largest rate at which anything changes [1/s].
-    top : Array, optional
-        Shape (n,), what the held parts together never pass [V, A or A/s].
-    turns : tuple of int, optional
-        How many turns each part makes with one of the closing angle: the signal is the sum of
-        Im(exp(j k angle) y_k), and of real parts without a turn.
-    window : (Array, Array), optional
-        Shape (n,) each: limits of the closing angle, with `turns` [rad].
-    frame : Array, optional
-        Shape (n,), the source's angular frequency if every closing angle is possible, with
-        `turns`. The source's angle at the time is then searched in place of that at closing:
-        along a line on which it is constant late moments differ by free motion alone [rad/s].
-    """
-
-    eq: Equation
-    parts: tuple[Motion, ...]
-    group: Index
-    start: Array
-    duration: Array
-    quickest: Array
-    top: Array | None = None
-    turns: tuple[int, ...] = ()
-    window: tuple[Array, Array] | None = None
-    frame: Array | None = None
 
 
 @dataclass(eq=False)
@@ -87,7 +48,7 @@ class Best:
     angle : Array
         Closing angle, if it was searched for as well [rad].
     row : Array of int
-        Where it was found; -1 for a value known beforehand.
+        Place of the row where it was found; -1 for a value known beforehand [1].
     """
 
     value: Array
@@ -242,17 +203,18 @@ class _Search:
         bound = np.full(row.size, np.inf)
         return _Cells(row, middle, half, self.angle[row], self.swing[row], bound)
 
-    def _moved(self, which: Index, time: Array, eq: Equation) -> list[Moved]:
+    def _moved(self, which: Index, time: Array, eq: Equation) -> Sequence[Moved]:
         kernel = kernels(eq, time)
         return [part.at(eq, kernel, which, time) for part in self.rows.parts]
 
-    def _size(self, which: Index, time: Array, angle: Array, moved: list[Moved]) -> Array:
+    def _size(self, which: Index, time: Array, angle: Array, moved: Sequence[Moved]) -> Any:
         """Magnitude of the signal, at an angle as it is searched."""
         if not self._turned:
             return _sum(moved)
-        return np.abs(self._together(self._framed(which, time, moved), angle)[0])
+        seen = framed(self.rows, which, time, moved)
+        return np.abs(together(self.rows.turns, seen, angle)[0])
 
-    def _record(self, which: Index, time: Array, angle: Array) -> Array:
+    def _record(self, which: Index, time: Array, angle: Array) -> Any:
         size = self._size(which, time, angle, self._moved(which, time, take(self.eq, which)))
         self._keep(which, time, angle, size)
         return size
@@ -271,59 +233,6 @@ class _Search:
                 angle = angle - rows.frame[which] * time
             best.time[group] = rows.start[which] + time
             best.angle[group], best.row[group] = angle, which
-
-    def _framed(self, which: Index, time: Array, moved: list[Moved]) -> list[Moved]:
-        """The parts as seen while turning with the source."""
-        rows = self.rows
-        if rows.frame is None:
-            return moved
-        seen = []
-        for k, part, each in zip(rows.turns, rows.parts, moved, strict=True):
-            if not k:
-                seen.append(each)
-                continue
-            rate = 1j * k * rows.frame[which]
-            back = np.exp(-rate * time)
-            (term,) = part.terms
-            curve = each.bend - rate * rate * (each.value - each.free)
-            seen.append(
-                Moved(
-                    term.phasor[which] + back * each.free,
-                    back * (each.speed - rate * each.free),
-                    back * (curve - 2 * rate * each.speed + rate * rate * each.free),
-                    each.free,
-                    each.speed,
-                )
-            )
-        return seen
-
-    def _framed_bounds(self, which: Index, bounds: list[Bounds]) -> list[Bounds]:
-        """The bounds as seen while turning with the source: only free motion moves."""
-        rows = self.rows
-        if rows.frame is None:
-            return bounds
-        seen = []
-        for k, each in zip(rows.turns, bounds, strict=True):
-            rate = k * rows.frame[which]
-            reach, speed, bend = each.free
-            turning = speed + rate * reach, bend + 2 * rate * speed + rate * rate * reach
-            seen.append(Bounds(each.value, *turning, each.free))
-        return seen
-
-    def _together(self, moved: list[Moved], angle: Array) -> tuple[Array, ...]:
-        """At an angle: value, slopes in time and angle, second derivatives."""
-        value, slope, bend, aslant, mixed, round_ = (np.zeros(angle.size) for _ in range(6))
-        for k, part in zip(self.rows.turns, moved, strict=True):
-            if not k:
-                value, slope, bend = value + part.value, slope + part.slope, bend + part.bend
-                continue
-            turn = np.exp(1j * k * angle)
-            wave, pace = turn * part.value, turn * part.slope
-            value, slope = value + wave.imag, slope + pace.imag
-            bend = bend + (turn * part.bend).imag
-            aslant, mixed = aslant + k * wave.real, mixed + k * pace.real
-            round_ = round_ - k * k * wave.imag
-        return value, slope, aslant, bend, mixed, round_
 
     def _cut(self, cells: _Cells, gap: float) -> _Cells:
         """Intervals in quarters, along time or angle, those left out that hold nothing more."""
@@ -360,12 +269,14 @@ class _Search:
             anywhere = np.fmin(anywhere, self.top[which] + reach)
         in_angle = np.zeros(which.size)
         if self._turned:
-            value, slope, aslant, *_ = self._together(self._framed(which, at, moved), angle)
-            size, bounds = np.abs(value), self._framed_bounds(which, bounds)
-            pairs = list(zip(self.rows.turns, bounds, strict=True))
+            value, slope, aslant, *_ = together(
+                self.rows.turns, framed(self.rows, which, at, moved), angle
+            )
+            size, seen = np.abs(value), framed_bounds(self.rows, which, bounds)
+            pairs = list(zip(self.rows.turns, seen, strict=True))
             mixed = np.sum([k * each.slope for k, each in pairs], axis=0)
             round_ = np.sum([k * k * each.value for k, each in pairs], axis=0)
-            bend = np.sum([each.bend for each in bounds], axis=0)
+            bend = np.sum([each.bend for each in seen], axis=0)
             in_time = half * (np.abs(slope) + half / 2 * bend)
             in_angle = swing * (np.abs(aslant) + swing / 2 * round_)
             taylor = size + in_time + in_angle + half * swing * mixed
@@ -390,17 +301,15 @@ class _Search:
             time, angle = best.time[loops] - rows.start[which], best.angle[loops]
             if rows.frame is not None:
                 angle = angle + rows.frame[which] * time
-            loops, which, time, angle = (
-                part[(time > 0) & (time < rows.duration[which])]
-                for part in (loops, which, time, angle)
-            )
+            inside = (time > 0) & (time < rows.duration[which])
+            loops, which, time, angle = loops[inside], which[inside], time[inside], angle[inside]
             if not which.size:
                 return
             moved = self._moved(which, time, take(self.eq, which))
-            step, turned = self._newton(self._framed(which, time, moved), which, angle)
+            step, turned = self._newton(framed(self.rows, which, time, moved), which, angle)
             later = time + step
             good = np.isfinite(later) & (later > 0) & (later <= rows.duration[which])
-            loops, which, later, turned = (part[good] for part in (loops, which, later, turned))
+            loops, which, later, turned = loops[good], which[good], later[good], turned[good]
             moved = self._moved(which, later, take(self.eq, which))
             size = self._size(which, later, turned, moved)
             # the value is flat to rounding around the top; the time still gains digits
@@ -412,11 +321,11 @@ class _Search:
             best.angle[loops] = turned[keep]
             best.value[loops] = np.maximum(best.value[loops], size[keep])
 
-    def _newton(self, moved: list[Moved], which: Index, angle: Array) -> tuple[Array, Array]:
+    def _newton(self, moved: Sequence[Moved], which: Index, angle: Array) -> tuple[Array, Array]:
         """The step in time, and the next closing angle; not a number away from a top."""
         with np.errstate(all="ignore"):
             if self._turned:
-                value, slope, aslant, bend, mixed, round_ = self._together(moved, angle)
+                value, slope, aslant, bend, mixed, round_ = together(self.rows.turns, moved, angle)
                 sign = np.sign(value)
                 determinant = bend * round_ - mixed * mixed
                 low, high = self.angle - self.swing, self.angle + self.swing
@@ -439,6 +348,6 @@ class _Search:
             return np.where(bend < 0, -slope / bend, np.nan), angle
 
 
-def _sum(moved: list[Moved]) -> Any:
+def _sum(moved: Sequence[Moved]) -> Any:
     """The largest that the parts come to when their magnitudes add up."""
     return np.sum([np.abs(each.value) for each in moved], axis=0)

@@ -123,7 +123,8 @@ class Piecewise:
         if self.period is not None:
             time = np.mod(time, self.period)
         index = np.searchsorted(self.start, time, side="right") - 1
-        return self.level[index] + self.slope[index] * (time - self.start[index])
+        voltage: Array = self.level[index] + self.slope[index] * (time - self.start[index])
+        return voltage
 
 
 @dataclass(frozen=True)
@@ -321,8 +322,8 @@ def surge(voltage: float, front_time: float, half_value_time: float) -> Surge:
     from scipy.optimize import brentq
 
     for name, each in (("front_time", front_time), ("half_value_time", half_value_time)):
-        if not 0 < each <= BEYOND:
-            raise InputError(name, each, "must be more than zero")
+        if not 1 / BEYOND <= each <= BEYOND:
+            raise InputError(name, each, "must be more than zero, and of some circuit's size")
     wanted = half_value_time / front_time
 
     def ratio(decades: float) -> float:
@@ -331,7 +332,7 @@ def surge(voltage: float, front_time: float, half_value_time: float) -> Surge:
 
     least, most = ratio(-3.0), ratio(6.0)
     if not least < wanted < most:
-        rule = f"over front_time must be from {least:.3g} to {most:.3g} for two exponentials"
+        rule = f"must be {least:.3g} to {most:.3g} front times for two exponentials"
         raise InputError("half_value_time", half_value_time, rule)
     decades = brentq(lambda x: np.log(ratio(x) / wanted), -3.0, 6.0, xtol=1e-13, rtol=1e-13)
     fast = 1.0 + 10.0**decades

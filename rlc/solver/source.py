@@ -143,9 +143,8 @@ class Source:
 
     @property
     def rms(self) -> Array:
-        """Root mean square of the steady source, harmonics included; the level itself if
-        constant [V]."""
-        total = np.sqrt(sum(order.share**2 for order in self.every_order))
+        """Root mean square, harmonics included; of a constant source the level itself [V]."""
+        total = float(np.sqrt(sum(order.share**2 for order in self.every_order)))
         return np.abs(self.amplitude) * self.rms_per_amplitude * total
 
     @property
@@ -159,9 +158,9 @@ class Source:
         if self.shape is not None:
             return np.asarray(self.shape.largest)
         if not self.orders:
-            return np.abs(self.amplitude)
+            return np.abs(np.asarray(self.amplitude))
         turn = np.linspace(0.0, 2 * np.pi, 64 * max(order.number for order in self.orders))
-        return np.abs(self.amplitude) * np.max(np.abs(self.per_fundamental(turn)))
+        return np.abs(self.amplitude) * float(np.max(np.abs(self.per_fundamental(turn))))
 
     def per_fundamental(self, angle: Array) -> Array:
         """The waveform over a turn, per volt of the fundamental's amplitude.
@@ -177,7 +176,7 @@ class Source:
             With the shape of `angle` [1].
         """
         waves = (o.share * np.sin(o.number * angle + o.phase) for o in self.every_order)
-        return np.sum(list(waves), axis=0)
+        return np.asarray(np.sum(list(waves), axis=0))
 
 
 def constant(voltage: float | Array) -> Source:

@@ -10,7 +10,8 @@ from numpy.typing import NDArray
 
 from rlc.errors import InputError
 from rlc.solver.case import Case
-from rlc.solver.quantities import REGISTER, Quantity, lookup
+from rlc.solver.quantities import REGISTER, lookup
+from rlc.solver.quantity import Quantity
 
 Array = NDArray[np.float64]
 

@@ -51,8 +51,7 @@ class Waveforms:
     capacitor_voltage_rate: Array
 
 
-def column(value: Any) -> Array:
-    """An array with one more axis at the end, to meet an axis of times."""
+def _column(value: Any) -> Array:
     return np.asarray(value, dtype=np.float64)[..., np.newaxis]
 
 
@@ -78,13 +77,13 @@ def states(case: Case, time: Array, closing_angle: Any) -> tuple[Array, Array, A
         return case.lines.at(time), *case.course.at(time)
     eq = equation_of(case.loop.column())
     free_voltage, free_current = free_response(
-        eq, kernels(eq, time), column(case.capacitor_voltage), column(case.initial_current)
+        eq, kernels(eq, time), _column(case.capacitor_voltage), _column(case.initial_current)
     )
     if isinstance(shape, Surge):
         voltage, current = surge_from_rest(eq, shape, time)
         return shape.at(time), voltage + free_voltage, current + free_current
-    amplitude, frequency = column(source.amplitude), column(source.frequency)
-    turn = np.exp(1j * column(closing_angle))
+    amplitude, frequency = _column(source.amplitude), _column(source.frequency)
+    turn = np.exp(1j * _column(closing_angle))
     level, voltage, current = 0.0 * free_voltage, free_voltage, free_current
     for order in source.every_order:
         share = amplitude * order.share

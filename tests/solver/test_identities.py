@@ -10,10 +10,10 @@ from hypothesis import strategies as st
 
 from rlc.solver.case import Case
 from rlc.solver.loop import Loop, make_loop
+from rlc.solver.passed import let_through
 from rlc.solver.quantities import REGISTER
 from rlc.solver.search import PROVED_GAP
 from rlc.solver.source import Source, constant, sine
-from rlc.solver.transient import let_through
 
 EPS = np.finfo(float).eps
 NODES, WEIGHTS = np.polynomial.legendre.leggauss(24)

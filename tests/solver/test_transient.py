@@ -9,9 +9,10 @@ from scipy.optimize import brentq
 
 from rlc.solver.case import Case
 from rlc.solver.loop import make_loop
+from rlc.solver.passed import let_through, total_let_through
 from rlc.solver.quantities import REGISTER
 from rlc.solver.source import Source, constant, sine
-from rlc.solver.transient import let_through, overshoot, settling_time, total_let_through
+from rlc.solver.transient import overshoot, settling_time
 
 EPS = np.finfo(float).eps
 

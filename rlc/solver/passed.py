@@ -1,0 +1,324 @@
+"""What passes: the integral of the squared current, which heats fuses, contacts and parts."""
+
+from __future__ import annotations
+
+from dataclasses import replace
+from typing import Any
+
+import numpy as np
+from numpy.typing import NDArray
+
+from rlc.solver.case import Case
+from rlc.solver.driven import driven_from_rest
+from rlc.solver.equation import Equation, angular, equation_of, kernels, phase
+from rlc.solver.shapes import Piecewise, Surge
+from rlc.solver.source import ANY_ANGLE, Window
+from rlc.solver.waveforms import states
+
+Array = NDArray[np.float64]
+
+_NODES = 16
+_ANGLES, _NEWTON_STEPS = 256, 4
+# Half a cycle of the fastest motion to a panel of the integral; so many panels at a time.
+_PANELS_AT_ONCE = 4096
+# After so many time constants only a constant current is left: 1e-17 of the transient.
+_TIME_CONSTANTS = 40.0
+_BISECTIONS = 60
+
+
+def total_let_through(case: Case) -> Array:
+    r"""Integral of i^2 over all time; from a constant source (C e^2 + L i^2)/(2R).
+
+    All energy that the loop loses passes through its resistance: e is the capacitor's
+    distance from its final voltage at closing, i the initial current. What a source of another
+    course leaves behind at its end passes in the same way.
+
+    Parameters
+    ----------
+    case : Case
+        One switch-on or a batch.
+
+    Returns
+    -------
+    Array
+        Infinite where a steady current remains (a sine, a load, a train of pulses) or nothing
+        is lost [A^2 s].
+
+    Notes
+    -----
+    Energy balance of a series loop: any text on them, for instance OpenStax, University Physics
+    vol. 2, section 14.6.
+    """
+    if _either(case):
+        return np.maximum(*(total_let_through(each) for each in _both(case)))
+    loop, shape = case.loop, case.source.shape
+    voltage, current = case.capacitor_voltage, case.initial_current
+    before = np.zeros(case.shape)
+    end = shape.settled if isinstance(shape, Piecewise) else 0.0
+    if isinstance(shape, Surge):
+        end = _TIME_CONSTANTS / shape.slow
+    if 0 < end < np.inf:
+        before = let_through(case, end)
+        _, voltage, current = (part[..., 0] for part in states(case, np.array([end]), 0.0))
+    distance = voltage - case.source.amplitude
+    stored = loop.capacitance * distance**2 + loop.total_inductance * current**2
+    with np.errstate(divide="ignore", invalid="ignore"):
+        total = before + stored / (2 * loop.total_resistance)
+    still = (loop.load_conductance == 0) | (case.source.amplitude == 0)
+    ends = still & (not case.source.alternating) & (not case.repeats)
+    if shape is not None and np.any(ends & (loop.load_conductance > 0)):
+        return let_through(case, end + _TIME_CONSTANTS / case.equation.slowest)
+    return np.where(stored + before == 0, 0.0, np.where(ends, total, np.inf))
+
+
+def _either(case: Case) -> bool:
+    return case.either_polarity and bool(np.any(case.capacitor_voltage))
+
+
+def _both(case: Case) -> tuple[Case, Case]:
+    """The two polarities of the capacitor's voltage at closing."""
+    one = replace(case, either_polarity=False)
+    return one, replace(one, capacitor_voltage=-case.capacitor_voltage)
+
+
+def let_through(case: Case, until: Any) -> Array:
+    r"""Integral of i^2 from closing to a given time.
+
+    The current is linear in z = (v_C, i, source in phase, source in quadrature), so the
+    integral is z' P z. P over a short span is a 16-point Gauss-Legendre sum; then
+    P(2h) = P(h) + E(h)' P(h) E(h) doubles the span with exact propagators E. All terms are
+    sums of squares: nothing cancels, at any damping or resonance.
+
+    Parameters
+    ----------
+    case : Case
+        One switch-on or a batch. Where angle or polarity are open, those that let through most;
+        with harmonics the angle of the largest current.
+    until : array_like
+        End of the integral, zero or more; broadcasts against the batch [s].
+
+    Returns
+    -------
+    Array
+        With the shape of batch and `until` together, zero or more [A^2 s].
+
+    References
+    ----------
+    .. [1] C. F. Van Loan, "Computing integrals involving the matrix exponential", IEEE
+       Transactions on Automatic Control 23 (1978) 395-404 (from memory).
+    """
+    if _either(case):
+        return np.maximum(*(let_through(each, until) for each in _both(case)))
+    until = np.asarray(until, dtype=np.float64)
+    shape = np.broadcast_shapes(case.shape, until.shape)
+    if case.source.kind not in ("dc", "sine"):
+        return _by_quadrature(case.closed_for("current"), np.broadcast_to(until, shape))
+    eq, frequency = case.equation, np.broadcast_to(case.source.frequency, shape)
+    until = np.broadcast_to(until, shape)
+    turns = until * np.maximum(eq.quickest, angular(frequency)[0])
+    doublings = max(0, int(np.ceil(np.log2(np.max(turns, initial=1.0)))))
+    span = until / 2.0**doublings
+    columns = equation_of(case.loop.column())
+    # Not at module level: the nodes cost more time than a whole steady state.
+    nodes, weights = np.polynomial.legendre.leggauss(_NODES)
+    times = span[..., np.newaxis] * (nodes + 1) / 2
+    row = _current_row(columns, frequency[..., np.newaxis], times)
+    gram = np.einsum("...ni,...nj,n->...ij", row, row, weights)
+    gram = gram * span[..., np.newaxis, np.newaxis] / 2
+    for k in range(doublings):
+        step = _propagator(eq, frequency, span * 2.0**k)
+        gram = gram + np.swapaxes(step, -1, -2) @ gram @ step
+    amplitude = np.broadcast_to(case.source.amplitude, shape)
+    rest = np.zeros(shape)
+    states = np.stack(
+        [case.capacitor_voltage + rest, case.initial_current + rest, rest, rest], axis=-1
+    )
+    # In the closing angle the integral is a constant and waves of one and two turns.
+    own = np.einsum("...i,...ij,...j->...", states, gram, states)
+    once = 2 * amplitude[..., np.newaxis] * np.einsum("...i,...ij->...j", states, gram)[..., 2:]
+    in_phase, quadrature = (gram[..., k, k] * amplitude**2 for k in (2, 3))
+    mixed = gram[..., 2, 3] * amplitude**2
+    waves = (once[..., 1], once[..., 0], (quadrature - in_phase) / 2, mixed)
+    level = own + (in_phase + quadrature) / 2
+    angle, window = case.source.closing_angle, case.source.window or ANY_ANGLE
+    wave = _highest_wave(waves, window) if angle is None else _wave(waves, angle)
+    passed: Array = level + wave
+    return np.maximum(passed, 0.0)
+
+
+def _wave(waves: tuple[Array, ...], angle: Array) -> Any:
+    cosine, sine, double_cosine, double_sine = waves
+    return (
+        cosine * np.cos(angle)
+        + sine * np.sin(angle)
+        + double_cosine * np.cos(2 * angle)
+        + double_sine * np.sin(2 * angle)
+    )
+
+
+def _highest_wave(waves: tuple[Array, ...], window: Window) -> Any:
+    """Largest value over a window of angles: on a grid, then by Newton's method."""
+    columns = tuple(np.asarray(wave)[..., np.newaxis] for wave in waves)
+    grid = np.linspace(window.low, window.high, _ANGLES + 1)
+    best = grid[np.argmax(_wave(columns, grid), axis=-1)]
+    apart = grid[1] - grid[0]
+    cosine, sine, double_cosine, double_sine = waves
+    for _ in range(_NEWTON_STEPS):
+        slope = _wave((sine, -cosine, 2 * double_sine, -2 * double_cosine), best)
+        bend = -_wave((cosine, sine, 4 * double_cosine, 4 * double_sine), best)
+        with np.errstate(divide="ignore", invalid="ignore"):
+            step = np.where(bend < 0, slope / bend, 0.0)
+        best = np.clip(best - np.clip(step, -apart, apart), window.low, window.high)
+    return np.maximum(_wave(waves, best), np.max(_wave(columns, grid), axis=-1))
+
+
+def _by_quadrature(case: Case, until: Array) -> Array:
+    """Loop by loop; all moments of one loop at once."""
+    if not case.shape:
+        return running_let_through(case, until.ravel()).reshape(until.shape)
+    return np.array(
+        [
+            running_let_through(case.one(index), until[(Ellipsis, *index)].reshape(1))[0]
+            for index in np.ndindex(case.shape)
+        ]
+    ).reshape(until.shape)
+
+
+def let_through_time(case: Case, fraction: Any) -> Array:
+    """When the running let-through has come to a share of the whole.
+
+    Parameters
+    ----------
+    case : Case
+        One switch-on or a batch.
+    fraction : array_like
+        Above zero to 1 [1].
+
+    Returns
+    -------
+    Array
+        Of the let-through over all time, else over the source's first period; not a number
+        where that is zero or infinite, or the share is above 1 [s].
+    """
+    whole = whole_let_through(case)
+    source = case.source
+    end = 1.0 / source.frequency if source.alternating else _settled(case)
+    wanted = np.asarray(fraction) * whole
+    with np.errstate(invalid="ignore"):
+        known = np.isfinite(wanted) & (wanted > 0) & (np.asarray(fraction) <= 1)
+    low = np.zeros(wanted.shape)
+    high = np.where(known, np.broadcast_to(end, wanted.shape), 0.0)
+    for _ in range(_BISECTIONS):
+        middle = (low + high) / 2
+        below = let_through(case, middle) < wanted
+        low, high = np.where(below, middle, low), np.where(below, high, middle)
+    return np.where(known, high, np.nan)
+
+
+def _settled(case: Case) -> Array:
+    """When nothing passes any more."""
+    shape = case.source.shape
+    end = _TIME_CONSTANTS / shape.slow if isinstance(shape, Surge) else 0.0
+    end = shape.settled if isinstance(shape, Piecewise) else end
+    return end + _TIME_CONSTANTS / case.equation.slowest
+
+
+def whole_let_through(case: Case) -> Array:
+    """Let-through over all time, or over a period where the source never ends.
+
+    Parameters
+    ----------
+    case : Case
+        One switch-on or a batch.
+
+    Returns
+    -------
+    Array
+        Of an alternating source over its first period, of a train of pulses that is repeated
+        until steady over one of its last; else as :func:`total_let_through` [A^2 s].
+    """
+    if case.source.alternating:
+        return let_through(case, 1.0 / case.source.frequency)
+    if case.repeats:
+        end = case.course_end
+        return let_through(case, end) - let_through(case, end - case.repeats)
+    return total_let_through(case)
+
+
+def _current_row(eq: Equation, frequency: Array, time: Array) -> Array:
+    kernel = kernels(eq, time)
+    _, driven = driven_from_rest(eq, frequency, time)
+    parts = (eq.matrix[2] * kernel.s, kernel.current, driven.real, driven.imag)
+    return np.stack(np.broadcast_arrays(*parts), axis=-1)
+
+
+def _propagator(eq: Equation, frequency: Array, time: Array) -> Array:
+    kernel = kernels(eq, time)
+    voltage, _ = driven_from_rest(eq, frequency, time)
+    cosine, sine = phase(angular(frequency), time)
+    zero = np.zeros_like(kernel.s)
+    rows = (
+        (kernel.capacitor, eq.matrix[1] * kernel.s, voltage.real, voltage.imag),
+        (zero, zero, cosine, sine),
+        (zero, zero, -sine, cosine),
+    )
+    stacked = [np.stack(np.broadcast_arrays(*row, zero)[:4], axis=-1) for row in rows]
+    stacked.insert(1, _current_row(eq, frequency, time))
+    return np.stack(stacked, axis=-2)
+
+
+def running_let_through(case: Case, until: Array) -> Array:
+    """Integral of i^2 up to each of several moments, by quadrature of the exact current.
+
+    Sixteen-point Gauss-Legendre sums over half cycles of the fastest motion, cut at the knots
+    of the source and ever finer before a fast decay.
+
+    Parameters
+    ----------
+    case : Case
+        One loop, shape (), with one closing angle and polarity.
+    until : Array
+        Shape (n,), zero or more [s].
+
+    Returns
+    -------
+    Array
+        Shape (n,), rising with `until` [A^2 s].
+    """
+    order = np.argsort(until, kind="stable")
+    ends = until[order]
+    edges = np.union1d(_edges(case, float(ends[-1])), ends) if ends.size else ends
+    nodes, weights = np.polynomial.legendre.leggauss(_NODES)
+    total = np.zeros(max(edges.size, 1))
+    for first in range(0, edges.size - 1, _PANELS_AT_ONCE):
+        part = edges[first : first + _PANELS_AT_ONCE + 1]
+        half, middle = np.diff(part) / 2, (part[1:] + part[:-1]) / 2
+        times = middle[:, np.newaxis] + half[:, np.newaxis] * nodes
+        current = case.waveforms(times.ravel()).current.reshape(times.shape)
+        total[first + 1 : first + part.size] = half * (current**2 @ weights)
+    passed = np.cumsum(total)[np.searchsorted(edges, ends)] if ends.size else ends
+    found = np.empty(until.size)
+    found[order] = passed
+    return found
+
+
+def _edges(case: Case, end: float) -> Array:
+    """Ends of the panels from closing on."""
+    eq, shape = case.equation, case.source.shape
+    knots = case.lines.start if case.lines is not None else np.zeros(1)
+    rate, quick = float(eq.natural), float(eq.quickest)
+    rate = max([rate, *(2 * np.pi * o.number * float(case.source.frequency)
+                        for o in case.source.every_order)])  # fmt: skip
+    last = knots[-1]
+    if isinstance(shape, Surge):
+        quick, last = max(quick, shape.fast), _TIME_CONSTANTS / shape.slow
+    with np.errstate(divide="ignore"):
+        tail = float(last + _TIME_CONSTANTS / eq.slowest)
+    until = end if case.source.alternating else min(end, tail)
+    steps = np.arange(0.0, until, np.pi / rate)
+    # what decays faster than a half cycle is met in steps that double
+    fine = np.geomspace(0.1 / quick, max(1.0 / rate, 0.2 / quick), 2 * _NODES)
+    stiff = quick * np.pi / rate > 4 and knots.size < _PANELS_AT_ONCE
+    near = (knots[:, np.newaxis] + fine).ravel() if stiff else fine[:0]
+    edges = np.concatenate([[0.0], steps, knots, near, [until]])
+    return np.unique(edges[edges <= until])

@@ -1,0 +1,113 @@
+"""Turning points of a signal: zeros of its slope, bracketed on steps and closed by sectioning."""
+
+from __future__ import annotations
+
+import numpy as np
+from numpy.typing import NDArray
+
+from rlc.solver.case import Case
+from rlc.solver.shapes import Surge
+
+Array = NDArray[np.float64]
+
+_STEPS_PER_CYCLE, _FEWEST_STEPS, _MOST_STEPS = 64, 1024, 400_000
+_SECTIONS, _SECTIONINGS = 32, 9
+# After so many time constants nothing is left of free motion but rounding: 4e-18.
+TIME_CONSTANTS = 40.0
+
+
+def settled(case: Case) -> float:
+    """When free motion has gone and the source has come to its end.
+
+    Parameters
+    ----------
+    case : Case
+        One loop, shape ().
+
+    Returns
+    -------
+    float
+        Since closing; infinite without losses [s].
+    """
+    shape = case.source.shape
+    if case.lines is not None:
+        last = float(case.course_end) if case.repeats else float(case.lines.start[-1])
+    else:
+        last = TIME_CONSTANTS / shape.slow if isinstance(shape, Surge) else 0.0
+    if case.repeats:
+        return last
+    with np.errstate(divide="ignore"):
+        return last + float(TIME_CONSTANTS / case.equation.slowest)
+
+
+def steps_until(case: Case, end: float) -> Array:
+    """Times so close together that a signal turns at most once between two of them.
+
+    Parameters
+    ----------
+    case : Case
+        One loop, shape ().
+    end : float
+        The last time [s].
+
+    Returns
+    -------
+    Array
+        A 64th of the shortest period, ringing, source or surge, and finer after closing and
+        the source's knots; at most 400 000 even steps [s].
+    """
+    source, eq = case.source, case.equation
+    highest = max(order.number for order in source.every_order) * float(source.frequency)
+    ringing = float(np.where(eq.underdamped, eq.root[0], 0.0)) / (2 * np.pi)
+    quick = float(eq.quickest)
+    if isinstance(source.shape, Surge):
+        quick = max(quick, source.shape.fast)
+    steps = int(np.clip(end * max(ringing, highest) * _STEPS_PER_CYCLE, _FEWEST_STEPS, _MOST_STEPS))
+    # An overdamped current turns within its fast time constant, long before the slow one.
+    start = min(1e-9 * end, 1e-3 / quick)
+    fine = np.geomspace(start, end, _FEWEST_STEPS)
+    times = np.union1d(np.linspace(0.0, end, steps), fine)
+    if case.lines is None:
+        return times
+    knots = case.lines.start[case.lines.start < end]
+    few = knots[: _FEWEST_STEPS // 8, np.newaxis] + fine[:: _FEWEST_STEPS // 64]
+    times = np.union1d(np.union1d(times, knots), few.ravel())
+    return times[times <= end]
+
+
+def turning_points(case: Case, signal: str, times: Array, count: int | None = None) -> Array:
+    """The first times at which the slope of a signal changes its sign.
+
+    Parameters
+    ----------
+    case : Case
+        One loop, shape (), with one closing angle and polarity.
+    signal : {"current", "capacitor"}
+        Which signal.
+    times : Array
+        Shape (n,), rising, the steps that bracket them [s].
+    count : int, optional
+        How many of them; all if not given.
+
+    Returns
+    -------
+    Array
+        Rising, at most `count` [s].
+    """
+    slope = _slope(case, signal, times)
+    before = np.flatnonzero(np.sign(slope[:-1]) * np.sign(slope[1:]) < 0)[:count]
+    low, high, sign = times[before], times[before + 1], np.sign(slope[before])
+    parts = np.linspace(0.0, 1.0, _SECTIONS + 1)[:, np.newaxis]
+    for _ in range(_SECTIONINGS):
+        cuts = low + (high - low) * parts
+        same = np.sign(_slope(case, signal, cuts.ravel()).reshape(cuts.shape)) == sign
+        # The last cut before the sign has changed for the first time.
+        last = np.maximum(np.argmin(same[1:], axis=0), 0)
+        low = np.take_along_axis(cuts, last[np.newaxis], axis=0)[0]
+        high = np.take_along_axis(cuts, last[np.newaxis] + 1, axis=0)[0]
+    return (low + high) / 2
+
+
+def _slope(case: Case, signal: str, times: Array) -> Array:
+    waves = case.waveforms(times)
+    return waves.current_rate if signal == "current" else waves.capacitor_voltage_rate
