@@ -1,37 +1,85 @@
-"""The response from rest to a sinusoid (or a constant, at zero frequency).
+"""Capacitor voltage and current under a sinusoid or a constant, for many loops and times.
 
-With D(t) the divided difference of the exponential at the two roots and j omega, the states
-are v_C = (kappa/LC) D and i = (s + (j omega + G kappa/C) D)/L. Three ways to evaluate them,
-each where it keeps its digits; the real part answers cos(omega t), the imaginary part
-sin(omega t), and the two are formed in real arithmetic because the smaller one would drown in
-the rounding of the larger.
+Loops are sorted once by the way they move (:mod:`rlc.solver.regimes`) and then worked through in
+pieces that stay in the processor's cache.
 """
 
 from __future__ import annotations
 
-from collections.abc import Callable
+import math
+import operator
+from collections.abc import Callable, Iterator
 from typing import Any
 
 import numpy as np
 from numpy.typing import NDArray
 
 from rlc.solver import doubledouble as dd
-from rlc.solver.equation import (
-    Array,
-    Complex,
-    Equation,
-    Kernels,
-    angular,
-    kernels,
-    phase,
-    steady_states,
+from rlc.solver.equation import Array, Complex, Equation, angular
+from rlc.solver.regimes import (
+    Regime,
+    creeping_under_constant,
+    creeping_under_sine,
+    resonant,
+    ringing_under_constant,
+    ringing_under_sine,
 )
+from rlc.solver.series import Drive
 
-_TERMS = 30
-_FACTORIAL = np.cumprod(np.r_[1.0, np.arange(1.0, _TERMS + 3)])
+#: Samples in one piece: its few arrays fill about the cache that a core has to itself.
+_PIECE = 24576
 
-Mask = NDArray[np.bool_]
-Pick = Callable[[Any], Any]
+#: A source is near a loop's own frequency within this share of the natural one.
+_NEAR = 0.5
+
+Build = Callable[[Equation, Drive], Regime]
+
+
+def driven_states(
+    eq: Equation,
+    amplitude: Array,
+    frequency: Array,
+    closing_angle: Array,
+    capacitor_voltage: Array,
+    initial_current: Array,
+    time: Array,
+) -> tuple[Array, Array]:
+    r"""States of loops that close onto :math:`A\sin(\omega t + \varphi)`.
+
+    Everything broadcasts together. Loops on the leading axes and times on the last one, which
+    for everything else has length one, is the fast way: what belongs to the loop is then worked
+    out once.
+
+    Parameters
+    ----------
+    eq : Equation
+        A batch of loops.
+    amplitude : Array
+        Peak of the source [V].
+    frequency : Array
+        Zero for a constant source, whose voltage is then the one at closing [Hz].
+    closing_angle : Array
+        The source's phase at closing, from its rising zero [rad].
+    capacitor_voltage, initial_current : Array
+        States at closing [V], [A].
+    time : Array
+        Since closing, zero or more [s].
+
+    Returns
+    -------
+    capacitor_voltage, current : Array
+        Behind the series resistance, and of the loop [V], [A].
+
+    Notes
+    -----
+    Worst error measured against 50-digit arithmetic, relative to the running peak, for
+    quality factors 1e-4 to 1e6, up to 1e4 periods and frequency ratios 1e-4 to 1e4: below
+    1e-14 (``tests/benchmarks/accuracy.py`` prints it by regime).
+    """
+    level, swing = amplitude * np.sin(closing_angle), amplitude * np.cos(closing_angle)
+    drive = Drive(level, swing, frequency, capacitor_voltage, initial_current)
+    voltage, current = _states(eq, drive, np.asarray(time))
+    return voltage, current
 
 
 def driven_from_rest(eq: Equation, frequency: Array, time: Array) -> tuple[Complex, Complex]:
@@ -49,151 +97,78 @@ def driven_from_rest(eq: Equation, frequency: Array, time: Array) -> tuple[Compl
     Returns
     -------
     capacitor_voltage, current : Complex
-        Real part for a cosine, imaginary part for a sine of 1 V [V], [A].
-
-    Notes
-    -----
-    Worst error measured against 50-digit arithmetic, relative to the running peak, for
-    quality factors 1e-4 to 1e6, up to 1e4 periods and frequency ratios 1e-4 to 1e4: below
-    1e-14 (``tests/benchmarks/accuracy.py`` prints it by regime).
+        Real part for a cosine, imaginary part for a sine of 1 V [V], [A]. Each keeps its own
+        digits, as in :func:`driven_states`.
     """
+    zero, one = np.zeros(()), np.ones(())
+    cosine, sine = (
+        _states(eq, Drive(level, swing, frequency, zero, zero), np.asarray(time))
+        for level, swing in ((one, zero), (zero, one))
+    )
+    return cosine[0] + 1j * sine[0], cosine[1] + 1j * sine[1]
+
+
+def _states(eq: Equation, drive: Drive, time: Array) -> Array:
+    """Both states, on a new first axis."""
+    each_loop = np.broadcast_shapes(eq.damping.shape, *(np.shape(value) for value in drive))
+    shape = np.broadcast_shapes(each_loop, time.shape)
+    # Where the last axis tells loops apart, each sample is a loop of its own.
+    batch = shape[:-1] if each_loop[-1:] in ((), (1,)) else shape
+    count = shape[-1] if len(batch) < len(shape) else 1
+    loops = math.prod(batch)
+
+    def in_a_row(value: Any) -> Any:
+        if loops == 1:
+            # numpy calculates several times as fast with a number as with an array of one
+            return np.reshape(value, ())[()]
+        return np.broadcast_to(value, (*batch, 1) if count > 1 else batch).reshape(-1)
+
+    if time.size == count:
+        instants = time.reshape(1, count)
+    else:
+        instants = np.broadcast_to(time, shape).reshape(loops, count)
+    states = np.empty((2, loops, count))
+    if not states.size:
+        return states.reshape(2, *shape)
+    with np.errstate(invalid="ignore", divide="ignore", under="ignore"):
+        rows, drives = eq.map(in_a_row), Drive(*(in_a_row(value) for value in drive))
+        for build, members in _kinds(rows, drives.frequency, instants):
+            chosen = members if loops > 1 else ()
+            regime = build(
+                rows.map(operator.itemgetter(chosen)), Drive(*(value[chosen] for value in drives))
+            )
+            _fill(states, regime, members, instants)
+    return states.reshape(2, *shape)
+
+
+def _kinds(eq: Equation, frequency: Array, time: Array) -> Iterator[tuple[Build, NDArray[np.intp]]]:
+    """Loops of each kind, those first whose times are the earliest to their rates."""
     omega = angular(frequency)
-    kernel = kernels(eq, time)
-    cosine, sine = phase(omega, time)
-    shape = np.broadcast_shapes(kernel.s.shape, cosine.shape)
-    parts = _steady_and_transient(eq, frequency, kernel, cosine, sine)
-    out = tuple(np.array(np.broadcast_to(part, shape)) for part in parts)
-
-    def spread_out(value: Any) -> Any:
-        return np.broadcast_to(value, shape)
-
-    early: Mask = spread_out(np.maximum(eq.quickest, omega[0]) * time < 2.0)
-    ringing = np.where(eq.underdamped, eq.root[0], 0.0), np.where(eq.underdamped, eq.root[1], 0.0)
-    detuning = dd.subtract(omega, ringing)[0]
-    close = eq.underdamped & (np.hypot(eq.damping, detuning) < 0.5 * eq.natural)
-    creeping = ~eq.underdamped & (np.maximum(eq.slow, omega[0]) * time < 1.0)
-    near: Mask = spread_out(close | creeping) & ~early
-    for mask, evaluate in ((near, _divided_difference), (early, _power_series)):
-        if not mask.any():
-            continue
-
-        def pick(value: Any, mask: Mask = mask) -> Any:
-            return spread_out(value)[mask]
-
-        replaced = evaluate(eq, pick, omega, time, kernel, (cosine, sine, detuning))
-        for target, values in zip(out, replaced, strict=True):
-            target[mask] = values
-    return out[0] + 1j * out[1], out[2] + 1j * out[3]
+    detuning = dd.subtract(omega, eq.root)[0]
+    constant, rings = frequency == 0, eq.underdamped
+    distance = eq.damping * eq.damping + detuning * detuning
+    near = rings & (distance < _NEAR * _NEAR * eq.natural_squared[0])
+    lateness = np.atleast_1d(np.maximum(eq.quickest, omega[0]) * np.mean(time, axis=1))
+    for build, mask in (
+        (ringing_under_constant, rings & constant),
+        (resonant, near),
+        (ringing_under_sine, rings & ~constant & ~near),
+        (creeping_under_constant, ~rings & constant),
+        (creeping_under_sine, ~rings & ~constant),
+    ):
+        members = np.flatnonzero(mask)
+        if members.size:
+            yield build, members[np.argsort(lateness[members])]
 
 
-def _steady_and_transient(
-    eq: Equation, frequency: Array, kernel: Kernels, cosine: Array, sine: Array
-) -> tuple[Array, ...]:
-    voltage, current = steady_states(eq, frequency)
-    _, to_voltage, to_current, _ = eq.matrix
-    with np.errstate(invalid="ignore"):
-        return (
-            voltage.real * (cosine - kernel.capacitor)
-            - voltage.imag * sine
-            - to_voltage * current.real * kernel.s,
-            voltage.real * sine
-            + voltage.imag * (cosine - kernel.capacitor)
-            - to_voltage * current.imag * kernel.s,
-            current.real * (cosine - kernel.current)
-            - current.imag * sine
-            - to_current * voltage.real * kernel.s,
-            current.real * sine
-            + current.imag * (cosine - kernel.current)
-            - to_current * voltage.imag * kernel.s,
-        )
-
-
-def _states(
-    eq: Equation, pick: Pick, omega: Array, s_real: Array, s_imag: Array, d: tuple[Array, Array]
-) -> tuple[Array, ...]:
-    """States from D and from the s-like term that the current adds to j omega D."""
-    gain = pick(eq.matrix[1] * eq.source_rate)
-    rate = pick(eq.source_rate)
-    leak = pick(-eq.matrix[0])
-    real, imag = d
-    return (
-        gain * real,
-        gain * imag,
-        rate * (s_real - omega * imag + leak * real),
-        rate * (s_imag + omega * real + leak * imag),
-    )
-
-
-def _divided_difference(
-    eq: Equation,
-    pick: Pick,
-    omega: dd.Pair,
-    time: Array,
-    kernel: Kernels,
-    trig: tuple[Array, Array, Array],
-) -> tuple[Array, ...]:
-    """D = (E - s)/(j omega - s2) with E the first divided difference at s1 and j omega."""
-    under = pick(eq.underdamped)
-    w, t, s = pick(omega[0]), pick(time), pick(kernel.s)
-    cosine, sine, detuning = (pick(value) for value in trig)
-    ringing = np.where(under, pick(eq.root[0]), 0.0)
-    # j omega - s1
-    x: Any = np.where(under, pick(eq.damping), pick(eq.slow))
-    y: Any = np.where(under, detuning, w)
-    # exp(j omega t) - exp(s1 t)
-    difference = cosine - pick(kernel.base), sine - ringing * s
-    size = x * x + y * y
-    size = np.where(size == 0, 1.0, size)
-    e_real = (difference[0] * x + difference[1] * y) / size
-    e_imag = (difference[1] * x - difference[0] * y) / size
-    small: Any = (x * x + y * y) * t * t < 1.0
-    if small.any():
-        real, imag = _phi(-x[small] * t[small], -y[small] * t[small])
-        e_real[small] = t[small] * (cosine[small] * real - sine[small] * imag)
-        e_imag[small] = t[small] * (cosine[small] * imag + sine[small] * real)
-    # j omega - s2
-    x, y = np.where(under, pick(eq.damping), pick(eq.fast)), w + ringing
-    size = x * x + y * y
-    d_real = ((e_real - s) * x + e_imag * y) / size
-    d_imag = (e_imag * x - (e_real - s) * y) / size
-    return _states(eq, pick, w, s, np.zeros_like(s), (d_real, d_imag))
-
-
-def _phi(real: Array, imag: Array) -> tuple[Array, Array]:
-    """(exp(z) - 1)/z for |z| <= 1 by Horner's rule, componentwise."""
-    terms = 20
-    sum_real, sum_imag = np.full_like(real, 1 / _FACTORIAL[terms]), np.zeros_like(real)
-    for k in range(terms - 1, 0, -1):
-        sum_real, sum_imag = (
-            real * sum_real - imag * sum_imag + 1 / _FACTORIAL[k],
-            real * sum_imag + imag * sum_real,
-        )
-    return sum_real, sum_imag
-
-
-def _power_series(
-    eq: Equation,
-    pick: Pick,
-    omega: dd.Pair,
-    time: Array,
-    kernel: Kernels,
-    trig: tuple[Array, Array, Array],
-) -> tuple[Array, ...]:
-    """Taylor series of D: complete symmetric polynomials of the three exponents over k!."""
-    t, w = pick(time), pick(omega[0])
-    turn = w * t
-    linear, quadratic = -pick(eq.gamma) * t, -pick(eq.natural_squared[0]) * t * t
-    previous, current = np.zeros_like(t), np.ones_like(t)
-    real, imag = np.ones_like(t), np.zeros_like(t)
-    d_real, d_imag = real / _FACTORIAL[2], imag
-    # s + j omega D has the same series with (k + 1)! in place of (k + 2)!
-    s_real, s_imag = real / _FACTORIAL[1], imag
-    for k in range(1, _TERMS):
-        previous, current = current, linear * current + quadratic * previous
-        real, imag = current - turn * imag, turn * real
-        d_real, d_imag = d_real + real / _FACTORIAL[k + 2], d_imag + imag / _FACTORIAL[k + 2]
-        s_real, s_imag = s_real + real / _FACTORIAL[k + 1], s_imag + imag / _FACTORIAL[k + 1]
-    # the series already holds j omega D, so the frequency handed on is zero
-    return _states(
-        eq, pick, np.zeros_like(t), t * s_real, t * s_imag, (t * t * d_real, t * t * d_imag)
-    )
+def _fill(states: Array, regime: Regime, members: NDArray[np.intp], time: Array) -> None:
+    """Work out a motion piece by piece."""
+    count = time.shape[1]
+    step = max(1, _PIECE // count)
+    for first in range(0, members.size, step):
+        piece = slice(first, first + step)
+        rows = members[piece]
+        for left in range(0, count, _PIECE):
+            columns = slice(left, left + _PIECE)
+            instants = time[:, columns] if time.shape[0] == 1 else time[rows, columns]
+            states[:, rows, columns] = regime.at(piece, instants)

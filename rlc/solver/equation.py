@@ -21,8 +21,9 @@ Approximation Theory 1 (2005), and N. J. Higham, Functions of Matrices (SIAM 200
 
 from __future__ import annotations
 
+from collections.abc import Callable
 from dataclasses import dataclass
-from typing import NamedTuple
+from typing import Any, NamedTuple
 
 import numpy as np
 from numpy.typing import NDArray
@@ -66,6 +67,40 @@ class Equation:
     matrix: tuple[Array, Array, Array, Array]
     source_rate: Array
 
+    def map(self, change: Callable[[Any], Any]) -> Equation:
+        """The equation with ``change`` applied to each of its arrays (indexing, reshaping).
+
+        Parameters
+        ----------
+        change : callable
+            From one array to another; the same for every constant.
+
+        Returns
+        -------
+        Equation
+        """
+        a, b, c, d = self.matrix
+        return Equation(
+            damping=change(self.damping),
+            natural_squared=(change(self.natural_squared[0]), change(self.natural_squared[1])),
+            root=(change(self.root[0]), change(self.root[1])),
+            underdamped=change(self.underdamped),
+            slow=change(self.slow),
+            fast=change(self.fast),
+            matrix=(change(a), change(b), change(c), change(d)),
+            source_rate=change(self.source_rate),
+        )
+
+    def column(self) -> Equation:
+        """The batch with one more axis at the end, to meet an axis of times or frequencies.
+
+        Returns
+        -------
+        Equation
+            Shape of the batch, then (1,).
+        """
+        return self.map(lambda value: value[..., np.newaxis])
+
     @property
     def natural(self) -> Array:
         """Natural angular frequency [rad/s]."""
@@ -85,6 +120,26 @@ class Equation:
     def damping_ratio(self) -> Array:
         """a / omega_0, one at critical damping [1]."""
         return self.damping / self.natural
+
+    @property
+    def skew(self) -> Array:
+        """Half the difference of the rates at which current and capacitor decay alone [1/s]."""
+        return (self.matrix[0] - self.matrix[3]) / 2
+
+    @property
+    def gap(self) -> Array:
+        """Difference of the two decay rates of an overdamped loop, never zero [1/s]."""
+        # 2^-60 of the rate tells the two decays apart by less than half a unit in the last place
+        return np.maximum(2 * self.root[0], self.slow * 2.0**-60)
+
+    @property
+    def shares(self) -> tuple[Array, Array]:
+        """skew - root and skew + root of an overdamped loop, neither cancelling [1/s]."""
+        # one of the two cancels; their product is the coupling of the two states
+        upward = self.skew >= 0
+        large = self.skew + np.where(upward, self.root[0], -self.root[0])
+        small = -self.matrix[1] * self.matrix[2] / large
+        return np.where(upward, small, large), np.where(upward, large, small)
 
     @property
     def quickest(self) -> Array:
@@ -149,7 +204,9 @@ def equation_of(loop: Loop) -> Equation:
     )
 
 
-def phase(angular_frequency: dd.Pair, time: Array) -> tuple[Array, Array]:
+def phase(
+    angular_frequency: dd.Pair, time: Array, size: Array | float = 1.0
+) -> tuple[Array, Array]:
     """Cosine and sine of omega t, with the product's rounding error carried along.
 
     Without it the phase is off by 1e-16 times its own size: 1e-11 after 1e4 periods.
@@ -160,15 +217,22 @@ def phase(angular_frequency: dd.Pair, time: Array) -> tuple[Array, Array]:
         omega as a pair of doubles, zero or more [rad/s].
     time : Array
         Zero or more; broadcasts against omega [s].
+    size : Array or float
+        Factor of both; broadcasts against the phase [1].
 
     Returns
     -------
     cosine, sine : Array
-        From -1 to 1 [1].
+        From -size to size [1].
     """
     high, low = dd.two_product(angular_frequency[0], time)
     low = low + angular_frequency[1] * time
-    cosine, sine = np.cos(high), np.sin(high)
+    # Numpy's tangent is several times as fast as its sine or cosine; both follow from that of
+    # half the angle.
+    half = np.tan(0.5 * high)
+    square = half * half
+    share = size / (1.0 + square)
+    cosine, sine = (1.0 - square) * share, 2.0 * half * share
     return cosine - low * sine, sine + low * cosine
 
 
@@ -209,26 +273,32 @@ def kernels(eq: Equation, time: Array) -> Kernels:
     Kernels
         With the shape of batch and times together.
     """
-    skew = (eq.matrix[0] - eq.matrix[3]) / 2  # half the difference of the two decay rates
-    coupling = -eq.matrix[1] * eq.matrix[2]
     with np.errstate(invalid="ignore", divide="ignore", under="ignore"):
-        envelope = np.exp(-eq.damping * time)
-        cosine, sine = phase((np.where(eq.underdamped, eq.root[0], 0.0), eq.root[1]), time)
-        ringing = envelope * sine / eq.root[0]
-        # exp(-slow t) times a factor in [0, 1]: neither overflow nor cancellation
-        gap = 2 * eq.root[0]
-        slow_decay = np.exp(-eq.slow * time)
-        creeping = slow_decay * np.where(gap == 0, time, -np.expm1(-gap * time) / gap)
-        s = np.where(eq.underdamped, ringing, creeping)
-        base = np.where(eq.underdamped, envelope * cosine, slow_decay)
-        regular = base + eq.slowest * s
-        # skew -+ root cancels on one side; their product is the coupling
-        large = skew + np.where(skew >= 0, eq.root[0], -eq.root[0])
-        small = coupling / large
-        minus, plus = np.where(skew >= 0, small, large), np.where(skew >= 0, large, small)
-        capacitor = base + np.where(eq.underdamped, skew, minus) * s
-        current = base - np.where(eq.underdamped, skew, plus) * s
-    return Kernels(s, base, regular, capacitor, current)
+        if np.all(eq.underdamped):
+            parts = _ringing(eq, time)
+        elif not np.any(eq.underdamped):
+            parts = _creeping(eq, time)
+        else:
+            both = zip(_ringing(eq, time), _creeping(eq, time), strict=True)
+            parts = tuple(np.where(eq.underdamped, *each) for each in both)
+        s, base, capacitor, current = parts
+        return Kernels(s, base, base + eq.slowest * s, capacitor, current)
+
+
+def _ringing(eq: Equation, time: Array) -> tuple[Array, ...]:
+    """s, base, capacitor and current of underdamped loops."""
+    cosine, sine = phase(eq.root, time, np.exp(-eq.damping * time))
+    s = sine / eq.root[0]
+    return s, cosine, cosine + eq.skew * s, cosine - eq.skew * s
+
+
+def _creeping(eq: Equation, time: Array) -> tuple[Array, ...]:
+    """s, base, capacitor and current of loops that do not ring."""
+    decay = np.exp(-eq.slow * time)
+    # exp(-slow t) times a factor in [0, 1]: neither overflow nor cancellation
+    s = decay * (-np.expm1(-eq.gap * time) / eq.gap)
+    capacitor_rate, current_rate = eq.shares
+    return s, decay, decay + capacitor_rate * s, decay - current_rate * s
 
 
 def free_response(

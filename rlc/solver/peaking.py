@@ -265,8 +265,8 @@ def _course_peaks(case: Case, element: str) -> Peak:
     batch = case.shape
     eq = equation_of(case.loop.map(lambda part: np.broadcast_to(part, batch).ravel()))
 
-    def column(value: Any) -> Array:
-        return np.broadcast_to(value, batch).ravel()[:, np.newaxis]
+    def column(value: Array) -> Array:
+        return value[:, np.newaxis]
 
     rest, lag = balance(eq), final_lag(eq)
     level, slope = shape.level, shape.slope
@@ -276,7 +276,7 @@ def _course_peaks(case: Case, element: str) -> Peak:
         for part, behind in zip(course.free, lag, strict=True)
     )
     a, b, c, d = (column(entry) for entry in eq.matrix)
-    weight_v, weight_i, weight_s = (column(part) for part in w)
+    weight_v, weight_i, weight_s = (column(np.broadcast_to(part, batch).ravel()) for part in w)
     at_rest = weight_v * column(rest[0]) + weight_i * column(rest[1]) + weight_s
     behind = weight_v * column(lag[0]) + weight_i * column(lag[1])
     start = at_rest * level + behind * slope

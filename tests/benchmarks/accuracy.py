@@ -22,9 +22,10 @@ from rlc.solver.loop import Loop, make_loop  # noqa: E402
 from rlc.solver.source import constant, sine  # noqa: E402
 
 WAVES = {"capacitor": "capacitor_voltage", "current": "current"}
-#: Fractions of a natural period: before each time and in the first one, for the running peak.
+#: Fractions of a period: before each time, and in the first one of loop and source, for the
+#: running peak.
 BEFORE = np.array([0.0, 0.13, 0.29, 0.41, 0.63, 0.88])
-FIRST = np.linspace(0.1, 1.0, 10)
+FIRST = np.geomspace(0.02, 1.0, 20)
 
 Draw = Callable[[np.random.Generator], float]
 
@@ -73,16 +74,19 @@ def error_of(rng: np.random.Generator, loop: Loop, kind: str) -> dict[str, float
     unit = Case(loop, constant(1.0))
     natural = float(unit.equation.natural)
     period = 2 * np.pi / natural
+    first = [period * FIRST]
     if kind == "dc":
         source = constant(1.0)
     else:
         close = rng.random() < 0.5
         ratio = 1 + rng.choice([-1, 0, 1]) * 10 ** rng.uniform(-12, -6) if close else None
         ratio = 10 ** rng.uniform(-4, 4) if ratio is None else ratio
-        source = sine(1.0, ratio * natural / (2 * np.pi), rng.choice([0.0, np.pi / 2]))
+        angle = rng.choice([0.0, np.pi / 2, rng.uniform(0, np.pi)])
+        source = sine(1.0, ratio * natural / (2 * np.pi), angle)
+        first.append(period / ratio * FIRST)
     times = 10 ** rng.uniform(-6, 4, 10) * period
-    every = np.sort(np.r_[(times[:, np.newaxis] - period * BEFORE).ravel(), period * FIRST])
-    return worst_error(Case(loop, source), every[every > 0], WAVES)
+    every = np.sort(np.r_[(times[:, np.newaxis] - period * BEFORE).ravel(), np.ravel(first)])
+    return worst_error(Case(loop, source), every[(every > 0) & (every <= np.max(times))], WAVES)
 
 
 def main(loops: int) -> None:
