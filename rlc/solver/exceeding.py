@@ -9,8 +9,8 @@ from numpy.typing import NDArray
 
 from rlc.solver.case import Case
 from rlc.solver.peaking import steady_peak
-from rlc.solver.transient import last_time_outside, transient
-from rlc.solver.turning_points import settled, steps_until, turning_points
+from rlc.solver.transient import last_time_outside, settled, transient
+from rlc.solver.turning_points import steps_until, turning_points
 
 Array = NDArray[np.float64]
 
@@ -96,7 +96,7 @@ def _last(case: Case, element: str, limit: float) -> float:
         last = last_time_outside(case.equation, value, slope, np.asarray(room))
         # rounding of the last crossing must not cut it off
         return (since + float(last)) * (1 + _ROUNDING) + period
-    return settled(case) + period
+    return float(settled(case)) + period
 
 
 def _without_losses(case: Case, peak: float) -> float:

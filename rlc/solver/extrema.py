@@ -10,7 +10,8 @@ from numpy.typing import NDArray
 from rlc.solver.case import Case
 from rlc.solver.results import ringing
 from rlc.solver.shapes import Surge
-from rlc.solver.turning_points import settled, steps_until, turning_points
+from rlc.solver.transient import settled
+from rlc.solver.turning_points import steps_until, turning_points
 
 Array = NDArray[np.float64]
 
@@ -77,7 +78,7 @@ def _end(case: Case, count: int) -> float:
     source = case.source
     frequencies = [float(np.nan_to_num(ringing(case))), float(source.frequency)]
     slowest = min((each for each in frequencies if each), default=0.0)
-    end = settled(case)
+    end = float(settled(case))
     if not slowest:
         return end
     # A source that takes its time has turning points of its own.

@@ -13,6 +13,7 @@ from rlc.solver.driven import driven_from_rest
 from rlc.solver.equation import Equation, angular, equation_of, kernels, phase
 from rlc.solver.shapes import Piecewise, Surge
 from rlc.solver.source import ANY_ANGLE, Window
+from rlc.solver.transient import TIME_CONSTANTS, settled
 from rlc.solver.waveforms import states
 
 Array = NDArray[np.float64]
@@ -21,9 +22,8 @@ _NODES = 16
 _ANGLES, _NEWTON_STEPS = 256, 4
 # Half a cycle of the fastest motion to a panel of the integral; so many panels at a time.
 _PANELS_AT_ONCE = 4096
-# After so many time constants only a constant current is left: 1e-17 of the transient.
-_TIME_CONSTANTS = 40.0
 _BISECTIONS = 60
+_SECTIONS, _SECTIONINGS = 256, 7
 
 
 def total_let_through(case: Case) -> Array:
@@ -56,7 +56,7 @@ def total_let_through(case: Case) -> Array:
     before = np.zeros(case.shape)
     end = shape.settled if isinstance(shape, Piecewise) else 0.0
     if isinstance(shape, Surge):
-        end = _TIME_CONSTANTS / shape.slow
+        end = TIME_CONSTANTS / shape.slow
     if 0 < end < np.inf:
         before = let_through(case, end)
         _, voltage, current = (part[..., 0] for part in states(case, np.array([end]), 0.0))
@@ -67,7 +67,7 @@ def total_let_through(case: Case) -> Array:
     still = (loop.load_conductance == 0) | (case.source.amplitude == 0)
     ends = still & (not case.source.alternating) & (not case.repeats)
     if shape is not None and np.any(ends & (loop.load_conductance > 0)):
-        return let_through(case, end + _TIME_CONSTANTS / case.equation.slowest)
+        return let_through(case, end + TIME_CONSTANTS / case.equation.slowest)
     return np.where(stored + before == 0, 0.0, np.where(ends, total, np.inf))
 
 
@@ -201,26 +201,37 @@ def let_through_time(case: Case, fraction: Any) -> Array:
         where that is zero or infinite, or the share is above 1 [s].
     """
     whole = whole_let_through(case)
-    source = case.source
-    end = 1.0 / source.frequency if source.alternating else _settled(case)
     wanted = np.asarray(fraction) * whole
+    end = 1.0 / case.source.frequency if case.source.alternating else settled(case)
+    end = np.broadcast_to(end, wanted.shape)
     with np.errstate(invalid="ignore"):
         known = np.isfinite(wanted) & (wanted > 0) & (np.asarray(fraction) <= 1)
-    low = np.zeros(wanted.shape)
-    high = np.where(known, np.broadcast_to(end, wanted.shape), 0.0)
-    for _ in range(_BISECTIONS):
-        middle = (low + high) / 2
-        below = let_through(case, middle) < wanted
-        low, high = np.where(below, middle, low), np.where(below, high, middle)
-    return np.where(known, high, np.nan)
+    known &= np.isfinite(end) & (not case.repeats)
+    low, high = np.zeros(wanted.shape), np.where(known, end, 0.0)
+    if case.source.kind in ("dc", "sine"):
+        for _ in range(_BISECTIONS):
+            middle = (low + high) / 2
+            below = let_through(case, middle) < wanted
+            low, high = np.where(below, middle, low), np.where(below, high, middle)
+        return np.where(known, high, np.nan)
+    closed, found = case.closed_for("current"), np.full(wanted.shape, np.nan)
+    for index in np.ndindex(wanted.shape):
+        if not known[index]:
+            continue
+        one = closed.one(index) if closed.shape else closed
+        found[index] = _section(one, float(wanted[index]), float(high[index]))
+    return found
 
 
-def _settled(case: Case) -> Array:
-    """When nothing passes any more."""
-    shape = case.source.shape
-    end = _TIME_CONSTANTS / shape.slow if isinstance(shape, Surge) else 0.0
-    end = shape.settled if isinstance(shape, Piecewise) else end
-    return end + _TIME_CONSTANTS / case.equation.slowest
+def _section(case: Case, wanted: float, high: float) -> float:
+    """The same for one loop: sections of the bracket, all integrated at once."""
+    low = 0.0
+    for _ in range(_SECTIONINGS):
+        cuts = np.linspace(low, high, _SECTIONS + 1)
+        above = np.flatnonzero(running_let_through(case, cuts) >= wanted)
+        place = int(above[0]) if above.size else _SECTIONS
+        low, high = float(cuts[max(place - 1, 0)]), float(cuts[place])
+    return high
 
 
 def whole_let_through(case: Case) -> Array:
@@ -311,9 +322,9 @@ def _edges(case: Case, end: float) -> Array:
                         for o in case.source.every_order)])  # fmt: skip
     last = knots[-1]
     if isinstance(shape, Surge):
-        quick, last = max(quick, shape.fast), _TIME_CONSTANTS / shape.slow
+        quick, last = max(quick, shape.fast), TIME_CONSTANTS / shape.slow
     with np.errstate(divide="ignore"):
-        tail = float(last + _TIME_CONSTANTS / eq.slowest)
+        tail = float(last + TIME_CONSTANTS / eq.slowest)
     until = end if case.source.alternating else min(end, tail)
     steps = np.arange(0.0, until, np.pi / rate)
     # what decays faster than a half cycle is met in steps that double

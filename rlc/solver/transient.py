@@ -13,11 +13,13 @@ from rlc.solver.lines import balance
 from rlc.solver.peaking import steady_peak
 from rlc.solver.peaks import first_extremum
 from rlc.solver.search import PROVED_GAP
-from rlc.solver.shapes import Piecewise
+from rlc.solver.shapes import Piecewise, Surge
 
 Array = NDArray[np.float64]
 
 _ITERATIONS = 100
+# After so many time constants nothing is left of free motion but rounding: 4e-18.
+TIME_CONSTANTS = 40.0
 
 
 class Transient(NamedTuple):
@@ -83,6 +85,30 @@ def transient(case: Case, element: str = "capacitor") -> Transient:
         slope = slope + np.imag(turn**order.number * wave.slope)
     on = np.abs(value) if source.kind == "dc" else steady_peak(closed, element)
     return Transient(value, slope, on)
+
+
+def settled(case: Case) -> Array:
+    """When free motion has gone and the source has come to its end.
+
+    Parameters
+    ----------
+    case : Case
+        One switch-on or a batch.
+
+    Returns
+    -------
+    Array
+        Since closing; infinite without losses. Of a train of pulses that is repeated until
+        steady its end [s].
+    """
+    if case.repeats:
+        return np.full(case.shape, case.course_end)
+    shape = case.source.shape
+    end = shape.settled if isinstance(shape, Piecewise) else 0.0
+    if isinstance(shape, Surge):
+        end = TIME_CONSTANTS / shape.slow
+    with np.errstate(divide="ignore"):
+        return end + TIME_CONSTANTS / case.equation.slowest
 
 
 def settling_time(case: Case, band: float | Array = 0.02) -> Array:

@@ -12,32 +12,6 @@ Array = NDArray[np.float64]
 
 _STEPS_PER_CYCLE, _FEWEST_STEPS, _MOST_STEPS = 64, 1024, 400_000
 _SECTIONS, _SECTIONINGS = 32, 9
-# After so many time constants nothing is left of free motion but rounding: 4e-18.
-TIME_CONSTANTS = 40.0
-
-
-def settled(case: Case) -> float:
-    """When free motion has gone and the source has come to its end.
-
-    Parameters
-    ----------
-    case : Case
-        One loop, shape ().
-
-    Returns
-    -------
-    float
-        Since closing; infinite without losses [s].
-    """
-    shape = case.source.shape
-    if case.lines is not None:
-        last = float(case.course_end) if case.repeats else float(case.lines.start[-1])
-    else:
-        last = TIME_CONSTANTS / shape.slow if isinstance(shape, Surge) else 0.0
-    if case.repeats:
-        return last
-    with np.errstate(divide="ignore"):
-        return last + float(TIME_CONSTANTS / case.equation.slowest)
 
 
 def steps_until(case: Case, end: float) -> Array:
