@@ -2,11 +2,12 @@
 
 References: ``scipy.integrate.solve_ivp`` (DOP853, at the tolerance that gives about the same
 accuracy), ``scipy.signal.lsim`` on the same grid, and the elementary functions that a waveform
-cannot do without.
+cannot do without. Times are medians of several runs; loops are solved from their parts each time.
 """
 
 from __future__ import annotations
 
+import statistics
 import time
 from collections.abc import Callable
 from typing import Any
@@ -16,21 +17,25 @@ from scipy import signal
 from scipy.integrate import solve_ivp
 
 from rlc.solver.case import Case
+from rlc.solver.driven import driven_states
+from rlc.solver.equation import equation_of
 from rlc.solver.loop import make_loop
 from rlc.solver.source import Source, constant
 
-POINTS, LOOPS, REPEATS = 500, 10_000, 5
-LEVEL, FREQUENCY = 10.0, 3e3
+POINTS, LOOPS, REPEATS = 500, 10_000, 7
+LEVEL = 10.0
+#: Samples that elementary functions are timed on, few enough to stay in the cache.
+SAMPLES = 16_384
 
 
 def seconds(work: Callable[[], Any], repeats: int = REPEATS) -> float:
-    """The fastest of several runs."""
-    best = np.inf
+    """The median of several runs."""
+    taken = []
     for _ in range(repeats):
         start = time.perf_counter()
         work()
-        best = min(best, time.perf_counter() - start)
-    return best
+        taken.append(time.perf_counter() - start)
+    return statistics.median(taken)
 
 
 def random_case(count: int, sine: bool, seed: int = 1) -> Case:
@@ -87,40 +92,64 @@ def simulate(case: Case, index: int, grid: np.ndarray) -> Any:
     return signal.lsim(system, np.full(grid.size, LEVEL), grid)
 
 
+def states(case: Case, grid: np.ndarray) -> tuple[np.ndarray, np.ndarray]:
+    """Capacitor voltage and current of every loop, from the parts on."""
+    source = case.source
+    given = source.amplitude, source.frequency, source.closing_angle
+    given += case.capacitor_voltage, case.initial_current
+    columns = (np.asarray(value, dtype=float)[..., np.newaxis] for value in given)
+    return driven_states(equation_of(case.loop).column(), *columns, grid)
+
+
+def elementary(sine: bool) -> float:
+    """Seconds a sample for what a damped sine needs, and a source that turns if there is one."""
+    x = np.linspace(0, 30, SAMPLES)
+    buffer = np.empty_like(x)
+    functions = (np.exp, np.sin, np.cos, *((np.sin, np.cos) if sine else ()))
+
+    def work() -> None:
+        for function in functions:
+            function(-x, out=buffer)
+
+    return seconds(work, 201) / SAMPLES
+
+
 def main() -> None:
     """Print each ratio."""
     batch, grid = random_case(LOOPS, sine=False), np.linspace(0, 1e-3, POINTS)
     few = range(20)
     single = Case(batch.loop.map(lambda value: value[0]), batch.source)
 
-    ours_one = seconds(lambda: single.waveforms(grid), 50)
-    ours_batch = seconds(lambda: batch.waveforms(grid), 2) / LOOPS
-    by_integrator = seconds(lambda: [integrate(batch, k, grid) for k in few], 2) / len(few)
+    for words, case in (("dc", batch), ("sine", random_case(LOOPS, sine=True))):
+        sample = seconds(lambda case=case: states(case, grid)) / LOOPS / POINTS
+        ratio = sample / elementary(words == "sine")
+        print(f"v_C and i under {words}, {LOOPS} loops, per sample: {ratio:.1f} x exp, sin and cos")
+
+    by_integrator = seconds(lambda: [integrate(batch, k, grid) for k in few], 3) / len(few)
     by_simulation = seconds(lambda: [simulate(batch, k, grid) for k in few], 3) / len(few)
-    for words, ours in (("one loop", ours_one), (f"{LOOPS} loops", ours_batch)):
+    for words, ours in (
+        ("v_C and i, one loop", seconds(lambda: states(single, grid), 101)),
+        (f"v_C and i, {LOOPS} loops", seconds(lambda: states(batch, grid)) / LOOPS),
+        ("all waveforms, one loop", seconds(lambda: single.waveforms(grid), 101)),
+        (f"all waveforms, {LOOPS} loops", seconds(lambda: batch.waveforms(grid), 3) / LOOPS),
+    ):
         integrator, simulation = by_integrator / ours, by_simulation / ours
-        print(f"waveform, {words}: solve_ivp {integrator:.0f} x, lsim {simulation:.0f} x as long")
+        print(f"{words}, step: solve_ivp {integrator:.0f} x, lsim {simulation:.0f} x as long")
 
     def peaks() -> None:
         Case(batch.loop, batch.source).peak("current")
 
     ours_peak = seconds(peaks) / LOOPS
-    peak = seconds(lambda: [integrate(batch, k, grid, peak=True) for k in few], 2) / len(few)
+    peak = seconds(lambda: [integrate(batch, k, grid, peak=True) for k in few], 3) / len(few)
     integrator, simulation = peak / ours_peak, by_simulation / ours_peak
     print(f"peak of a step, {LOOPS} loops: solve_ivp {integrator:.0f} x, lsim {simulation:.0f} x")
-
-    x = np.linspace(0, 30, LOOPS * 50)
-    floor = seconds(lambda: (np.exp(-x), np.sin(x), np.cos(x))) / x.size
-    print(f"waveform, per sample: {ours_batch / POINTS / floor:.1f} x exp, sin and cos of it")
 
     for words, angle in (("closing at 0", 0.0), ("worst angle", None)):
         found = random_case(2000, sine=True, seed=2)
         source = Source(found.source.amplitude, found.source.frequency, angle)  # type: ignore[arg-type]
         for element in ("current", "capacitor"):
-            case = Case(found.loop, source)
-            start = time.perf_counter()
-            case.peak(element)
-            rate = 2000 / (time.perf_counter() - start)
+            taken = seconds(lambda: Case(found.loop, source).peak(element), 3)  # noqa: B023
+            rate = 2000 / taken
             print(f"proved peaks under a sine, {words}, {element}: {rate:.0f} loops per second")
 
 
