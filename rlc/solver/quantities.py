@@ -23,6 +23,9 @@ _FREE = "OpenStax, University Physics vol. 2, section 14.6"
 _STEP = "step response of a second-order system: K. Ogata, Modern Control Engineering (from memory)"
 _SEARCH = "steady state plus free motion; branch and bound over time, proved to 1e-9"
 
+#: Convention of what adds up over the orders of a source with harmonics.
+_ALL = "harmonics included unless asked at a frequency"
+
 SETTLING_BAND = 0.02
 HALF = 0.5
 
@@ -104,65 +107,69 @@ _ROWS: tuple[Quantity, ...] = (
         lambda c, at, across: np.angle(results.steady_at(c, at).impedance), "frequency",
     ),
     Quantity(
-        "current", "I", "current", "steady", "rms", "Loop current.", "V/|Z|", _AC,
-        lambda c, at, across: results.rms(c, results.steady_at(c, at).current), "frequency",
+        "current", "I", "current", "steady", f"rms, {_ALL}", "Loop current.", "V/|Z|", _AC,
+        lambda c, at, across: results.current(c, at), "frequency",
     ),
     Quantity(
-        "current_amplitude", "I_pk", "current", "steady", "peak, steady state",
+        "current_amplitude", "I_pk", "current", "steady", "peak, steady state, fundamental",
         "Amplitude of the loop current when the transient has died.", "V_pk/|Z|", _AC,
         lambda c, at, across: np.abs(results.phasor_current(c, at)), "frequency",
     ),
     Quantity(
-        "current_phase", "phi_i", "angle", "steady", "lags the source if negative",
+        "current_phase", "phi_i", "angle", "steady",
+        "lags the source if negative; of the fundamental",
         "Phase of the current against the source.", "-arg Z", _AC,
         lambda c, at, across: np.angle(results.steady_at(c, at).current), "frequency",
     ),
     Quantity(
-        "resistor_voltage", "V_R", "voltage", "steady", "rms", "Voltage across the resistor.",
-        "R I", _AC, lambda c, at, across: results.rms(c, results.steady_at(c, at).resistor),
-        "frequency",
+        "resistor_voltage", "V_R", "voltage", "steady", f"rms, {_ALL}",
+        "Voltage across the resistor.", "R I", _AC,
+        lambda c, at, across: results.current(c, at) * c.loop.resistance, "frequency",
     ),
     Quantity(
-        "inductor_voltage", "V_L", "voltage", "steady", "rms, winding resistance included",
+        "inductor_voltage", "V_L", "voltage", "steady",
+        f"rms, winding resistance included; {_ALL}",
         "Voltage across the inductor's terminals.", "|R_w + j omega L| I", _AC,
-        lambda c, at, across: results.rms(c, results.steady_at(c, at).inductor), "frequency",
+        lambda c, at, across: results.rms(c, at, lambda steady: steady.inductor), "frequency",
     ),
     Quantity(
-        "capacitor_voltage", "V_C", "voltage", "steady", "rms, series resistance included",
-        "Voltage across the capacitor's terminals.", "|r + 1/(j omega C)| I without a load",
-        _AC, lambda c, at, across: results.rms(c, results.steady_at(c, at).capacitor), "frequency",
+        "capacitor_voltage", "V_C", "voltage", "steady",
+        f"rms, series resistance included; {_ALL}",
+        "Voltage across the capacitor's terminals.", "|r + 1/(j omega C)| I without a load", _AC,
+        lambda c, at, across: results.rms(c, at, lambda steady: steady.capacitor), "frequency",
     ),
     Quantity(
-        "capacitor_voltage_amplitude", "V_C,pk", "voltage", "steady", "peak, steady state",
+        "capacitor_voltage_amplitude", "V_C,pk", "voltage", "steady",
+        "peak, steady state, fundamental",
         "Amplitude of the capacitor's terminal voltage when the transient has died.",
         "sqrt(2) V_C for a sine", _AC,
-        lambda c, at, across: np.abs(c.source.amplitude * results.steady_at(c, at).capacitor),
+        lambda c, at, across: results.level(c) * np.abs(results.steady_at(c, at).capacitor),
         "frequency",
     ),
     Quantity(
-        "resistor_power", "P_R", "power", "steady", "mean", "Heat in the resistor alone.",
+        "resistor_power", "P_R", "power", "steady", f"mean, {_ALL}", "Heat in the resistor alone.",
         "R I^2", _AC, lambda c, at, across: results.resistor_power(c, at), "frequency",
     ),
     Quantity(
-        "real_power", "P", "power", "steady", "mean, all losses of the loop",
+        "real_power", "P", "power", "steady", f"mean, all losses of the loop; {_ALL}",
         "Power that the source delivers.", "V I cos(phi_i)", _AC,
-        lambda c, at, across: np.real(results.apparent(c, at)), "frequency",
+        lambda c, at, across: results.real_power(c, at), "frequency",
     ),
     Quantity(
-        "reactive_power", "Q_r", "reactive_power", "steady", "inductive if positive",
+        "reactive_power", "Q_r", "reactive_power", "steady",
+        "inductive if positive; of the fundamental",
         "Reactive power that the source delivers.", "-V I sin(phi_i)", _AC,
-        lambda c, at, across: np.imag(results.apparent(c, at)), "frequency",
+        lambda c, at, across: results.reactive_power(c, at), "frequency",
     ),
     Quantity(
-        "apparent_power", "S", "apparent_power", "steady", "rms times rms",
+        "apparent_power", "S", "apparent_power", "steady", f"rms times rms, {_ALL}",
         "Source voltage times current.", "V I", _AC,
-        lambda c, at, across: np.abs(results.apparent(c, at)), "frequency",
+        lambda c, at, across: results.apparent_power(c, at), "frequency",
     ),
     Quantity(
-        "power_factor", "cos phi", "number", "steady", "unsigned; see current_phase",
+        "power_factor", "cos phi", "number", "steady", f"unsigned, {_ALL}",
         "Real over apparent power.", "P/S", _AC,
-        lambda c, at, across: np.real(results.apparent(c, at)) / np.abs(results.apparent(c, at)),
-        "frequency",
+        lambda c, at, across: results.power_factor(c, at), "frequency",
     ),
     Quantity(
         "voltage_magnification", "m", "number", "steady", "amplitude over amplitude",

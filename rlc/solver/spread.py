@@ -3,7 +3,7 @@
 from __future__ import annotations
 
 from collections.abc import Iterator
-from dataclasses import dataclass
+from dataclasses import dataclass, replace
 from itertools import product
 from typing import Any, Literal, NamedTuple
 
@@ -245,7 +245,7 @@ def spread(case: Case, parts: tuple[Part, ...], samples: int, seed: int) -> Spre
     loop = case.loop
     values: dict[str, Any] = {name: getattr(loop, name) for name in loop.__dataclass_fields__}
     values.update(rows or {"resistance": np.array([loop.resistance])})
-    batch = Case(Loop(**values), case.source, case.capacitor_voltage, case.initial_current)
+    batch = replace(case, loop=Loop(**values))
     return Spread(batch, spread_parts, count, seed)
 
 
@@ -261,12 +261,11 @@ def _limits(case: Case, parts: tuple[Part, ...]) -> dict[str, Array]:
 
 
 def _resonances(case: Case, parts: dict[str, Part]) -> Iterator[dict[str, float]]:
-    """Units in which the source's frequency is the resonance of inductance and capacitance.
+    """Units in which a frequency of the source is the resonance of inductance and capacitance.
 
     A resonance inside the tolerances is worse than any corner, and corners miss it.
     """
-    omega = 2 * np.pi * float(case.source.frequency)
-    if omega == 0:
+    if not case.source.alternating:
         return
 
     def ends(field: str) -> tuple[float, ...]:
@@ -274,10 +273,14 @@ def _resonances(case: Case, parts: dict[str, Part]) -> Iterator[dict[str, float]
         return (part.low, part.high) if part else (float(getattr(case.loop, field)),)
 
     extra = float(case.loop.source_inductance)
-    for resistance, inductance in product(ends("resistance"), ends("inductance")):
-        yield from _between(parts, resistance, inductance, 1 / (omega**2 * (inductance + extra)))
-    for resistance, capacitance in product(ends("resistance"), ends("capacitance")):
-        yield from _between(parts, resistance, 1 / (omega**2 * capacitance) - extra, capacitance)
+    for order in case.source.every_order:
+        squared = (2 * np.pi * order.number * float(case.source.frequency)) ** 2
+        for resistance, inductance in product(ends("resistance"), ends("inductance")):
+            capacitance = 1 / (squared * (inductance + extra))
+            yield from _between(parts, resistance, inductance, capacitance)
+        for resistance, capacitance in product(ends("resistance"), ends("capacitance")):
+            inductance = 1 / (squared * capacitance) - extra
+            yield from _between(parts, resistance, inductance, capacitance)
 
 
 def _between(

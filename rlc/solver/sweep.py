@@ -83,8 +83,11 @@ def sweep(case: Case, start: float | None, stop: float | None, points: int) -> S
     InputError
         If the range is empty or `points` is out of range.
     """
-    sine = case.source.kind == "sine"
-    within = [float(REGISTER["natural_frequency"](case)), *[float(case.source.frequency)] * sine]
+    alternating = case.source.alternating
+    within = [
+        float(REGISTER["natural_frequency"](case)),
+        *[float(case.source.frequency)] * alternating,
+    ]
     first = min(within) / 10 if start is None else start
     last = max(within) * 10 if stop is None else stop
     if not 0 < first < last:
@@ -94,7 +97,7 @@ def sweep(case: Case, start: float | None, stop: float | None, points: int) -> S
     if not 2 <= points <= MOST_POINTS:
         raise InputError("points", points, f"must be from 2 to {MOST_POINTS}")
     marks = {float(REGISTER[name](case)): REGISTER[name].symbol for name in _MARKED}
-    if sine:
+    if alternating:
         marks.setdefault(float(case.source.frequency), "source")
     marks = {place: name for place, name in marks.items() if first <= place <= last}
     steps = np.geomspace(first, last, points)
@@ -102,7 +105,7 @@ def sweep(case: Case, start: float | None, stop: float | None, points: int) -> S
     apart = [not any(math.isclose(step, mark) for mark in marks) for step in steps]
     frequency = np.sort(np.concatenate([steps[apart], list(marks)]))
     asked: list[tuple[str, str | None]] = [("impedance", None), ("impedance_phase", None)]
-    if sine:
+    if alternating:
         asked += [("current", None)]
     asked += [("current_phase", None), *(("gain", element) for element in ELEMENTS)]
     columns = (
