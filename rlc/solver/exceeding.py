@@ -89,6 +89,8 @@ def exceeded(case: Case, element: str, limit: float) -> Exceeded:
 def _last(case: Case, element: str, limit: float) -> float:
     """A time after which the limit is not exceeded for the first time, nor ever again if free
     motion alone exceeds it [s]."""
+    if float(case.equation.damping) == 0:
+        return np.inf
     value, slope, _, since = transient(case, element)
     period = _PERIODS / float(case.source.frequency) if case.source.alternating else 0.0
     room = limit - float(steady_peak(case, element))

@@ -21,6 +21,9 @@ MOST_PULSES = 100_000
 # IEC 60060-1: the front is 1/0.6 of the time from 30 % to 90 % of the peak.
 _LOW, _HIGH, _HALF = 0.3, 0.9, 0.5
 
+# An edge that is a smaller share of its pulse is a jump: the sum of both rounds it away.
+_NO_TIME = 1e-15
+
 
 @dataclass(frozen=True, eq=False)
 class Piecewise:
@@ -250,7 +253,7 @@ def pulse(
     lines = [
         line
         for line in ((rise_time, 0.0, voltage), (flat, voltage, voltage), (fall_time, voltage, 0.0))
-        if line[0] > 0
+        if line[0] > _NO_TIME * lasts
     ]
     lengths, level, end = zip(*lines, strict=True)
     start = np.cumsum([0.0, *lengths])

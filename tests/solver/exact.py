@@ -10,6 +10,7 @@ import numpy as np
 from mpmath import mp, mpc, mpf
 
 from rlc.solver.case import Case
+from rlc.solver.shapes import Surge
 
 DIGITS = 50
 
@@ -53,9 +54,26 @@ class Exact:
             self.amplitude = mpf(float(case.source.amplitude))
             self.omega = 2 * mp.pi * mpf(float(case.source.frequency))
             # a constant source is closed at its top
-            sine = case.source.kind == "sine"
-            self.angle = mpf(float(case.source.closing_angle)) if sine else mp.pi / 2
+            turned = case.source.alternating
+            self.angle = mpf(float(case.source.closing_angle)) if turned else mp.pi / 2
+            self.lines, self.terms = case.lines, self._terms(case)
             self.start = mpf(float(case.capacitor_voltage)), mpf(float(case.initial_current))
+
+    def _terms(self, case: Case) -> list[tuple]:
+        """The source as the imaginary part of phasors times exp(p t): (phasor, p) of each."""
+        if isinstance(case.source.shape, Surge):
+            surge = case.source.shape
+            scale, rates = mpf(surge.scale), (mpf(surge.slow), mpf(surge.fast))
+            return [(mpc(0, scale), -rates[0]), (mpc(0, -scale), -rates[1])]
+        return [
+            (
+                self.amplitude
+                * mpf(order.share)
+                * mp.expj(order.number * self.angle + mpf(order.phase)),
+                mpc(0, order.number * self.omega),
+            )
+            for order in case.source.every_order
+        ]
 
     @property
     def w0(self) -> mpf:
@@ -77,24 +95,52 @@ class Exact:
 
     def phasors(self, omega: mpf | None = None) -> tuple:
         """(j omega - A)^-1 b for a source of 1 V, by Cramer's rule."""
-        p = mpc(0, self.omega if omega is None else omega)
+        return self.response(mpc(0, self.omega if omega is None else omega))
+
+    def response(self, p: mpc) -> tuple:
+        """(p - A)^-1 b for a source of exp(p t) volts."""
         A = self.A
         determinant = p * p + self.gamma * p + self.w0_squared
         return A[0, 1] / self.L / determinant, (p - A[0, 0]) / self.L / determinant
+
+    def _along_lines(self, t: mpf) -> tuple:
+        """States and source at a time, line by line: balance, lag and free motion."""
+        A = self.A
+        rest = mpmath.lu_solve(A, mpmath.matrix([0, -1 / self.L]))
+        lag = mpmath.lu_solve(A, rest)
+        lines, state = self.lines, self.start
+        starts = [mpf(float(each)) for each in lines.start]
+        for k, start in enumerate(starts):
+            level, end = mpf(float(lines.level[k])), mpf(float(lines.end[k]))
+            last = k + 1 == len(starts)
+            slope = mpf(0) if last else (end - level) / (starts[k + 1] - start)
+            since = t - start if last or t < starts[k + 1] else starts[k + 1] - start
+            free = self.propagate(
+                since, tuple(state[n] - rest[n] * level - lag[n] * slope for n in (0, 1))
+            )
+            source = level + slope * since
+            state = tuple(rest[n] * source + lag[n] * slope + mp.re(free[n]) for n in (0, 1))
+            if last or t < starts[k + 1]:
+                break
+        return *state, source
+
+    def _under_terms(self, t: mpf) -> tuple:
+        free = self.propagate(t, self.start)
+        v, i, source = mp.re(free[0]), mp.re(free[1]), mpf(0)
+        for phasor, p in self.terms:
+            held = [phasor * each for each in self.response(p)]
+            gone = self.propagate(t, held)
+            ahead = mp.exp(p * t)
+            v += (ahead * held[0] - gone[0]).imag
+            i += (ahead * held[1] - gone[1]).imag
+            source += (ahead * phasor).imag
+        return v, i, source
 
     def at(self, time: float) -> Moment:
         """Everything at one time [s]."""
         with mp.workdps(DIGITS):
             t = mpf(float(time))
-            turn = self.amplitude * mp.expj(self.angle)
-            steady = [turn * phasor for phasor in self.phasors()]
-            gone = self.propagate(t, steady)
-            free = self.propagate(t, self.start)
-            ahead = mp.expj(self.omega * t)
-            v, i = (
-                (ahead * x - y).imag + mp.re(z) for x, y, z in zip(steady, gone, free, strict=True)
-            )
-            source = self.amplitude * mp.sin(self.omega * t + self.angle)
+            v, i, source = (self._under_terms if self.lines is None else self._along_lines)(t)
             slope = mp.re(self.A[1, 0] * v + self.A[1, 1] * i) + source / self.L
             return Moment(
                 dielectric=v,
