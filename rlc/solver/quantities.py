@@ -272,13 +272,13 @@ _ROWS: tuple[Quantity, ...] = (
     ),
     Quantity(
         "current_exceeding_time", "t_i>", "time", "switch-on",
-        "of the current stated with at, peak; none if never",
+        "of the current stated with at, peak; infinite if never",
         "When the current first exceeds a stated one.", "first t with |i(t)| > stated", _SEARCH,
         lambda c, at, across: results.exceeding(c, "current", at, 0), "current",
     ),
     Quantity(
         "capacitor_voltage_exceeding_time", "t_C>", "time", "switch-on",
-        "of the voltage stated with at, peak at the terminals; none if never",
+        "of the voltage stated with at, peak at the terminals; infinite if never",
         "When the capacitor voltage first exceeds a stated one.",
         "first t with |v_C(t)| > stated", _SEARCH,
         lambda c, at, across: results.exceeding(c, "capacitor", at, 0), "voltage",

@@ -333,11 +333,13 @@ def exceeding(case: Case, element: str, limit: Any, which: int) -> Any:
     Returns
     -------
     Array
-        Not a number where it does not exist [s].
+        Not a number without a limit; infinite if it is never exceeded [s].
     """
     if limit is None:
         return np.nan
-    return exceeded_of(case, element, limit)[which]
+    found = exceeded_of(case, element, limit)[which]
+    # a limit that is never exceeded is one that takes for ever
+    return found if which else np.where(np.isnan(found), np.inf, found)
 
 
 def peak_time(case: Case, element: str) -> Array:
