@@ -15,7 +15,7 @@ import numpy as np
 from numpy.typing import NDArray
 
 from rlc.solver import doubledouble as dd
-from rlc.solver.equation import Array, Complex, Equation, angular
+from rlc.solver.equation import Array, Complex, Equation
 from rlc.solver.regimes import (
     Regime,
     creeping_under_constant,
@@ -43,8 +43,9 @@ def driven_states(
     capacitor_voltage: Array,
     initial_current: Array,
     time: Array,
+    order: Array | float = 1.0,
 ) -> tuple[Array, Array]:
-    r"""States of loops that close onto :math:`A\sin(\omega t + \varphi)`.
+    r"""States of loops that close onto :math:`A\sin(n\omega t + \varphi)`.
 
     Everything broadcasts together. Loops on the leading axes and times on the last one, which
     for everything else has length one, is the fast way: what belongs to the loop is then worked
@@ -64,6 +65,8 @@ def driven_states(
         States at closing [V], [A].
     time : Array
         Since closing, zero or more [s].
+    order : Array or float
+        n, the number of the harmonic: n times the frequency is not rounded [1].
 
     Returns
     -------
@@ -77,7 +80,7 @@ def driven_states(
     1e-14 (``tests/benchmarks/accuracy.py`` prints it by regime).
     """
     level, swing = amplitude * np.sin(closing_angle), amplitude * np.cos(closing_angle)
-    drive = Drive(level, swing, frequency, capacitor_voltage, initial_current)
+    drive = Drive(level, swing, frequency, np.asarray(order), capacitor_voltage, initial_current)
     voltage, current = _states(eq, drive, np.asarray(time))
     return voltage, current
 
@@ -102,7 +105,7 @@ def driven_from_rest(eq: Equation, frequency: Array, time: Array) -> tuple[Compl
     """
     zero, one = np.zeros(()), np.ones(())
     cosine, sine = (
-        _states(eq, Drive(level, swing, frequency, zero, zero), np.asarray(time))
+        _states(eq, Drive(level, swing, frequency, one, zero, zero), np.asarray(time))
         for level, swing in ((one, zero), (zero, one))
     )
     return cosine[0] + 1j * sine[0], cosine[1] + 1j * sine[1]
@@ -132,7 +135,7 @@ def _states(eq: Equation, drive: Drive, time: Array) -> Array:
         return states.reshape(2, *shape)
     with np.errstate(invalid="ignore", divide="ignore", under="ignore"):
         rows, drives = eq.map(in_a_row), Drive(*(in_a_row(value) for value in drive))
-        for build, members in _kinds(rows, drives.frequency, instants):
+        for build, members in _kinds(rows, drives, instants):
             chosen = members if loops > 1 else ()
             regime = build(
                 rows.map(operator.itemgetter(chosen)), Drive(*(value[chosen] for value in drives))
@@ -141,11 +144,11 @@ def _states(eq: Equation, drive: Drive, time: Array) -> Array:
     return states.reshape(2, *shape)
 
 
-def _kinds(eq: Equation, frequency: Array, time: Array) -> Iterator[tuple[Build, NDArray[np.intp]]]:
+def _kinds(eq: Equation, drive: Drive, time: Array) -> Iterator[tuple[Build, NDArray[np.intp]]]:
     """Loops of each kind, those first whose times are the earliest to their rates."""
-    omega = angular(frequency)
+    omega = drive.omega
     detuning = dd.subtract(omega, eq.root)[0]
-    constant, rings = frequency == 0, eq.underdamped
+    constant, rings = omega[0] == 0, eq.underdamped
     distance = eq.damping * eq.damping + detuning * detuning
     near = rings & (distance < _NEAR * _NEAR * eq.natural_squared[0])
     lateness = np.atleast_1d(np.maximum(eq.quickest, omega[0]) * np.mean(time, axis=1))

@@ -331,23 +331,27 @@ def free_response(
     )
 
 
-def angular(frequency: Array) -> dd.Pair:
+def angular(frequency: Array, order: Array | float = 1.0) -> dd.Pair:
     """Angular frequency as a pair of doubles.
 
     Parameters
     ----------
     frequency : Array
         Zero or more [Hz].
+    order : Array or float
+        Number of the harmonic; their product is not rounded [1].
 
     Returns
     -------
     (Array, Array)
-        2 pi f [rad/s].
+        2 pi n f [rad/s].
     """
-    return dd.multiply(dd.exact(frequency), dd.TWO_PI)
+    return dd.multiply(dd.two_product(frequency, np.asarray(order)), dd.TWO_PI)
 
 
-def steady_states(eq: Equation, frequency: Array) -> tuple[Complex, Complex]:
+def steady_states(
+    eq: Equation, frequency: Array, order: Array | float = 1.0
+) -> tuple[Complex, Complex]:
     """Phasors (V_C, I) of the steady state for a source of 1 V at phase zero.
 
     The reactance's difference is formed in pairs of doubles; at an undamped resonance the
@@ -359,6 +363,8 @@ def steady_states(eq: Equation, frequency: Array) -> tuple[Complex, Complex]:
         A batch of loops.
     frequency : Array
         Zero or more; broadcasts against the batch [Hz].
+    order : Array or float
+        Number of the harmonic, as for :func:`angular` [1].
 
     Returns
     -------
@@ -369,7 +375,7 @@ def steady_states(eq: Equation, frequency: Array) -> tuple[Complex, Complex]:
     ----------
     .. [1] OpenStax, University Physics vol. 2, sections 15.2 to 15.5, for the loop without a load.
     """
-    omega = angular(frequency)
+    omega = angular(frequency, order)
     detuning = dd.subtract(eq.natural_squared, dd.multiply(omega, omega))[0]
     with np.errstate(divide="ignore", invalid="ignore"):
         denominator = detuning + 1j * eq.gamma * omega[0]

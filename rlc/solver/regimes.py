@@ -24,7 +24,7 @@ from typing import Any
 import numpy as np
 
 from rlc.solver import doubledouble as dd
-from rlc.solver.equation import Array, Complex, Equation, angular, phase, steady_states
+from rlc.solver.equation import Array, Complex, Equation, phase, steady_states
 from rlc.solver.series import Drive, Series, slow_series, start_series, table
 
 Functions = tuple[Any, ...]
@@ -117,7 +117,7 @@ def ringing_under_sine(eq: Equation, drive: Drive) -> Regime:
         (voltage.imag, current.imag),
         (voltage.real, current.real),
     ]
-    rates = _rates(eq.damping, *eq.root, *angular(drive.frequency))
+    rates = _rates(eq.damping, *eq.root, *drive.omega)
     return Regime(_turned_ringing, rates, table(weights), (start_series(eq, drive),))
 
 
@@ -135,7 +135,7 @@ def resonant(eq: Equation, drive: Drive) -> Regime:
     -------
     Regime
     """
-    omega = angular(drive.frequency)
+    omega = drive.omega
     detuning = dd.subtract(omega, eq.root)
     # 2^-90 of the frequency turns nothing in any time, and the quotient has its limit
     met = (eq.damping == 0) & (detuning[0] == 0)
@@ -205,7 +205,7 @@ def creeping_under_sine(eq: Equation, drive: Drive) -> Regime:
         (voltage.imag, current.imag),
         (voltage.real, current.real),
     ]
-    omega = angular(drive.frequency)
+    omega = drive.omega
     pulls = _pulls(eq, drive, omega[0], eq.fast + 1j * omega[0])
     v_slope, i_slope = _creeping_slopes(eq, v0, i0)
     v_slope = v_slope - pulls[0].imag
@@ -224,7 +224,7 @@ def _rates(*values: Any) -> Array:
 
 def _steady(eq: Equation, drive: Drive) -> tuple[Complex, Complex]:
     """Phasors of the steady state; imaginary parts are its states at closing."""
-    voltage, current = steady_states(eq, drive.frequency)
+    voltage, current = steady_states(eq, drive.frequency, drive.order)
     return drive.turn * voltage, drive.turn * current
 
 

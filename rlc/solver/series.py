@@ -13,7 +13,8 @@ from typing import Any, NamedTuple
 
 import numpy as np
 
-from rlc.solver.equation import Array, Complex, Equation
+from rlc.solver import doubledouble as dd
+from rlc.solver.equation import Array, Complex, Equation, angular
 
 #: Where the series take over, as largest rate times time [1]. Closed forms lose a factor of about
 #: 6 / reach^3, the series one of about exp(2 reach).
@@ -28,8 +29,8 @@ class Drive(NamedTuple):
     ----------
     level, swing : Array
         Amplitudes in step and in quadrature with closing [V].
-    frequency : Array
-        Of the source, zero for a constant one [Hz].
+    frequency, order : Array
+        Of the source, zero for a constant one [Hz], and the number of its harmonic [1].
     capacitor_voltage, current : Array
         States at closing [V], [A].
     """
@@ -37,8 +38,14 @@ class Drive(NamedTuple):
     level: Array
     swing: Array
     frequency: Array
+    order: Array
     capacitor_voltage: Array
     current: Array
+
+    @property
+    def omega(self) -> dd.Pair:
+        """Angular frequency of the source [rad/s]."""
+        return angular(self.frequency, self.order)
 
     @property
     def turn(self) -> Complex:
@@ -129,7 +136,7 @@ def start_series(eq: Equation, drive: Drive) -> Series:
     -------
     Series
     """
-    omega = 2 * np.pi * drive.frequency
+    omega = drive.omega[0]
     rate = np.maximum(eq.quickest, omega)
     leak, to_voltage, to_current, damping = (entry / rate for entry in eq.matrix)
     push, turn = eq.source_rate / rate, omega / rate
