@@ -8,8 +8,8 @@ from typing import TYPE_CHECKING, Any, NamedTuple
 import numpy as np
 from numpy.typing import NDArray
 
+from rlc.solver.course_peaks import course_peaks
 from rlc.solver.equation import Equation, angular, equation_of, kernels
-from rlc.solver.lines import balance, final_lag
 from rlc.solver.motion import Index, Motion, Term, take
 from rlc.solver.peaks import Peak, Signal, constant_source_peak
 from rlc.solver.search import Best, known_before, search
@@ -52,8 +52,9 @@ def find_peaks(case: Case, elements: tuple[str, ...]) -> dict[str, Peak]:
         first, second = find_peaks(one, elements), find_peaks(other, elements)
         return {name: _worse(first[name], second[name]) for name in elements}
     if source.shape is not None:
-        carried = _surge_peaks if isinstance(source.shape, Surge) else _course_peaks
-        return {element: carried(case, element) for element in elements}
+        if isinstance(source.shape, Surge):
+            return {element: _surge_peaks(case, element) for element in elements}
+        return course_peaks(case, elements)
     if not source.alternating:
         return {
             element: constant_source_peak(case.equation, case.constant_signal(element))
@@ -256,57 +257,6 @@ class _Waves(NamedTuple):
         against = np.where(np.real(moved[1].value) < 0, -_QUARTER_TURN, _QUARTER_TURN)
         angle: Array = np.mod(against - np.angle(rotating), 2 * np.pi)
         return angle
-
-
-def _course_peaks(case: Case, element: str) -> Peak:
-    """Under straight lines of the source: the last line in closed form, the others searched."""
-    course = case.course
-    shape, w = course.shape, case.loop.weights(element)
-    batch = case.shape
-    eq = equation_of(case.loop.map(lambda part: np.broadcast_to(part, batch).ravel()))
-
-    def column(value: Array) -> Array:
-        return value[:, np.newaxis]
-
-    rest, lag = balance(eq), final_lag(eq)
-    level, slope = shape.level, shape.slope
-    # what is free on each line: the distance from balance, less the lag behind a ramp
-    voltage, current = (
-        part.reshape(-1, level.size) - column(behind) * slope
-        for part, behind in zip(course.free, lag, strict=True)
-    )
-    a, b, c, d = (column(entry) for entry in eq.matrix)
-    weight_v, weight_i, weight_s = (column(np.broadcast_to(part, batch).ravel()) for part in w)
-    at_rest = weight_v * column(rest[0]) + weight_i * column(rest[1]) + weight_s
-    behind = weight_v * column(lag[0]) + weight_i * column(lag[1])
-    start = at_rest * level + behind * slope
-    free = weight_v * voltage + weight_i * current
-    pace = weight_v * (a * voltage + b * current) + weight_i * (c * voltage + d * current)
-    loops, lines = free.shape
-    if case.repeats:
-        best = known_before(np.zeros(loops))
-        ends = np.append(shape.start[1:], case.course_end)
-    else:
-        last = Signal(start[:, -1], free[:, -1], pace[:, -1])
-        final = constant_source_peak(eq, last)
-        best = known_before(final.value, shape.start[-1] + final.time)
-        ends, lines = shape.start[1:], lines - 1
-    group = np.repeat(np.arange(loops), lines)
-    row_eq = take(eq, group)
-    motion = Motion(
-        row_eq,
-        Signal(0.0, free[:, :lines].ravel(), pace[:, :lines].ravel()),
-        line=(start[:, :lines].ravel(), (at_rest * slope)[:, :lines].ravel()),
-        real=True,
-    )
-    begin = np.tile(shape.start[:lines], loops)
-    width = np.tile((ends - shape.start[:lines]), loops)
-    search(Rows(row_eq, (motion,), group, begin, width, row_eq.natural), best)
-    if case.repeats:
-        # reached in the last period only: that of the steady train
-        best.time[best.time > case.course_end - case.repeats] = np.inf
-    value, time, gap = (part.reshape(batch) for part in (best.value, best.time, best.gap))
-    return Peak(value, time, gap, np.full(batch, _QUARTER_TURN))
 
 
 def _surge_peaks(case: Case, element: str) -> Peak:

@@ -121,12 +121,11 @@ class _Search:
     def run(self, gap: float) -> None:
         rows, best = self.rows, self.best
         every = np.arange(rows.group.size)
-        at_start = self._record(every, np.zeros(every.size), self.angle)
+        self._record(every, np.zeros(every.size), self.angle)
         best.gap = np.maximum(best.gap, gap)
         ends = np.flatnonzero(np.isfinite(rows.duration))
-        at_end = np.full(every.size, np.inf)
-        at_end[ends] = self._record(ends, rows.duration[ends], self.angle[ends])
-        cells = self._first_cells(gap, self._beyond_chord(np.maximum(at_start, at_end), gap))
+        self._record(ends, rows.duration[ends], self.angle[ends])
+        cells = self._first_cells(gap, every)
         seen, most = 0, _MOST_CELLS + _MOST_CELLS_PER_LOOP * best.value.size
         while cells.which.size:
             cells = cells.pick(cells.bound > best.value[rows.group[cells.which]] * (1 + gap))
@@ -149,28 +148,6 @@ class _Search:
 
     def _lines(self) -> bool:
         return any(part.line is not None for part in self.rows.parts)
-
-    def _beyond_chord(self, ends: Array, gap: float) -> Index:
-        """Rows that may pass the larger of their two ends: |y| <= ends + h^2/8 max|y''|."""
-        rows = self.rows
-        short = rows.duration * rows.quickest < 1.0
-        if not short.any():
-            return np.arange(short.size)
-        which = np.flatnonzero(short)
-        eq, half = take(self.eq, which), rows.duration[which] / 2
-        moved = self._moved(which, half, eq)
-        bend = np.sum(
-            [
-                part.bounds(eq, which, half, half, each).bend
-                for part, each in zip(rows.parts, moved, strict=True)
-            ],
-            axis=0,
-        )
-        top = np.full(short.size, np.inf)
-        if self._turned:
-            return np.arange(short.size)
-        top[which] = ends[which] + half * half / 2 * bend
-        return np.flatnonzero(top > self.best.value[rows.group] * (1 + gap))
 
     @property
     def _turned(self) -> bool:
@@ -214,10 +191,9 @@ class _Search:
         seen = framed(self.rows, which, time, moved)
         return np.abs(together(self.rows.turns, seen, angle)[0])
 
-    def _record(self, which: Index, time: Array, angle: Array) -> Any:
+    def _record(self, which: Index, time: Array, angle: Array) -> None:
         size = self._size(which, time, angle, self._moved(which, time, take(self.eq, which)))
         self._keep(which, time, angle, size)
-        return size
 
     def _keep(self, which: Index, time: Array, angle: Array, size: Array) -> None:
         best, rows = self.best, self.rows
