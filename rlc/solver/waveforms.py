@@ -8,7 +8,7 @@ from typing import TYPE_CHECKING, Any
 import numpy as np
 from numpy.typing import NDArray
 
-from rlc.solver.driven import driven_from_rest
+from rlc.solver.driven import driven_states
 from rlc.solver.equation import angular, equation_of, free_response, kernels, phase
 from rlc.solver.shapes import Surge
 from rlc.solver.surging import surge_from_rest
@@ -76,24 +76,24 @@ def states(case: Case, time: Array, closing_angle: Any) -> tuple[Array, Array, A
     if case.lines is not None:
         return case.lines.at(time), *case.course.at(time)
     eq = equation_of(case.loop.column())
-    free_voltage, free_current = free_response(
-        eq, kernels(eq, time), _column(case.capacitor_voltage), _column(case.initial_current)
-    )
+    start = _column(case.capacitor_voltage), _column(case.initial_current)
     if isinstance(shape, Surge):
         voltage, current = surge_from_rest(eq, shape, time)
+        free_voltage, free_current = free_response(eq, kernels(eq, time), *start)
         return shape.at(time), voltage + free_voltage, current + free_current
     amplitude, frequency = _column(source.amplitude), _column(source.frequency)
-    turn = np.exp(1j * _column(closing_angle))
-    level, voltage, current = 0.0 * free_voltage, free_voltage, free_current
+    angle = _column(closing_angle)
+    level: Any = 0.0
+    voltage, current = np.zeros(1), np.zeros(1)
     for order in source.every_order:
-        share = amplitude * order.share
-        turned = turn**order.number * np.exp(1j * order.phase)
-        own = order.number * frequency
-        driven_voltage, driven_current = driven_from_rest(eq, own, time)
-        voltage = voltage + share * np.imag(turned * driven_voltage)
-        current = current + share * np.imag(turned * driven_current)
+        share, own = amplitude * order.share, order.number * frequency
+        turned = order.number * angle + order.phase
+        driven = driven_states(eq, share, own, turned, *start, time)
+        voltage, current = voltage + driven[0], current + driven[1]
         cosine, sine = phase(angular(own), time)
-        level = level + share * np.imag(turned * (cosine + 1j * sine))
+        level = level + share * (sine * np.cos(turned) + cosine * np.sin(turned))
+        # the initial states count once
+        start = np.zeros(1), np.zeros(1)
     return level, voltage, current
 
 
