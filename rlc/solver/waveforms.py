@@ -86,11 +86,11 @@ def states(case: Case, time: Array, closing_angle: Any) -> tuple[Array, Array, A
     level: Any = 0.0
     voltage, current = np.zeros(1), np.zeros(1)
     for order in source.every_order:
-        share, own = amplitude * order.share, order.number * frequency
-        turned = order.number * angle + order.phase
-        driven = driven_states(eq, share, own, turned, *start, time)
+        share, number = amplitude * order.share, order.number
+        turned = number * angle + order.phase
+        driven = driven_states(eq, share, frequency, turned, *start, time, number)
         voltage, current = voltage + driven[0], current + driven[1]
-        cosine, sine = phase(angular(own), time)
+        cosine, sine = phase(angular(frequency, number), time)
         level = level + share * (sine * np.cos(turned) + cosine * np.sin(turned))
         # the initial states count once
         start = np.zeros(1), np.zeros(1)
