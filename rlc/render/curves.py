@@ -9,7 +9,8 @@ import numpy as np
 from numpy.typing import NDArray
 
 from rlc.front.marking import KINDS
-from rlc.render.figures import GREEN, NOMINAL, ORANGE, item, pieces
+from rlc.render.bands import pieces
+from rlc.render.figures import GREEN, NOMINAL, ORANGE, item
 from rlc.solver.case import Case
 from rlc.solver.quantities import REGISTER
 from rlc.solver.steady import steady_state
@@ -36,6 +37,8 @@ class Curve(NamedTuple):
     label: str
     limits: Limits
     look: dict[str, Any]
+    #: Quantities that fundamental and harmonics make up together: on no curve of one frequency.
+    together: frozenset[str] = frozenset()
 
 
 class Row(NamedTuple):
@@ -52,6 +55,8 @@ def rows_of(case: Case, targets: Sequence[Target], source: float | None) -> tupl
     """Panels of current, gain and phase; the source's frequency [Hz] is None for a constant one."""
     current: Limits = {("current", None): 1.0}
     current["current_amplitude", None] = case.source.rms_per_amplitude
+    together = frozenset({"current"} if case.source.orders else ())
+    flowing = Curve("current", "", current if source else {}, NOMINAL, together)
     degree = float(KINDS["angle"].units["deg"])
     phase: Limits = {("current_phase", None): 1 / degree, ("impedance_phase", None): -1 / degree}
     words, kind = ("current, rms", "current") if source else ("admittance", "conductance")
@@ -65,7 +70,7 @@ def rows_of(case: Case, targets: Sequence[Target], source: float | None) -> tupl
         gains = [curve._replace(label=f"across the {curve.name}") for curve in gains]
     lag = "current against source, negative: lags"
     return (
-        Row("", words, kind, None, (Curve("current", "", current if source else {}, NOMINAL),)),
+        Row("", words, kind, None, (flowing,)),
         Row(heading, "gain", "number", "V/V", tuple(gains)),
         Row(lag, "phase", "angle", None, (Curve("phase", "", phase, NOMINAL),)),
     )
@@ -76,20 +81,26 @@ def _gain(case: Case, element: str, look: dict[str, Any]) -> Curve:
     limits: Limits = {("gain", element): 1.0}
     if element == "capacitor":
         limits |= {("gain", None): 1.0, ("voltage_magnification", None): 1.0}
-    level, share = item(case.source.rms), case.source.rms_per_amplitude
-    if case.source.kind == "sine" and level:
+    share = case.source.rms_per_amplitude
+    level = share * abs(item(case.source.amplitude))
+    if case.source.alternating and level:
         limits[f"{element}_voltage", None] = 1 / level
         limits[f"{element}_voltage_amplitude", None] = share / level
-    return Curve(element, "", limits, look)
+    together = frozenset({f"{element}_voltage"} if case.source.orders else ())
+    return Curve(element, "", limits, look, together)
 
 
 def response(case: Case, frequency: Array, names: Iterable[str]) -> dict[str, Array]:
     """Curves by name, frequencies on the last axis.
 
-    Current [A rms] or admittance [S], phase [deg], and gains by element [1].
+    Current that the fundamental's voltage drives [A rms] or admittance [S], phase [deg], and
+    gains by element [1].
     """
     steady = steady_state(case.loop.column(), frequency)
-    level = np.asarray(case.source.rms)[..., np.newaxis] if case.source.kind == "sine" else 1.0
+    level = np.ones(())
+    if case.source.alternating:
+        fundamental = np.abs(case.source.amplitude) * case.source.rms_per_amplitude
+        level = fundamental[..., np.newaxis]
 
     def value(name: str) -> Array:
         if name == "current":
@@ -130,4 +141,6 @@ def place_of(curve: Curve, target: Target, source: float | None) -> tuple[float,
     """
     at = source if target.at is None else target.at
     factor = curve.limits.get((target.quantity, target.across))
+    if target.at is None and target.quantity in curve.together:
+        return None
     return None if at is None or factor is None else (at, factor)

@@ -21,21 +21,19 @@ from rlc.render.figures import (
     INSIDE,
     NATURAL,
     OUTSIDE,
-    any_character,
     asked_at,
-    fit_height,
-    legend_above,
     limit_label,
     limit_line,
     limits,
     name_axis,
     note,
-    panels,
     quantity_name,
     shown,
 )
+from rlc.render.panels import any_character, fit_height, legend_above, panels
+from rlc.render.planes import state_plane
 from rlc.render.responses import frequency_response
-from rlc.render.transients import state_plane, switch_on
+from rlc.render.transients import switch_on
 from rlc.solver.targets import Target
 
 if TYPE_CHECKING:
@@ -145,6 +143,8 @@ def _axis_words(target: Target) -> str:
     """The quantity, where it is asked for, and whether it is a peak or an rms value."""
     convention = target.entry.convention.partition(";")[0]
     matters = convention.startswith(("rms", "peak"))
+    if convention.startswith("rms"):
+        convention = "rms"
     return quantity_name(target) + asked_at(target) + (f", {convention}" if matters else "")
 
 

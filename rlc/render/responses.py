@@ -9,27 +9,26 @@ import numpy as np
 from numpy.typing import NDArray
 
 from rlc.front.marking import KINDS, show
+from rlc.render.bands import band_label
 from rlc.render.curves import Curve, Row, place_of, response, response_bands, rows_of
 from rlc.render.figures import (
     BAND,
+    HARMONIC,
     LIMIT,
     MARK,
     NATURAL,
     NOMINAL,
     SOURCE,
     SPREAD,
-    band_label,
-    fit_height,
     item,
-    legend_above,
     limit_label,
     limit_line,
     limits,
     name_axis,
     note,
-    panels,
     shown,
 )
+from rlc.render.panels import fit_height, legend_above, panels
 from rlc.solver.case import Case
 from rlc.solver.quantities import REGISTER
 from rlc.solver.targets import Target
@@ -69,6 +68,7 @@ class _Marks(NamedTuple):
     upper: float
     width: float
     source: float | None
+    harmonics: tuple[float, ...]
 
     @property
     def digits(self) -> int:
@@ -90,8 +90,9 @@ def frequency_response(
     Parameters
     ----------
     case : Case
-        One nominal loop. A sine gives the current [A rms]; a constant source the admittance
-        [S], since it has no current at other frequencies.
+        One nominal loop. A sine gives the current [A rms], with harmonics that of its
+        fundamental and, marked, those of each harmonic; a source without a frequency the
+        admittance [S].
     targets : sequence of Target
         Limits on frequencies of the loop and on its bandwidth [Hz], and on current [A],
         voltage of an element [V], gain [1] or phase [rad] at a frequency, are drawn. Others on
@@ -151,6 +152,8 @@ def frequency_response(
             *((-_PHASE_REACH, _PHASE_REACH) if row.kind == "angle" else (low, 1.2 * high))
         )
         if marks.source is not None:
+            if row.kind == "current":
+                _harmonic_marks(panel, case)
             _source_mark(panel, row, marks.source, float(at_source[row.curves[0].name].item()))
         name_axis(panel.yaxis, row.words, row.kind, row.unit)
         legend_above(panel, row.heading or _resonance(marks), _LETTERS if panel.texts else 0.0)
@@ -168,8 +171,10 @@ def _marks(case: Case) -> _Marks:
         "bandwidth",
     )
     natural, lower, upper, width = (item(REGISTER[name](case)) for name in names)
-    source = item(case.source.frequency) if case.source.kind == "sine" else None
-    return _Marks(natural, lower, upper, width, source)
+    source = item(case.source.frequency) if case.source.alternating else None
+    orders = (order.number for order in case.source.orders if order.share > 0)
+    harmonics = tuple(number * item(case.source.frequency) for number in orders)
+    return _Marks(natural, lower, upper, width, source, harmonics)
 
 
 def _frequencies(marks: _Marks, targets: Sequence[Target], batch: Case | None) -> Array:
@@ -179,7 +184,7 @@ def _frequencies(marks: _Marks, targets: Sequence[Target], batch: Case | None) -
     half = np.clip(_BANDWIDTHS * width, _NARROWEST, max(_WIDEST, width)) if width else _LOSSLESS
     # a loop without losses has no value at its resonance, nor anything to see close to it
     seen = [marks.lower, marks.natural, marks.upper] if width else []
-    asked = [] if marks.source is None else [marks.source]
+    asked = [] if marks.source is None else [marks.source, *marks.harmonics]
     if batch is not None:
         for name in ("lower_half_power_frequency", "upper_half_power_frequency"):
             seen += [float(np.min(REGISTER[name](batch))), float(np.max(REGISTER[name](batch)))]
@@ -287,6 +292,16 @@ def _value_limits(panel: Axes, curve: Curve, target: Target, source: float | Non
             label=label,
             **{**LIMIT, "linestyle": "solid", "zorder": 4},
         )
+
+
+def _harmonic_marks(panel: Axes, case: Case) -> None:
+    """The current of each harmonic, which has a share of the fundamental's voltage."""
+    orders = [order for order in case.source.orders if order.share > 0]
+    frequency = np.array([order.number for order in orders]) * item(case.source.frequency)
+    current = response(case, frequency, ("current",))["current"].ravel()
+    share = np.array([order.share for order in orders])
+    if orders:
+        panel.plot(frequency, share * current, label="current of each harmonic", **HARMONIC)
 
 
 def _source_mark(panel: Axes, row: Row, source: float, value: float) -> None:

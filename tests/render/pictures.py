@@ -51,6 +51,17 @@ def legend_text(panel) -> str:
     return "\n".join([legend.get_title().get_text(), *(t.get_text() for t in legend.get_texts())])
 
 
+def heading(panel) -> str:
+    """What stands above a panel, in one line."""
+    return " ".join(panel.get_legend().get_title().get_text().split())
+
+
+def over_time(figure):
+    """The panels of current and capacitor voltage of a switch-on."""
+    _, current, voltage, _, _ = figure.axes
+    return current, voltage
+
+
 def drawn(figure):
     """The figure after one drawing pass, so that texts have their places."""
     FigureCanvasAgg(figure).draw()

@@ -19,6 +19,7 @@ from pictures import (
     drawn,
     labelled,
     legend_text,
+    over_time,
 )
 
 from rlc.render import plots
@@ -226,11 +227,11 @@ def test_large_batch_is_cut_into_pieces(monkeypatch):
     case, batch = Case(make_loop(**MAINS), source), Case(loops, source, np.linspace(0, 9, 9))
 
     def edges():
-        figures = plots.frequency_response(case, batch=batch), plots.switch_on(case, batch=batch)
-        return [band(figure.axes[0]) for figure in figures]
+        response = plots.frequency_response(case, batch=batch).axes[0]
+        return [band(panel) for panel in (response, *over_time(plots.switch_on(case, batch=batch)))]
 
     whole = edges()
-    monkeypatch.setattr("rlc.render.figures._VALUES_AT_ONCE", 1)
+    monkeypatch.setattr("rlc.render.bands._VALUES_AT_ONCE", 1)
     np.testing.assert_equal(edges(), whole)
 
 

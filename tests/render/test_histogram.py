@@ -43,7 +43,7 @@ def test_histogram_names_only_what_there_is():
     [
         (Target("current"), "current, rms [A]"),
         (Target("capacitor_voltage_amplitude"),
-         "capacitor voltage amplitude, peak, steady state [V]"),
+         "capacitor voltage amplitude, peak, steady state, fundamental [V]"),
         (Target("peak_current"), "peak current, peak magnitude over all time [A]"),
         (Target("damping_ratio"), "damping ratio"),
         (Target("gain", maximum=0.03, at=300.0, across="resistor"),

@@ -2,6 +2,8 @@
 
 from __future__ import annotations
 
+from itertools import pairwise
+
 import numpy as np
 import pytest
 from pictures import (
@@ -17,6 +19,7 @@ from pictures import (
     TARGETS,
     audio,
     drawn,
+    over_time,
     ticks,
 )
 
@@ -66,8 +69,13 @@ def test_nothing_is_cut_or_covered(name, picture):
     assert top.x0 >= 0
     assert top.x1 <= paper.x1
     assert max(panel.get_tightbbox().y1 for panel in figure.axes) <= top.y0
-    for upper, lower in zip(figure.axes, figure.axes[1:], strict=False):
-        assert lower.get_tightbbox().y1 <= upper.get_tightbbox().y0
+    axes = figure.axes
+    columns = (axes[:3], axes[3:]) if picture == "switch_on" else (axes,)
+    for column in columns:
+        for upper, lower in pairwise(column):
+            assert lower.get_tightbbox().y1 <= upper.get_tightbbox().y0
+        for panel in column:
+            assert panel.get_tightbbox().x1 <= (paper.x1 + 1 if column is columns[-1] else 690)
     for panel in figure.axes:
         box = panel.get_tightbbox()
         assert box.x0 >= 0
@@ -101,7 +109,8 @@ def test_frequencies_from_source_to_resonance_have_each_its_prefix():
 
 def test_axis_that_goes_little_beyond_its_data_keeps_their_prefix():
     case = Case(make_loop(**MAINS), sine(3 * MAINS_PEAK, 50.0, None))
-    current = drawn(plots.switch_on(case, (Target("peak_current", maximum=900.0),))).axes[0]
+    figure = drawn(plots.switch_on(case, (Target("peak_current", maximum=900.0),)))
+    current, _ = over_time(figure)
     assert current.get_ylim()[1] > 1000.0
     assert current.get_ylabel() == "current [A]"
     assert "500" in ticks(current.yaxis)

@@ -15,8 +15,10 @@ from pictures import (
     audio,
     band,
     curve,
+    heading,
     labelled,
     legend_text,
+    over_time,
 )
 
 from rlc.render import plots
@@ -36,8 +38,9 @@ def inrush_forms() -> tuple[float, float, float]:
 def test_peaks_of_a_step_are_marked_where_the_closed_form_has_them():
     a, ringing, level = inrush_forms()
     figure = plots.switch_on(Case(make_loop(**INRUSH), constant(level)))
-    current, voltage = figure.axes
-    assert [panel.get_ylabel() for panel in figure.axes] == ["current [A]", "capacitor voltage [V]"]
+    current, voltage = over_time(figure)
+    labels = ["source [V]", "current [A]", "capacitor voltage [V]"]
+    assert [panel.get_ylabel() for panel in figure.axes[:3]] == labels
     assert voltage.get_xlabel() == "time from closing [us]"
 
     time = np.arctan2(ringing, a) / ringing
@@ -55,7 +58,7 @@ def test_peaks_of_a_step_are_marked_where_the_closed_form_has_them():
 
 def test_drawn_waveform_is_the_closed_form():
     a, ringing, level = inrush_forms()
-    time, drawn = curve(plots.switch_on(Case(make_loop(**INRUSH), constant(level))).axes[0])
+    time, drawn = curve(over_time(plots.switch_on(Case(make_loop(**INRUSH), constant(level))))[0])
     expected = level / (ringing * 2e-6) * np.exp(-a * time) * np.sin(ringing * time)
     np.testing.assert_allclose(drawn, expected, atol=1e-12 * np.max(expected))
     assert time[0] == 0.0
@@ -65,7 +68,7 @@ def test_drawn_waveform_is_the_closed_form():
 
 def test_envelope_holds_the_ringing_and_touches_it():
     case = Case(make_loop(**{**INRUSH, "resistance": 0.01}), constant(24.0))
-    for panel, steady in zip(plots.switch_on(case).axes, (0.0, 24.0), strict=True):
+    for panel, steady in zip(over_time(plots.switch_on(case)), (0.0, 24.0), strict=True):
         time, drawn = curve(panel)
         upper = labelled(panel, "envelope, time constant 400 us")
         np.testing.assert_array_equal(upper.get_xdata(), time)
@@ -78,7 +81,7 @@ def test_envelope_holds_the_ringing_and_touches_it():
 
 def test_each_panel_has_its_own_worst_angle():
     case = Case(make_loop(**MAINS), sine(MAINS_PEAK, 50.0, None))
-    current, voltage = plots.switch_on(case).axes
+    current, voltage = over_time(plots.switch_on(case))
     assert "closed at 86.91 deg" in legend_text(current)
     assert "worst for the current" in legend_text(current)
     assert "closed at 85.07 deg" in legend_text(voltage)
@@ -93,7 +96,7 @@ def test_each_panel_has_its_own_worst_angle():
 
 def test_trapped_charge_starts_the_curve_and_keeps_its_sign():
     case = Case(make_loop(**MAINS), sine(MAINS_PEAK, 50.0, None), -325.0)
-    current, voltage = plots.switch_on(case).axes
+    current, voltage = over_time(plots.switch_on(case))
     assert curve(voltage)[1][0] == -325.0
     for panel, element in ((current, "current"), (voltage, "capacitor")):
         height = labelled(panel, "peak ").get_ydata()[0]
@@ -103,7 +106,7 @@ def test_trapped_charge_starts_the_curve_and_keeps_its_sign():
 def test_steady_waveform_is_the_closed_form():
     angle, omega = 0.4, 2 * np.pi * 50.0
     case = Case(make_loop(**MAINS), sine(MAINS_PEAK, 50.0, angle))
-    current, voltage = plots.switch_on(case).axes
+    current, voltage = over_time(plots.switch_on(case))
     phasor = MAINS_PEAK / (0.05 + 1j * (omega * 200e-6 - 1 / (omega * 150e-6)))
     for panel, amplitude in ((current, phasor), (voltage, phasor / (1j * omega * 150e-6))):
         steady = labelled(panel, "steady state, amplitude")
@@ -119,7 +122,7 @@ def test_limits_on_peaks_stand_on_both_sides_of_an_alternating_waveform():
         Target("bandwidth", maximum=1.0),
     )
     case = Case(make_loop(**MAINS), sine(MAINS_PEAK, 50.0, None))
-    current, voltage = plots.switch_on(case, targets).axes
+    current, voltage = over_time(plots.switch_on(case, targets))
     drawn = {line.get_ydata()[0] for line in current.lines if len(line.get_xdata()) == 3}
     assert drawn == {200.0, -200.0}
     assert labelled(voltage, "capacitor rated voltage max 800 V").get_ydata()[0] == 800.0
@@ -131,7 +134,7 @@ def test_limits_on_peaks_stand_on_both_sides_of_an_alternating_waveform():
 
 def test_one_sided_waveform_has_one_limit_line():
     case = Case(make_loop(**OVERDAMPED), constant(12.0))
-    _, voltage = plots.switch_on(case, Ratings(capacitor_voltage=16.0).targets()).axes
+    _, voltage = over_time(plots.switch_on(case, Ratings(capacitor_voltage=16.0).targets()))
     assert [line.get_ydata()[0] for line in voltage.lines if len(line.get_xdata()) == 3] == [16.0]
 
 
@@ -140,14 +143,14 @@ def test_peak_that_only_digits_tell_from_the_final_value_is_not_marked(ratio, ma
     """A step's overshoot exp(-pi z/sqrt(1 - z^2)) is 1.7e-4 for 0.94, 0.7e-4 for 0.95."""
     resistance = 2 * ratio * np.sqrt(AUDIO["inductance"] / AUDIO["capacitance"])
     case = Case(make_loop(**{**AUDIO, "resistance": resistance}), constant(12.0))
-    voltage = plots.switch_on(case).axes[1]
+    voltage = over_time(plots.switch_on(case))[1]
     assert labelled(voltage, "peak 12 V").get_xdata().size == marked
     assert ("no higher than the steady state" in legend_text(voltage)) is not marked
 
 
 def test_angle_that_is_only_rounding_is_zero():
     case = Case(make_loop(**MAINS), sine(MAINS_PEAK, 50.0, 1e-14))
-    for panel in (*plots.switch_on(case).axes, *plots.state_plane(case).axes):
+    for panel in (*over_time(plots.switch_on(case)), *plots.state_plane(case).axes):
         assert "closed at 0 deg from" in legend_text(panel)
     natural = REGISTER["natural_frequency"](audio()).item()
     at_resonance = Case(make_loop(**AUDIO), sine(34.0, natural, 0.0))
@@ -157,7 +160,7 @@ def test_angle_that_is_only_rounding_is_zero():
 
 def test_nothing_is_said_of_closing_angles_under_a_constant_source():
     case = Case(make_loop(**INRUSH), constant(24.0))
-    for panel in (*plots.switch_on(case, batch=case).axes, *plots.state_plane(case).axes):
+    for panel in (*over_time(plots.switch_on(case, batch=case)), *plots.state_plane(case).axes):
         assert "closed" not in legend_text(panel)
         assert "angle" not in legend_text(panel)
 
@@ -168,10 +171,10 @@ def test_nothing_is_said_of_closing_angles_under_a_constant_source():
 def test_band_says_at_which_angle_its_loops_are_closed(angle, words):
     source = sine(MAINS_PEAK, 50.0, angle)
     batch = Case(make_loop(**{**MAINS, "inductance": 200e-6 * np.array([0.9, 1.1])}), source)
-    for panel in plots.switch_on(Case(make_loop(**MAINS), source), batch=batch).axes:
-        assert legend_text(panel).splitlines()[0].endswith(f"; each loop of the band {words}")
+    for panel in over_time(plots.switch_on(Case(make_loop(**MAINS), source), batch=batch)):
+        assert f"; each loop of the band {words}" in heading(panel)
         assert labelled(panel, "nominal, corners and samples (2 loops)")
-    for panel in plots.switch_on(Case(make_loop(**MAINS), source)).axes:
+    for panel in over_time(plots.switch_on(Case(make_loop(**MAINS), source))):
         assert "band" not in legend_text(panel)
 
 
@@ -180,7 +183,7 @@ def test_band_says_at_which_angle_its_loops_are_closed(angle, words):
 def test_envelope_of_a_quick_ringing_lies_about_the_steady_sine(angle, states):
     """Time constant 2 L/R = 8 ms; ringing at 919 Hz under a source of 50 Hz."""
     case = Case(make_loop(**MAINS), sine(MAINS_PEAK, 50.0, angle), *states)
-    for panel in plots.switch_on(case).axes:
+    for panel in over_time(plots.switch_on(case)):
         time, values = curve(panel)
         upper = labelled(panel, "envelope, time constant 8 ms").get_ydata()
         steady = labelled(panel, "steady state").get_ydata()
@@ -194,27 +197,28 @@ def test_envelope_of_a_quick_ringing_lies_about_the_steady_sine(angle, states):
 
 def test_where_no_envelope_can_be_read_the_time_constant_is_said():
     """Near resonance: 2 L/R = 66 mH over 12.5 ohm."""
-    current, voltage = plots.switch_on(audio()).axes
+    current, voltage = over_time(plots.switch_on(audio()))
     assert labelled(current, "time constant 5.28 ms").get_xdata().size == 0
     for panel in (current, voltage):
         assert "envelope" not in legend_text(panel)
 
 
 def test_peak_only_approached_is_said_and_not_marked():
-    _, voltage = plots.switch_on(Case(make_loop(**OVERDAMPED), constant(12.0))).axes
+    _, voltage = over_time(plots.switch_on(Case(make_loop(**OVERDAMPED), constant(12.0))))
     said = labelled(voltage, "peak 12 V, approached but not reached")
     assert said.get_xdata().size == 0
 
 
 def test_peak_of_a_slow_build_up_is_the_steady_state():
     """Driven near resonance the current rises to its steady amplitude and no higher."""
-    current = plots.switch_on(audio()).axes[0]
+    current = over_time(plots.switch_on(audio()))[0]
     assert "no higher than the steady state" in legend_text(current)
 
 
 def test_peak_only_approached_at_resonance_is_the_steady_state():
     case = Case(make_loop(**{**AUDIO, "resistance": 0.05}), sine(34.0, 876.12, 0.0))
-    for panel, element in zip(plots.switch_on(case).axes, ("current", "capacitor"), strict=True):
+    panels = over_time(plots.switch_on(case))
+    for panel, element in zip(panels, ("current", "capacitor"), strict=True):
         assert np.isinf(case.peak(element).time)
         assert "no higher than the steady state" in legend_text(panel)
         assert "approached" not in legend_text(panel)
@@ -225,23 +229,23 @@ def test_lossless_resonance_grows_without_bound():
     natural = REGISTER["natural_frequency"](Case(loop, constant(1.0))).item()
     case = Case(loop, sine(34.0, natural, 0.0))
     figure = plots.switch_on(case)
-    for panel in figure.axes:
+    for panel in over_time(figure):
         assert "grows without bound" in legend_text(panel)
         assert "no steady state" in legend_text(panel)
-    assert "it never dies" in figure.axes[1].get_xlabel()
+    assert "it never dies" in over_time(figure)[1].get_xlabel()
     assert "no steady state" in legend_text(plots.state_plane(case).axes[0])
 
 
 def test_picture_of_a_long_ringing_says_which_part_it_shows():
     loop = make_loop(**{**AUDIO, "resistance": 0.0002})
     figure = plots.switch_on(Case(loop, sine(34.0, 876.12, 0.0)))
-    assert "of the transient; its time constant is 330 s" in figure.axes[1].get_xlabel()
-    assert "after the time shown" in legend_text(figure.axes[0])
+    assert "of the transient; its time constant is 330 s" in over_time(figure)[1].get_xlabel()
+    assert "after the time shown" in legend_text(over_time(figure)[0])
 
 
 def test_late_peak_of_a_beat_is_in_the_picture():
     """Q = 9000 driven half a per cent off: the peak comes after a hundred periods."""
-    current = plots.switch_on(audio(resistance=0.02)).axes[0]
+    current = over_time(plots.switch_on(audio(resistance=0.02)))[0]
     mark = labelled(current, "peak ")
     assert 100 / FREQUENCY < mark.get_xdata()[0] < current.get_xlim()[1]
 
@@ -251,7 +255,7 @@ def test_band_over_time_holds_the_nominal_and_each_loop(source):
     loops = make_loop(**{**MAINS, "inductance": 200e-6 * np.array([0.9, 1.1])})
     case, batch = Case(make_loop(**MAINS), source), Case(loops, source)
     figure = plots.switch_on(case, batch=batch)
-    for panel, element in zip(figure.axes, ("current", "capacitor"), strict=True):
+    for panel, element in zip(over_time(figure), ("current", "capacitor"), strict=True):
         time, low, high = band(panel)
         nominal = np.interp(time, *curve(panel))
         assert np.all((low <= nominal) & (nominal <= high))
