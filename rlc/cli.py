@@ -19,6 +19,7 @@ from rlc.console import (
     Sheet,
     Suffix,
     guarded,
+    note_effort,
     read_sheet,
     show,
     terminal_width,
@@ -66,6 +67,7 @@ def check(
     from rlc.solver.quantities import REGISTER
 
     loaded = read_sheet(sheet, flags)
+    note_effort(loaded, loaded.inputs.targets, samples)
     found = review(loaded, REGISTER, judge(loaded, loaded.inputs.targets, samples, seed))
     pieces = [*_loop(found), *_steady(found), *_switch_on(found), *_spread(found)]
     pictures = ("frequency-response", "switch-on", "state-plane", "spread")
@@ -101,13 +103,14 @@ def switch_on(
     suffix: Suffix = "png",
 ) -> None:
     """Show the switch-on: true peaks, settling, let-through."""
-    from rlc.render import tables
+    from rlc.render import switching
     from rlc.solver.extrema import first_extrema
 
     found = _partial(sheet, flags, ("loop", "switch-on"))
     extrema = first_extrema(found.case)
     found = replace(found, extrema=extrema)
-    pieces = [*_loop(found), *_switch_on(found), tables.extrema(extrema, found.case)]
+    pieces = [*_loop(found), *_switch_on(found), switching.extrema(extrema, found.case)]
+    pieces += _told(switching.beyond(extrema, found.case))
     show(found, pieces, ("switch-on", "state-plane"), Output(as_json, plots, suffix))
 
 
@@ -166,7 +169,9 @@ def spread(
     from rlc.review import asked_targets, judge, names_in, review
 
     loaded = read_sheet(sheet, flags)
-    judged = judge(loaded, asked_targets(loaded, quantity or ()), samples, seed)
+    targets = asked_targets(loaded, quantity or ())
+    note_effort(loaded, targets, samples)
+    judged = judge(loaded, targets, samples, seed)
     found = review(loaded, names_in("loop"), judged)
     pieces = [*_loop(found), *_spread(found)]
     show(found, pieces, ("spread",), Output(as_json, plots, suffix))
@@ -233,34 +238,44 @@ def _partial(sheet: Path | None, flags: dict[str, str], groups: tuple[str, ...])
     return review(read_sheet(sheet, flags), names_in(*groups))
 
 
+def _told(sentence: str) -> list[Table | Text | str]:
+    """A sentence where there is one to tell."""
+    return [sentence] if sentence else []
+
+
 def _loop(found: Review) -> list[Table | Text | str]:
-    from rlc.render import tables
+    from rlc.render import sources, tables
 
     inputs = found.loaded.inputs
     return [
         tables.loop(found.case, inputs.parts, inputs.tolerances),
-        tables.source(found.case),
+        sources.sentence(found.case),
         tables.frequencies(found.case, found.quantities),
         tables.quantities("Loop quantities", found.quantities, "loop"),
     ]
 
 
 def _steady(found: Review) -> list[Table | Text | str]:
-    from rlc.render import tables
+    from rlc.render import states, tables
 
-    if found.case.source.kind == "dc":
-        return [tables.elements(found.case)]
-    return [
-        tables.elements(found.case),
-        tables.quantities("Steady state", found.quantities, "steady"),
-    ]
+    case = found.case
+    if not case.source.alternating:
+        return [states.elements(case), *_told(states.after(case))]
+    shown: list[Table | Text | str] = [states.elements(case)]
+    if case.source.orders:
+        shown.append(states.orders(case))
+    return [*shown, tables.quantities("Steady state", found.quantities, "steady")]
 
 
 def _switch_on(found: Review) -> list[Table | Text | str]:
-    from rlc.render import tables
+    from rlc.render import switching, tables
 
+    shown: list[Table | Text | str] = [switching.peaks(found.case)]
+    if found.closings:
+        shown.append(switching.closings(found.closings, found.case))
     return [
-        tables.peaks(found.case),
+        *shown,
+        switching.limits(found.exceeded, found.case),
         tables.quantities("Switch-on", found.quantities, "switch-on"),
     ]
 

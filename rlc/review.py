@@ -4,7 +4,7 @@ from __future__ import annotations
 
 import math
 from collections.abc import Callable, Iterable, Mapping
-from dataclasses import dataclass
+from dataclasses import dataclass, field, replace
 from pathlib import Path
 from typing import TYPE_CHECKING, Any
 
@@ -13,6 +13,7 @@ from rlc.front.flags import SAMPLES, SEED
 from rlc.front.inputs import Loaded
 from rlc.front.load import load
 from rlc.render.cautions import Caution, cautions
+from rlc.render.known import SIGNALS
 from rlc.solver.case import Case
 from rlc.solver.quantities import REGISTER, lookup
 from rlc.solver.targets import Target
@@ -20,6 +21,8 @@ from rlc.solver.targets import Target
 if TYPE_CHECKING:
     from matplotlib.figure import Figure
 
+    from rlc.render.limits import Passing
+    from rlc.solver.closing import Closings
     from rlc.solver.extrema import Extrema
     from rlc.solver.spread import Outcome, Spread
     from rlc.solver.sweep import Sweep
@@ -56,6 +59,11 @@ class Review:
         The frequency response, if it was asked for.
     extrema : Extrema or None
         The first turning points of the switch-on, if they were asked for.
+    closings : mapping of str to Closings
+        Peaks over the closings that are possible, by signal; empty if one is given, or no
+        switch-on was asked for.
+    exceeded : tuple of Passing
+        How the nominal loop exceeds limits in time; empty if no switch-on was asked for.
     """
 
     loaded: Loaded
@@ -66,6 +74,8 @@ class Review:
     cautions: tuple[Caution, ...]
     sweep: Sweep | None = None
     extrema: Extrema | None = None
+    closings: Mapping[str, Closings] = field(default_factory=dict)
+    exceeded: tuple[Passing, ...] = ()
 
     @property
     def targets_hold(self) -> bool:
@@ -98,8 +108,13 @@ class Review:
         groups = {REGISTER[name].group for name in self.quantities}
         if "steady" in groups:
             found["elements"] = machine.elements(self.case)
+            if self.case.source.orders:
+                found["orders"] = machine.orders(self.case)
         if "switch-on" in groups:
             found["peaks"] = machine.peaks(self.case)
+            found["exceeded"] = machine.exceeded(self.exceeded)
+            if self.closings:
+                found["closings"] = machine.closings(self.closings, self.case)
         if batch is not None:
             limited = [each for each in self.outcomes if each.target.limited]
             found["targets"] = [machine.target(outcome) for outcome in limited]
@@ -107,7 +122,7 @@ class Review:
         if self.sweep is not None:
             found["sweep"] = machine.sweep(self.sweep)
         if self.extrema is not None:
-            found["extrema"] = machine.extrema(self.extrema)
+            found["extrema"] = machine.extrema(self.extrema, self.case)
         return found | {"cautions": machine.cautions(self.cautions)}
 
     def pictures(self, names: Iterable[str]) -> dict[str, Callable[[], Figure]]:
@@ -265,7 +280,22 @@ def review(
         corners=corners,
         limits=limits,
     )
-    return Review(loaded, case, quantities, batch, outcomes, told)
+    found = Review(loaded, case, quantities, batch, outcomes, told)
+    if not any(REGISTER[name].group == "switch-on" for name in quantities):
+        return found
+    from rlc.render.limits import limits_in_time
+
+    passings = limits_in_time(case, inputs.targets)
+    return replace(found, closings=_closings(case), exceeded=passings)
+
+
+def _closings(case: Case) -> dict[str, Closings]:
+    """Peaks over the closings, where the angle is left to chance."""
+    if not (case.source.alternating and case.source.worst_angle and case.source.window):
+        return {}
+    from rlc.solver.closing import over_closings
+
+    return {element: over_closings(case, element) for element in SIGNALS}
 
 
 def names_in(*groups: str) -> tuple[str, ...]:

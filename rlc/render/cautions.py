@@ -11,14 +11,12 @@ import math
 from collections.abc import Callable, Mapping
 from dataclasses import dataclass
 
-import numpy as np
-
 from rlc.front.marking import show
 from rlc.render.closings import closing_angle, trapped_charge
+from rlc.render.driving import magnification, magnified, record, resonance, source_ends
 from rlc.render.findings import ELV_AC_PEAK, ELV_DC, Findings, Size, exceeds
 from rlc.solver.case import Case
 from rlc.solver.quantities import REGISTER
-from rlc.solver.steady import half_power_frequencies
 from rlc.solver.targets import Fuse, Ratings
 
 # NEC 460.6: 50 V or less within 1 min, for capacitors up to 1000 V (600 V in older editions);
@@ -34,10 +32,8 @@ _TIMES_ALLOWED = (
 )
 
 # Common practice, no source:
-MAGNIFIED = 2.0  # steady voltage over the source's: what a part chosen for the source may have
 OVERSHOT = 1.2  # peak over the source's, or over the steady amplitude: a usual margin
 LOSSLESS_QUALITY = 1e3  # above it a resistance is probably missing on the sheet
-RESONANT_QUALITY = 1.0  # below it resonance magnifies nothing
 CONTACT_CURRENT = 1.0  # what small contacts, connectors and fuses are made for [A]
 ARC_ENERGY = 1e-3  # in the inductance, when the loop is opened [J]
 
@@ -114,17 +110,18 @@ def cautions(
 def _hazardous_source(found: Findings) -> str:
     if not found.hazardous_source:
         return ""
+    held = "" if found.steady_source else " Its largest value is held against the limit for dc."
     return (
         f"The source, {found.source}, is above extra-low voltage (50 V ac rms or 120 V"
-        " ripple-free dc; IEC 61140, IEC 61558-1). Every terminal of the loop is at hazardous"
-        " voltage."
+        f" ripple-free dc; IEC 61140, IEC 61558-1).{held} Every terminal of the loop is at"
+        " hazardous voltage."
     )
 
 
 def _extra_low_voltage(found: Findings) -> str:
     if found.hazardous_source:
         return ""
-    limit = ELV_AC_PEAK if found.sine else ELV_DC
+    limit = ELV_AC_PEAK if found.alternating else ELV_DC
     peaks = (
         ("capacitor", found.capacitor),
         ("inductor", found.inductor),
@@ -133,7 +130,7 @@ def _extra_low_voltage(found: Findings) -> str:
     above = [f"{name} {size}" for name, size in peaks if exceeds(size.highest, limit)]
     if not above:
         return ""
-    words = "70.7 V peak for 50 V ac rms" if found.sine else "120 V dc"
+    words = "70.7 V peak for 50 V ac rms" if found.alternating else "120 V dc"
     return (
         f"The source, {found.source}, is within extra-low voltage, but parts of the loop go"
         f" above it ({words}; IEC 61140, IEC 61558-1). Peak voltages: {'; '.join(above)}."
@@ -161,7 +158,8 @@ def _residual_voltage(found: Findings) -> str:
     prove = "prove it dead before touching it"
     if math.isinf(load):
         held = str(charge) if math.isfinite(charge.nominal) else "any voltage"
-        settled = f"; opened in steady state: {found.steady('dielectric')}" if found.level else ""
+        left = found.steady("dielectric")
+        settled = f"; opened in steady state: {left}" if left.highest > 0 else ""
         return (
             "Once the loop is opened nothing discharges the capacitor. It may hold for a long"
             f" time: {held}{settled}. Short it through a resistor and {prove}."
@@ -176,13 +174,15 @@ def _residual_voltage(found: Findings) -> str:
         time_constant = found.size(lambda case: path * case.loop.capacitance, "time")
         return f"{head} with a time constant of {time_constant.told(_duration)}.{tail}"
     time = found.discharge(RESIDUAL_VOLTAGE)
-    steady = float(REGISTER["capacitor_voltage"](found.case))
-    allowed, rule = _TIMES_ALLOWED[steady > _LOW_VOLTAGE]
+    working, state = float(REGISTER["capacitor_voltage"](found.case)), "in steady state"
+    if not working > 0:
+        working, state = charge.nominal, "at its peak"
+    allowed, rule = _TIMES_ALLOWED[working > _LOW_VOLTAGE]
     takes = "this takes longer" if time.nominal > allowed else "this takes less"
     if not time.nominal > allowed and time.highest > allowed:
         takes = "over the parts this may take longer"
-    rms = " rms" if found.sine else ""
-    here = f"{found.nominal}{show(steady, 'voltage')}{rms} in steady state"
+    rms = " rms" if found.alternating else ""
+    here = f"{found.nominal}{show(working, 'voltage')}{rms} {state}"
     return (
         f"{head} from its peak ({start}) to 50 V in {time.told(_duration)}. For information:"
         f" {rule}; with {here}, {takes}.{tail}"
@@ -204,7 +204,9 @@ def _undamped(found: Findings) -> str:
             f"The quality factor of {quality} is more than real parts usually give."
             " Put winding, contact and series resistances on the sheet: they bound the peaks."
         )
-    at_resonance = found.sine and exceeds(found.capacitor.nominal, LOSSLESS_QUALITY * found.level)
+    at_resonance = found.alternating and exceeds(
+        found.capacitor.nominal, LOSSLESS_QUALITY * found.level
+    )
     driven = "as here, it grows" if at_resonance else "it would grow"
     return (
         "The loop has no resistance, so its ringing never dies; driven at its resonance,"
@@ -220,9 +222,9 @@ def _capacitor_overvoltage(found: Findings) -> str:
             f"Peak capacitor voltage: {peak}, above the rated voltage of {show(rated, 'voltage')}."
         )
     elif rated is None and peak.highest > OVERSHOT * found.level > 0:
-        source = "the source's peak" if found.sine else "the source"
+        source = "the source" if found.case.source.kind == "dc" else "the source's peak"
         told.append(
-            f"Peak capacitor voltage: {_magnified(found, peak, f' {source}')}."
+            f"Peak capacitor voltage: {magnified(found, peak, f' {source}')}."
             " No voltage rating is stated for peaks; the part must withstand them."
         )
     name = "capacitor_voltage"
@@ -231,61 +233,6 @@ def _capacitor_overvoltage(found: Findings) -> str:
         limit = show(rated_rms, "voltage")
         told.append(f"Steady capacitor voltage, rms: {rms}, above the rated {limit} rms.")
     return " ".join(told)
-
-
-def _magnified(found: Findings, size: Size, source: str = "") -> str:
-    """A voltage, and how many times the source's it is."""
-
-    def write(value: float) -> str:
-        if not math.isfinite(value):
-            return show(value, "voltage")
-        times = show(value / found.level, "number")
-        return f"{show(value, 'voltage')} ({times} times{source})"
-
-    return size.told(write)
-
-
-def _magnification(found: Findings) -> str:
-    if not (found.sine and found.level):
-        return ""
-    sizes = ((name, found.steady(name)) for name in ("capacitor", "inductor"))
-    told = [
-        f"{name} {_magnified(found, size)}"
-        for name, size in sizes
-        if math.isfinite(size.nominal) and size.highest >= MAGNIFIED * found.level
-    ]
-    if not told:
-        return ""
-    return (
-        f"In steady state parts of the loop have more than the source's"
-        f" {show(found.level, 'voltage')} peak: {'; '.join(told)}."
-    )
-
-
-def _resonance(found: Findings) -> str:
-    if not (found.sine and found.quality >= RESONANT_QUALITY):
-        return ""
-    eq, frequency = found.case.equation, float(found.case.source.frequency)
-    nominal = tuple(float(edge) for edge in half_power_frequencies(eq))
-    lower, upper = half_power_frequencies(found.batch.equation)
-    reached = float(np.min(lower)), float(np.max(upper))
-    if not reached[0] <= frequency <= reached[1]:
-        return ""
-    whose = "" if math.isinf(found.loop.load_resistance) else " of the capacitor's current"
-    band, spread = f"{found.nominal}half-power band{whose}, {_range(nominal)}", ""
-    if not nominal[0] <= frequency <= nominal[1]:
-        band = f"half-power band{whose} over the parts, {_range(reached)}"
-        spread = f"; the nominal band, {_range(nominal)}, misses it"
-    natural = show(float(eq.natural) / (2 * math.pi), "frequency")
-    return (
-        f"The source's {show(frequency, 'frequency')} lies in the {band}, around the"
-        f" {found.nominal}resonance at {natural}{spread}. A small change of a part or of the"
-        " frequency changes current and voltages much."
-    )
-
-
-def _range(edges: tuple[float, ...]) -> str:
-    return " to ".join(show(edge, "frequency") for edge in edges)
 
 
 def _saturation(found: Findings) -> str:
@@ -302,7 +249,8 @@ def _saturation(found: Findings) -> str:
 def _inrush(found: Findings) -> str:
     if not (exceeds(found.current.highest, CONTACT_CURRENT) and found.inrush > OVERSHOT):
         return ""
-    steady = f" (steady amplitude: {found.steady('current')})" if found.sine else ""
+    largest = "largest steady value" if found.case.source.orders else "steady amplitude"
+    steady = f" ({largest}: {found.steady('current')})" if found.alternating else ""
     told = [
         f"Peak current at switch-on: {found.current}{steady}."
         f" Contacts, connectors and fuses carry it{_let_through(found)}."
@@ -321,8 +269,10 @@ def _let_through(found: Findings) -> str:
     passed, when = found.let_through(until), "over all time"
     if not math.isfinite(passed.nominal):
         return ""
-    if found.sine:
+    if found.alternating:
         when = "in the first source period"
+    elif found.case.repeats:
+        when = "in one period of the steady train"
     elif until is not None:
         when = f"in the first {show(until, 'time')}"
     return f"; the let-through {when} is {passed}"
@@ -334,9 +284,14 @@ def _fuse(found: Findings) -> str:
         return ""
     target = fuse.target(found.case)
     passed = found.let_through(target.at)
+    once = "one switch-on"
+    if found.case.repeats:
+        once = "one period of the steady train"
+    elif found.alternating:
+        once = "one switch-on, in the first source period,"
     melting = show(fuse.melting_let_through, "let_through")
     return (
-        f"The fuse melts at {melting}; the let-through of one switch-on is {passed}. For"
+        f"The fuse melts at {melting}; the let-through of {once} is {passed}. For"
         f" {fuse.operations} operations practice allows {show(fuse.share, 'ratio')} of what"
         f" melts it, {show(target.maximum, 'let_through')}: the maker's pulse curve governs."
     )
@@ -386,13 +341,15 @@ _RULES: tuple[tuple[str, Callable[[Findings], str]], ...] = (
     ("undamped", _undamped),
     ("interrupting", _interrupting),
     ("capacitor-overvoltage", _capacitor_overvoltage),
-    ("magnification", _magnification),
-    ("resonance", _resonance),
+    ("magnification", magnification),
+    ("resonance", resonance),
     ("saturation", _saturation),
     ("inrush", _inrush),
     ("fuse", _fuse),
     ("closing-angle", closing_angle),
     ("trapped-charge", trapped_charge),
+    ("source-ends", source_ends),
+    ("record", record),
     ("model-limits", _model_limits),
     ("deference", _deference),
 )

@@ -15,17 +15,20 @@ from typing import Any, NamedTuple
 import numpy as np
 
 from rlc.front.marking import show
+from rlc.render.known import steady_of
+from rlc.render.sources import short
 from rlc.solver.case import Case
 from rlc.solver.loop import Loop
 from rlc.solver.quantities import REGISTER
-from rlc.solver.source import Source
+from rlc.solver.source import ANY_ANGLE, Source
 from rlc.solver.targets import Fuse, Ratings
 
 # Upper limits of extra-low voltage, IEC 61140 and IEC 61558-1: confirmed.
 ELV_AC_RMS = 50.0
 ELV_DC = 120.0
 # A peak of a ringing dc loop is held against ELV_DC although that limit is for a steady,
-# ripple-free level: common practice, no source.
+# ripple-free level, and so is the largest value of a pulse, a surge or a record: common
+# practice, no source.
 ELV_AC_PEAK = ELV_AC_RMS * math.sqrt(2)
 
 # Direct voltage that may be touched when dry, as quoted with IEC 61140 and 60364: confirmed.
@@ -110,25 +113,33 @@ class Findings:
         return "" if self.corners is None else "nominal "
 
     @property
-    def sine(self) -> bool:
-        return self.case.source.kind == "sine"
+    def alternating(self) -> bool:
+        return self.case.source.alternating
 
     @cached_property
     def level(self) -> float:
-        """Peak of the source [V]."""
-        return abs(float(self.case.source.amplitude))
+        """Largest magnitude of the source at any time [V]."""
+        return float(self.case.source.largest)
 
     @cached_property
     def source(self) -> str:
         """The source in words."""
-        if not self.sine:
-            return f"{show(self.level, 'voltage')} dc"
-        rms = show(float(self.case.source.rms), "voltage")
-        return f"{rms} rms ({show(self.level, 'voltage')} peak)"
+        return short(self.case.source)
+
+    @property
+    def steady_source(self) -> bool:
+        """Whether the limits of extra-low voltage are meant for it: alternating, or constant."""
+        return self.alternating or self.case.source.kind == "dc"
+
+    @property
+    def undamped(self) -> bool:
+        return float(self.case.equation.damping) == 0
 
     @cached_property
     def hazardous_source(self) -> bool:
-        return exceeds(float(self.case.source.rms), ELV_AC_RMS if self.sine else ELV_DC)
+        if self.alternating:
+            return exceeds(float(self.case.source.rms), ELV_AC_RMS)
+        return exceeds(self.level, ELV_DC)
 
     @cached_property
     def quality(self) -> float:
@@ -250,49 +261,56 @@ class Findings:
         return exceeds(self.energy.highest, SMALL_ENERGY)
 
     def steady(self, element: str) -> Size:
-        """Steady amplitude of ``"current"`` [A] or of a voltage [V]."""
+        """Largest steady value of ``"current"`` [A] or of a voltage [V]; not a number if none."""
         kind = "current" if element == "current" else "voltage"
         name = "current" if element == "current" else f"{element}_voltage"
         names = {f"{name}_amplitude": 1.0, name: 1 / self.case.source.rms_per_amplitude}
-        return self.size(lambda case: self._amplitude(case, element), kind, names)
-
-    def _amplitude(self, case: Case, element: str) -> Any:
-        return self.level * np.abs(getattr(case.steady, element))
+        # The register's amplitudes are those of the fundamental alone.
+        if self.case.source.orders:
+            names = {}
+        return self.size(lambda case: steady_of(case, element), kind, names)
 
     @cached_property
     def inrush(self) -> float:
-        """Highest ratio of a loop's peak current to its own steady amplitude."""
+        """Highest ratio of a loop's peak current to its own largest steady one.
+
+        Infinite where no current stays, and for a train of pulses.
+        """
+        if self.case.repeats:
+            return math.inf
         with np.errstate(all="ignore"):
-            ratio = self.batch.peak("current").value / self._amplitude(self.batch, "current")
+            ratio = self.batch.peak("current").value / steady_of(self.batch, "current")
         return _highest(ratio)
 
     @property
     def searched(self) -> bool:
-        """Whether other closings of a sine are looked at."""
-        if not (self.sine and self.level):
+        """Whether other closings of an alternating source are looked at."""
+        if not (self.alternating and self.level):
             return False
         if math.isinf(self.quality):
             return True
-        eq = self.case.equation
-        away = abs(2 * math.pi * float(self.case.source.frequency) - float(eq.natural))
+        eq, source = self.case.equation, self.case.source
+        away = min(
+            abs(2 * math.pi * order.number * float(source.frequency) - float(eq.natural))
+            for order in source.every_order
+        )
         flat = self.quality > _SHARP_QUALITY and away < _AT_RESONANCE * float(eq.gamma)
         return self.quality <= _SEARCHED_QUALITY and not flat
 
     @cached_property
     def worst_closing(self) -> Case:
         """The same switch-on at the worst closing angles."""
-        if self.case.source.worst_angle:
+        if self.case.source.worst_angle and self.case.source.window in (None, ANY_ANGLE):
             return self.case
-        states = self.case.capacitor_voltage, self.case.initial_current
-        return Case(self.loop, self._at_any_angle, *states)
+        return replace(self.case, source=self._at_any_angle)
 
     def reclosing(self, trapped: float) -> Case:
-        """Closing onto a charged capacitor [V] at the worst angles."""
-        return Case(self.loop, self._at_any_angle, np.asarray(trapped))
+        """Closing onto a capacitor charged [V] either way, at the worst angles."""
+        return Case(self.loop, self._at_any_angle, np.asarray(trapped), either_polarity=True)
 
     @property
     def _at_any_angle(self) -> Source:
-        return replace(self.case.source, closing_angle=None)
+        return replace(self.case.source, closing_angle=None, window=None)
 
     def worst_angle(self, element: str) -> float:
         """Worst closing angle for ``"current"`` or ``"capacitor"`` [rad].
@@ -307,11 +325,13 @@ class Findings:
     @property
     def let_through_end(self) -> float | None:
         """Until when the let-through counts, where it would grow for ever; else None [s]."""
-        if self.sine or not math.isfinite(self.quality):
+        if self.alternating or not math.isfinite(self.quality):
             return None
         if math.isfinite(float(REGISTER["let_through"](self.case))):
             return None
-        return _LET_THROUGH_TIME_CONSTANTS * float(REGISTER["time_constant"](self.case))
+        shape = self.case.source.shape
+        end = shape.settled if shape is not None else 0.0
+        return end + _LET_THROUGH_TIME_CONSTANTS * float(REGISTER["time_constant"](self.case))
 
     def let_through(self, until: float | None) -> Size:
         """Let-through of one switch-on, to a stated time or of the whole of it [A^2 s]."""

@@ -40,15 +40,18 @@ def write(width: int, *pieces: Table | Text | str) -> None:
             console.print()
         if isinstance(piece, str):
             for line in textwrap.wrap(piece, min(width, _WIDEST_TEXT)) or [""]:
-                console.print(Text(line))
+                console.print(Text(_printable(line, console.encoding)))
         elif isinstance(piece, Text):
-            # As rich does it for the rules of tables where a terminal has no such signs.
-            if not console.encoding.startswith("utf"):
-                piece = Text(piece.plain.replace("─", "-"))
-            console.print(piece)
+            plain = _printable(piece.plain, console.encoding)
+            console.print(piece if plain == piece.plain else Text(plain))
         else:
             _fit(piece, width)
             console.print(piece)
+
+
+def _printable(text: str, encoding: str) -> str:
+    """As rich does it for the rules of tables where a terminal has no such signs."""
+    return text if encoding.startswith("utf") else text.replace("─", "-").replace("±", "+/-")
 
 
 def _fit(table: Table, width: int) -> None:

@@ -9,9 +9,14 @@ from dataclasses import fields
 from typing import Any
 
 from rlc.front.marking import KINDS
+from rlc.render import sources
 from rlc.render.cautions import Caution
-from rlc.render.known import PEAKS, peak_of
+from rlc.render.known import PEAKS, largest_among, peak_of
+from rlc.render.limits import Passing
+from rlc.render.states import by_order
+from rlc.solver import results
 from rlc.solver.case import Case
+from rlc.solver.closing import Closings
 from rlc.solver.extrema import Extrema
 from rlc.solver.loop import ELEMENTS, Loop
 from rlc.solver.parts import Part
@@ -62,20 +67,12 @@ def loop(case: Case, parts: Iterable[Part] = ()) -> dict[str, Any]:
         SI values by field; None for a load that is not there.
     """
     values = {field.name: number(getattr(case.loop, field.name)) for field in fields(Loop)}
-    source = case.source
-    sine = source.kind == "sine"
-    angle: Any = source.closing_angle
     return values | {
         "total_resistance": number(case.loop.total_resistance),
         "total_inductance": number(case.loop.total_inductance),
-        "source": {
-            "kind": source.kind,
-            "amplitude": number(source.amplitude),
-            "rms": number(source.rms),
-            "frequency": number(source.frequency),
-            "closing_angle": ("worst" if angle is None else number(angle)) if sine else None,
-        },
+        "source": sources.document(case.source),
         "capacitor_voltage": number(case.capacitor_voltage),
+        "either_polarity": case.either_polarity,
         "initial_current": number(case.initial_current),
         "limits": {part.field: [part.low, part.high] for part in parts if part.high > part.low},
     }
@@ -189,7 +186,7 @@ def sweep(found: Sweep) -> dict[str, Any]:
 
 
 def elements(case: Case) -> dict[str, Any]:
-    """Voltage across each part in steady state.
+    """Voltage across each part in steady state, with harmonics that of the fundamental.
 
     Parameters
     ----------
@@ -199,12 +196,16 @@ def elements(case: Case) -> dict[str, Any]:
     Returns
     -------
     dict
-        By element: amplitude, a peak value [V], and phase against the source [rad].
+        By element: amplitude, a peak value [V], and phase against the source [rad]; None for a
+        train of pulses, which has none.
     """
-    level = abs(float(case.source.amplitude))
+    level = float(results.level(case))
     phasors = {name: complex(case.steady.across(name)) for name in ELEMENTS}
     return {
-        name: {"amplitude": number(level * abs(phasor)), "phase": number(cmath.phase(phasor))}
+        name: {
+            "amplitude": number(level * abs(phasor)),
+            "phase": None if case.repeats else number(cmath.phase(phasor)),
+        }
         for name, phasor in phasors.items()
     }
 
@@ -220,44 +221,122 @@ def peaks(case: Case) -> dict[str, Any]:
     Returns
     -------
     dict
-        By signal: value and steady amplitude [A or V], time [s], closing angle [rad], gap [1].
+        By signal: value and steady amplitude [A or V], time [s], closing angle [rad], gap [1];
+        where the capacitor's polarity at closing is open, its sign as well [1].
     """
     found = {element: peak_of(case, element) for element, _ in PEAKS}
     return {
         element: {
             "value": number(peak.value),
             "time": number(peak.time),
-            "closing_angle": number(peak.angle) if case.source.kind == "sine" else None,
+            "closing_angle": number(peak.angle) if case.source.alternating else None,
             "steady": number(peak.steady),
             "gap": number(peak.gap),
             "known": peak.known,
         }
+        | ({"polarity": peak.polarity} if case.either_polarity else {})
         for element, peak in found.items()
     }
 
 
-def extrema(found: Extrema) -> list[dict[str, Any]]:
+def orders(case: Case) -> list[dict[str, Any]]:
+    """The steady state of each order of a source with harmonics.
+
+    Parameters
+    ----------
+    case : Case
+        One loop.
+
+    Returns
+    -------
+    list of dict
+        Number [1], frequency [Hz], and rms of source, current and capacitor voltage [V], [A].
+    """
+    return [{name: number(value) for name, value in row.items()} for row in by_order(case)]
+
+
+def closings(found: Mapping[str, Closings], case: Case) -> dict[str, Any]:
+    """How peaks are distributed over the closings that are possible.
+
+    Parameters
+    ----------
+    found : mapping of str to Closings
+        By signal.
+    case : Case
+        The loop that they are of.
+
+    Returns
+    -------
+    dict
+        By signal: 1, 50 and 99 % point and worst [A or V], and the worst one's angle [rad].
+    """
+    return {
+        element: {
+            **points._asdict(),
+            "worst": number(peak_of(case, element).value),
+            "closing_angle": number(peak_of(case, element).angle),
+        }
+        for element, points in found.items()
+    }
+
+
+def exceeded(found: Iterable[Passing]) -> list[dict[str, Any]]:
+    """When limits are first exceeded by the nominal loop, and for how long in all.
+
+    Parameters
+    ----------
+    found : iterable of Passing
+        One per limit.
+
+    Returns
+    -------
+    list of dict
+        Limit [A or V], first moment [s], None if never; duration in all [s], None if it is
+        exceeded again and again, or if that is not known.
+    """
+    return [
+        {
+            "of": "current" if row.element == "current" else "capacitor_voltage",
+            "limit": number(row.limit),
+            "stands_for": row.words,
+            "exceeded": row.lasts != 0,
+            "first": number(row.first),
+            "lasts": number(row.lasts),
+            "again_and_again": math.isinf(row.lasts),
+        }
+        for row in found
+    ]
+
+
+def extrema(found: Extrema, case: Case) -> list[dict[str, Any]]:
     """Turning points in time order, and which of the two signals turns.
 
     Parameters
     ----------
     found : Extrema
         The turning points.
+    case : Case
+        The loop that they are of.
 
     Returns
     -------
     list of dict
-        Each with time [s], current [A] and capacitor voltage [V].
+        Each with time [s], current [A] and capacitor voltage [V], and whether it is its
+        signal's largest of the whole switch-on.
     """
-    rows = zip(found.time, found.current, found.capacitor_voltage, found.of, strict=True)
+    rows = zip(
+        found.time, found.current, found.capacitor_voltage, found.of,
+        largest_among(found, case), strict=True,
+    )  # fmt: skip
     return [
         {
             "time": number(time),
             "current": number(current),
             "capacitor_voltage": number(voltage),
             "of": "current" if of == "current" else "capacitor_voltage",
+            "largest": largest,
         }
-        for time, current, voltage, of in rows
+        for time, current, voltage, of, largest in rows
     ]
 
 

@@ -4,23 +4,19 @@ from __future__ import annotations
 
 import math
 from collections.abc import Iterable, Mapping
-from typing import TYPE_CHECKING, Any
+from typing import TYPE_CHECKING
 
-import numpy as np
 from rich.table import Table
 from rich.text import Text
 
 from rlc.front.marking import KINDS, show
 from rlc.render.cautions import Caution
-from rlc.render.known import PEAKS, peak_of
 from rlc.render.layout import named_rows, new_table
 from rlc.solver.case import Case
-from rlc.solver.loop import ELEMENTS
 from rlc.solver.quantities import REGISTER
 from rlc.solver.quantity import Quantity
 
 if TYPE_CHECKING:
-    from rlc.solver.extrema import Extrema
     from rlc.solver.parts import Part
     from rlc.solver.spread import Outcome
     from rlc.solver.sweep import Sweep
@@ -32,10 +28,10 @@ _ELSEWHERE = {
     "voltage_magnification", "gain",
     "peak_current", "peak_current_time", "peak_capacitor_voltage", "peak_capacitor_voltage_time",
     "peak_inductor_voltage", "worst_closing_angle_current", "worst_closing_angle_capacitor_voltage",
+    "current_exceeding_time", "current_exceeding_duration",
+    "capacitor_voltage_exceeding_time", "capacitor_voltage_exceeding_duration",
 }  # fmt: skip
 _NO_ANGLE = 1e-12
-_SAME = 1e-9
-_WORDS = {"current": "current", "capacitor": "capacitor voltage"}
 
 
 def loop(
@@ -79,28 +75,6 @@ def loop(
     return table
 
 
-def source(case: Case) -> str:
-    """The source and the states at closing, in one sentence."""
-    level, found = case.source, []
-    if level.kind == "dc":
-        found.append(f"Source: dc, {show(float(level.amplitude), 'voltage')} stepped on at t = 0")
-    else:
-        found.append(
-            f"Source: sine, {show(float(level.rms), 'voltage')} rms"
-            f" ({show(abs(float(level.amplitude)), 'voltage')} peak),"
-            f" {show(float(level.frequency), 'frequency')}"
-        )
-        angle: Any = level.closing_angle
-        shown = (
-            "the worst" if angle is None else f"{show(float(angle), 'angle')} from the rising zero"
-        )
-        found.append(f"closing angle: {shown}")
-    found.append(f"{show(float(case.capacitor_voltage), 'voltage')} on the capacitor at closing")
-    if float(case.initial_current):
-        found.append(f"{show(float(case.initial_current), 'current')} in the loop")
-    return "; ".join(found) + "."
-
-
 def frequencies(case: Case, values: Mapping[str, float]) -> Table:
     """Natural, ringing and source frequency side by side.
 
@@ -111,13 +85,13 @@ def frequencies(case: Case, values: Mapping[str, float]) -> Table:
     values : mapping of str to float
         Its ``natural_frequency`` and ``ringing_frequency`` among them [Hz].
     """
-    driven = float(case.source.frequency) if case.source.kind == "sine" else math.nan
+    driven = float(case.source.frequency) if case.source.alternating else math.nan
     natural = values["natural_frequency"]
     table = new_table("Frequencies", "natural", "ringing", "source", "source/natural", words=0)
     table.add_row(
         show(natural, "frequency"),
         show(values["ringing_frequency"], "frequency"),
-        show(driven, "frequency") if math.isfinite(driven) else "dc",
+        show(driven, "frequency") if math.isfinite(driven) else case.source.kind,
         show(driven / natural, "number"),
     )
     return table
@@ -139,80 +113,7 @@ def quantities(title: str, values: Mapping[str, float], group: str) -> Table:
     for name, value in values.items():
         entry = REGISTER[name]
         if entry.group == group and name not in _ELSEWHERE:
-            table.add_row(name, entry.symbol, _shown(value, entry.kind), entry.convention)
-    return table
-
-
-def elements(case: Case) -> Table:
-    """The steady state, element by element."""
-    steady, level = case.steady, float(case.source.amplitude)
-    if case.source.kind == "dc":
-        table = new_table("Final state", "of", "value")
-        table.add_row("source", show(level, "voltage"))
-        for element in ELEMENTS:
-            table.add_row(element, show(level * float(np.real(steady.across(element))), "voltage"))
-        current = level * float(np.real(steady.current))
-        table.add_row("current", show(current, "current"))
-        table.add_row("power from the source", show(level * current, "power"))
-        return table
-    level = abs(level)
-    table = new_table(
-        "Steady state by element", "across", "rms", "amplitude", "phase", "times source"
-    )
-    phasors = {"source": np.complex128(1)} | {name: steady.across(name) for name in ELEMENTS}
-    for name, phasor in phasors.items():
-        ratio = abs(complex(phasor))
-        table.add_row(
-            name,
-            show(ratio * level * case.source.rms_per_amplitude, "voltage"),
-            show(ratio * level, "voltage"),
-            _shown(float(np.angle(phasor)), "angle"),
-            show(ratio, "number"),
-        )
-    return table
-
-
-def peaks(case: Case) -> Table:
-    """The true peaks from closing on, when they come, and how they are known."""
-    sine = case.source.kind == "sine"
-    table = new_table(
-        "Switch-on peaks", "of", "peak", "at", *["angle"] * sine,
-        "steady\namplitude" if sine else "final", "known", sentence=True,
-    )  # fmt: skip
-    for element, kind in PEAKS:
-        found = peak_of(case, element)
-        angle = "any" if found.angle is None else show(found.angle, "angle")
-        table.add_row(
-            "current" if element == "current" else f"{element} voltage",
-            show(found.value, kind),
-            show(found.time, "time"),
-            *[angle] * sine,
-            show(found.steady, kind),
-            found.known,
-        )
-    return table
-
-
-def extrema(found: Extrema, case: Case) -> Table:
-    """The first turning points, and which of them is the largest of all.
-
-    Parameters
-    ----------
-    found : Extrema
-        The turning points.
-    case : Case
-        The loop that they are of.
-    """
-    angle = f", closed at {show(found.angle, 'angle')}" if case.source.kind == "sine" else ""
-    table = new_table(f"First extrema{angle}", "time", "current", "capacitor voltage", "", words=0)
-    for time, current, voltage, of in zip(
-        found.time, found.current, found.capacitor_voltage, found.of, strict=True
-    ):
-        peak, value = case.peak(of), current if of == "current" else voltage
-        governs = math.isclose(abs(value), float(peak.value), rel_tol=_SAME)
-        words = f"{'largest' if governs else 'turn of the'} {_WORDS[of]}"
-        table.add_row(show(time, "time"), show(current, "current"), show(voltage, "voltage"), words)
-    table.columns[-1].justify = "left"
+            table.add_row(name, entry.symbol, shown(value, entry.kind), entry.convention)
     return table
 
 
@@ -338,7 +239,7 @@ def sweep(found: Sweep) -> Table:
         table.add_row(
             show(frequency, "frequency", 5),
             *(
-                _shown(column.values[index], REGISTER[column.quantity].kind)
+                shown(column.values[index], REGISTER[column.quantity].kind)
                 for column in found.columns
             ),
             found.marks.get(float(frequency), ""),
@@ -351,8 +252,16 @@ def _titled(quantity: str) -> str:
     return f"{quantity} rms" if rms else quantity
 
 
-def _shown(value: float, kind: str) -> str:
-    """As `show`, with the rounding that is left of an angle of zero taken away."""
+def shown(value: float, kind: str) -> str:
+    """As `show`, with the rounding that is left of an angle of zero taken away.
+
+    Parameters
+    ----------
+    value : float
+        [SI unit of the kind].
+    kind : str
+        Key of :data:`rlc.front.marking.KINDS`.
+    """
     return show(0.0 if kind == "angle" and abs(value) < _NO_ANGLE else value, kind)
 
 

@@ -2,7 +2,8 @@
 
 from __future__ import annotations
 
-from dataclasses import dataclass
+from collections.abc import Mapping
+from dataclasses import dataclass, field
 from typing import Any, ClassVar
 
 import numpy as np
@@ -42,6 +43,8 @@ class Piecewise:
     period : float, optional
         The lines are repeated after so long until the loop is steady; more than the last
         knot [s].
+    given : mapping of str to float or None
+        What it was made from, by the names of the function that did [s], [V], [1].
 
     Raises
     ------
@@ -54,6 +57,7 @@ class Piecewise:
     level: Array
     end: Array
     period: float | None = None
+    given: Mapping[str, float | None] = field(default_factory=dict)
 
     def __post_init__(self) -> None:
         for name in ("start", "level", "end"):
@@ -107,7 +111,8 @@ class Piecewise:
         """
         assert self.period is not None
         start = np.add.outer(np.arange(count) * self.period, self.start).ravel()
-        return Piecewise(self.kind, start, np.tile(self.level, count), np.tile(self.end, count))
+        level, end = np.tile(self.level, count), np.tile(self.end, count)
+        return Piecewise(self.kind, start, level, end, given=self.given)
 
     def at(self, time: Any) -> Array:
         """The voltage at given times.
@@ -140,6 +145,8 @@ class Surge:
         k, of the sign of the peak [V].
     slow, fast : float
         alpha and beta, 0 < alpha < beta [1/s].
+    given : mapping of str to float
+        What it was made from, by the names of :func:`surge` [s], [V].
     """
 
     kind: ClassVar[str] = "surge"
@@ -149,6 +156,7 @@ class Surge:
     scale: float
     slow: float
     fast: float
+    given: Mapping[str, float | None] = field(default_factory=dict, compare=False)
 
     @property
     def largest(self) -> float:
@@ -197,7 +205,8 @@ def ramp(voltage: float, rise_time: float) -> Piecewise:
     if not rise_time > 0:
         raise InputError("rise_time", rise_time, "must be more than zero; a step is dc")
     level, end = np.array([0.0, voltage]), np.array([voltage, voltage])
-    return Piecewise("ramp", np.array([0.0, rise_time]), level, end)
+    given = {"voltage": voltage, "rise_time": rise_time}
+    return Piecewise("ramp", np.array([0.0, rise_time]), level, end, given=given)
 
 
 def pulse(
@@ -257,7 +266,11 @@ def pulse(
     ]
     lengths, level, end = zip(*lines, strict=True)
     start = np.cumsum([0.0, *lengths])
-    one = Piecewise("pulse", start, np.array([*level, 0.0]), np.array([*end, 0.0]), period)
+    given = {
+        "voltage": voltage, "width": width, "rise_time": rise_time, "fall_time": fall_time,
+        "period": period, "count": count,
+    }  # fmt: skip
+    one = Piecewise("pulse", start, np.array([*level, 0.0]), np.array([*end, 0.0]), period, given)
     if count is None:
         return one
     return one if count == 1 else one.repeated(count)
@@ -341,7 +354,8 @@ def surge(voltage: float, front_time: float, half_value_time: float) -> Surge:
     fast = 1.0 + 10.0**decades
     pace = _defining_times(1.0, fast)[0] / front_time
     unit = Surge(1.0, pace, fast * pace)
-    return Surge(voltage / unit.largest, unit.slow, unit.fast)
+    given = {"voltage": voltage, "front_time": front_time, "half_value_time": half_value_time}
+    return Surge(voltage / unit.largest, unit.slow, unit.fast, given)
 
 
 def _defining_times(slow: float, fast: float) -> tuple[float, float]:

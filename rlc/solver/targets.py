@@ -138,7 +138,10 @@ class Fuse:
         return float(np.interp(np.log10(self.operations), _PULSES, _SHARES))
 
     def target(self, case: Case) -> Target:
-        """The limit on one pulse: the whole of it, or five time constants where current stays.
+        """The limit on one switch-on: the whole of it, or five time constants where current stays.
+
+        They are counted from when the source has come to its level; of a source with a frequency
+        and of a train of pulses a period counts.
 
         Parameters
         ----------
@@ -150,8 +153,11 @@ class Fuse:
         Target
             An upper limit on the let-through [A^2 s].
         """
-        lasting = case.source.kind == "dc" and bool(np.any(case.loop.load_conductance > 0))
-        until = _PULSE_TIME_CONSTANTS * float(REGISTER["time_constant"](case)) if lasting else None
+        source, until = case.source, None
+        held = not source.alternating and bool(np.any(source.amplitude))
+        if held and bool(np.any(case.loop.load_conductance > 0)):
+            end = 0.0 if source.shape is None else source.shape.settled
+            until = end + _PULSE_TIME_CONSTANTS * float(REGISTER["time_constant"](case))
         allowed = self.share * self.melting_let_through
         return Target("let_through", maximum=allowed, at=until, rating="fuse.melting_let_through")
 

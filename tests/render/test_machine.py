@@ -79,8 +79,11 @@ def test_every_part_of_the_loop_under_its_own_name() -> None:
         "source_inductance": 19.0,
         # 2 + 7 + 17 + 11 and 3 + 19
         "total_resistance": 37.0, "total_inductance": 22.0,
-        "source": {"kind": "sine", "amplitude": 10.0, "frequency": 50.0, "closing_angle": 0.25},
-        "capacitor_voltage": 23.0, "initial_current": 29.0,
+        "source": {
+            "kind": "sine", "amplitude": 10.0, "frequency": 50.0, "largest": 10.0,
+            "closing_angle": 0.25, "orders": [],
+        },
+        "capacitor_voltage": 23.0, "either_polarity": False, "initial_current": 29.0,
         "limits": {"resistance": [1.5, 4.0]},
     }  # fmt: skip
 
@@ -88,7 +91,8 @@ def test_every_part_of_the_loop_under_its_own_name() -> None:
 def test_a_dc_source_keeps_its_sign_and_has_no_angle() -> None:
     found = machine.loop(unit(1.0, constant(-3.0)))
     assert found["source"] == {
-        "kind": "dc", "amplitude": -3.0, "rms": 3.0, "frequency": 0.0, "closing_angle": None,
+        "kind": "dc", "amplitude": -3.0, "rms": 3.0, "frequency": 0.0, "largest": 3.0,
+        "closing_angle": None, "orders": [],
     }  # fmt: skip
     assert found["load_resistance"] is None
     assert found["limits"] == {}
@@ -272,10 +276,18 @@ def test_extrema_in_their_order() -> None:
         0.5, np.array([1.0, 2.0]), np.array([3.0, -4.0]), np.array([5.0, 6.0]),
         ("capacitor", "current"),
     )  # fmt: skip
-    assert machine.extrema(found) == [
-        {"time": 1.0, "current": 3.0, "capacitor_voltage": 5.0, "of": "capacitor_voltage"},
-        {"time": 2.0, "current": -4.0, "capacitor_voltage": 6.0, "of": "current"},
-    ]
+    # The peak of either signal is stated as 4.
+    rows = machine.extrema(found, stated(constant(1.0), 4.0, 2.0, 0.0, 0.5))
+    assert rows == [
+        {
+            "time": 1.0, "current": 3.0, "capacitor_voltage": 5.0, "of": "capacitor_voltage",
+            "largest": False,
+        },
+        {
+            "time": 2.0, "current": -4.0, "capacitor_voltage": 6.0, "of": "current",
+            "largest": True,
+        },
+    ]  # fmt: skip
 
 
 def test_the_register_says_how_a_quantity_is_asked_for() -> None:

@@ -12,10 +12,8 @@ from rich.table import Table
 
 from rlc.render import layout, tables
 from rlc.solver.case import Case
-from rlc.solver.extrema import Extrema
 from rlc.solver.loop import make_loop
 from rlc.solver.parts import Part
-from rlc.solver.peaks import Peak
 from rlc.solver.source import Source, constant, sine
 from rlc.solver.spread import Effect, Outcome, spread, yield_interval
 from rlc.solver.sweep import Column, Sweep
@@ -28,22 +26,6 @@ def unit(resistance: float, source: Source, *states: float, **more: float) -> Ca
     """L = C = 1: natural angular frequency and characteristic impedance are 1."""
     loop = make_loop(resistance=resistance, inductance=1.0, capacitance=1.0, **more)
     return Case(loop, source, *states)  # type: ignore[arg-type]
-
-
-class Stated(Case):
-    """A unit loop whose peaks are stated instead of solved for."""
-
-    def peak(self, element: str) -> Peak:
-        value, time, gap = {
-            "current": (2.0, 3.0, 0.015),
-            "capacitor": (5.0, math.inf, 0.0),
-            "inductor": (math.inf, math.inf, 0.0),
-        }[element]
-        return Peak(*(np.asarray(each) for each in (value, time, gap, math.pi / 6)))
-
-
-def stated(source: Source) -> Case:
-    return Stated(make_loop(resistance=1.0, inductance=1.0, capacitance=1.0), source)
 
 
 def rows(table: Table) -> list[list[str]]:
@@ -88,42 +70,6 @@ def test_each_part_beside_its_value_and_limits() -> None:
     assert rows(tables.loop(unit(1.0, constant(1.0))))[-1][1] == "none"
 
 
-@pytest.mark.parametrize(
-    ("source", "states", "said"),
-    [
-        (
-            constant(-3.0), (-5.0, 2.0),
-            "Source: dc, -3 V stepped on at t = 0; -5 V on the capacitor at closing;"
-            " 2 A in the loop.",
-        ),
-        (
-            constant(3.0), (0.0, -2.0),
-            "Source: dc, 3 V stepped on at t = 0; 0 V on the capacitor at closing;"
-            " -2 A in the loop.",
-        ),
-        (
-            constant(3.0), (),
-            "Source: dc, 3 V stepped on at t = 0; 0 V on the capacitor at closing.",
-        ),
-        # 3 V / sqrt(2) = 2.1213 V
-        (
-            sine(3.0, 50.0, math.pi / 6), (),
-            "Source: sine, 2.121 V rms (3 V peak), 50 Hz; closing angle: 30 deg from the rising"
-            " zero; 0 V on the capacitor at closing.",
-        ),
-        (
-            sine(3.0, 50.0, None), (4.0,),
-            "Source: sine, 2.121 V rms (3 V peak), 50 Hz; closing angle: the worst; 4 V on the"
-            " capacitor at closing.",
-        ),
-    ],
-)  # fmt: skip
-def test_source_and_states_in_one_sentence(
-    source: Source, states: tuple[float, ...], said: str
-) -> None:
-    assert tables.source(unit(1.0, source, *states)) == said
-
-
 def test_frequencies_side_by_side() -> None:
     """R = 1.2: rings at sqrt(1 - 0.36) = 0.8 rad/s; natural 1 rad/s is 159.15 mHz."""
     values = {"natural_frequency": RESONANCE, "ringing_frequency": 0.8 * RESONANCE}
@@ -131,69 +77,6 @@ def test_frequencies_side_by_side() -> None:
     assert driven == [["159.2 mHz", "127.3 mHz", "318.3 mHz", "2"]]
     stepped = rows(tables.frequencies(unit(1.2, constant(1.0)), values))
     assert stepped == [["159.2 mHz", "127.3 mHz", "dc", "-"]]
-
-
-# --- steady state
-
-
-def test_final_state_of_a_negative_dc_with_a_load() -> None:
-    """-3 V over 1 ohm and a load of 2 ohm: -1 A, 3 W."""
-    found = rows(tables.elements(unit(1.0, constant(-3.0), load_resistance=2.0)))
-    assert found == [
-        ["source", "-3 V"], ["resistor", "-1 V"], ["inductor", "0 V"], ["capacitor", "-2 V"],
-        ["current", "-1 A"], ["power from the source", "3 W"],
-    ]  # fmt: skip
-
-
-@pytest.mark.parametrize("amplitude", [3.0, -3.0])
-def test_steady_state_at_resonance(amplitude: float) -> None:
-    """R = 0.5 of impedances of 1: twice the source across inductor and capacitor."""
-    table = tables.elements(unit(0.5, sine(amplitude, RESONANCE)))
-    assert [column.header for column in table.columns] == [
-        "across", "rms", "amplitude", "phase", "times source",
-    ]  # fmt: skip
-    assert rows(table) == [
-        ["source", "2.121 V", "3 V", "0 deg", "1"],
-        ["resistor", "2.121 V", "3 V", "0 deg", "1"],
-        ["inductor", "4.243 V", "6 V", "90 deg", "2"],
-        ["capacitor", "4.243 V", "6 V", "-90 deg", "2"],
-    ]
-
-
-# --- peaks
-
-
-def test_peaks_of_a_critical_step() -> None:
-    """R = 2, 1 V: i = t exp(-t), 1/e at 1 s; v_C creeps to 1 V; v_L is 1 V at closing."""
-    assert rows(tables.peaks(unit(2.0, constant(1.0)))) == [
-        ["current", "367.9 mA", "1 s", "0 A", "proved"],
-        ["capacitor voltage", "1 V", "-", "1 V", "approached, never reached"],
-        ["inductor voltage", "1 V", "0 s", "0 V", "proved"],
-    ]
-
-
-def test_how_each_peak_is_known() -> None:
-    """R = 1 at resonance: 1 V across each part in steady state, 1 A."""
-    assert rows(tables.peaks(stated(sine(1.0, RESONANCE, None)))) == [
-        ["current", "2 A", "3 s", "30 deg", "1 A", "searched; at most 1.5 % more"],
-        ["capacitor voltage", "5 V", "-", "any", "1 V", "approached, never reached"],
-        ["inductor voltage", "unbounded", "-", "any", "1 V", "grows without bound"],
-    ]
-
-
-def test_the_governing_extremum_is_named() -> None:
-    found = Extrema(
-        math.pi / 6, np.array([1.0, 2.0, 3.0]), np.array([-2.0, 0.5, 1.0]),
-        np.array([0.0, 5.0, 4.0]), ("current", "capacitor", "current"),
-    )  # fmt: skip
-    table = tables.extrema(found, stated(sine(1.0, RESONANCE, None)))
-    assert str(table.title) == "First extrema, closed at 30 deg"
-    assert rows(table) == [
-        ["1 s", "-2 A", "0 V", "largest current"],
-        ["2 s", "500 mA", "5 V", "largest capacitor voltage"],
-        ["3 s", "1 A", "4 V", "turn of the current"],
-    ]
-    assert str(tables.extrema(found, stated(constant(1.0))).title) == "First extrema"
 
 
 # --- sweep

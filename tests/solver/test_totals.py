@@ -38,8 +38,10 @@ def phasors(number):
     parallel = branch * LOAD / (branch + LOAD)
     coil = WINDING + 1j * omega * L
     current = 1 / (R + coil + parallel)
-    return {"current": current, "resistor_voltage": R * current,
-            "inductor_voltage": coil * current, "capacitor_voltage": parallel * current}  # fmt: skip
+    return {
+        "current": current, "resistor_voltage": R * current,
+        "inductor_voltage": coil * current, "capacitor_voltage": parallel * current,
+    }  # fmt: skip
 
 
 def by_hand():
@@ -77,7 +79,7 @@ def test_at_a_stated_frequency_the_fundamentals_level_stands_alone(name):
 
 
 def test_totals_against_an_integration_in_time():
-    """Mean squares and mean power over a period, after so many time constants that 1e-13 is left."""
+    """Mean squares and mean power over a period, after all else has died."""
     omega = 2 * np.pi * FREQUENCY
     peak = RMS * math.sqrt(2)
 
