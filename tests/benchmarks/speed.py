@@ -2,7 +2,7 @@
 
 References: ``scipy.integrate.solve_ivp`` (DOP853, at the tolerance that gives about the same
 accuracy), ``scipy.signal.lsim`` on the same grid, and the elementary functions that a waveform
-cannot do without. Times are medians of several runs; loops are solved from their parts each time.
+cannot do without. Loops are solved from their parts each time.
 """
 
 from __future__ import annotations
@@ -28,14 +28,20 @@ LEVEL = 10.0
 SAMPLES = 16_384
 
 
-def seconds(work: Callable[[], Any], repeats: int = REPEATS) -> float:
-    """The median of several runs."""
-    taken = []
-    for _ in range(repeats):
-        start = time.perf_counter()
-        work()
-        taken.append(time.perf_counter() - start)
-    return statistics.median(taken)
+def seconds(work: Callable[[], Any]) -> float:
+    """One run."""
+    start = time.perf_counter()
+    work()
+    return time.perf_counter() - start
+
+
+def ratio(reference: Callable[[], Any], ours: Callable[[], Any], repeats: int = REPEATS) -> float:
+    """How many times longer the reference takes, median of runs in turns.
+
+    A busy moment of the machine meets both of a pair.
+    """
+    ours()
+    return statistics.median(seconds(reference) / seconds(ours) for _ in range(repeats))
 
 
 def random_case(count: int, sine: bool, seed: int = 1) -> Case:
@@ -101,55 +107,64 @@ def states(case: Case, grid: np.ndarray) -> tuple[np.ndarray, np.ndarray]:
     return driven_states(equation_of(case.loop).column(), *columns, grid)
 
 
-def elementary(sine: bool) -> float:
-    """Seconds a sample for what a damped sine needs, and a source that turns if there is one."""
-    x = np.linspace(0, 30, SAMPLES)
+def elementary(sine: bool) -> None:
+    """What a damped sine needs for each sample, and a source that turns if there is one."""
+    x = np.linspace(-30, 0, SAMPLES)
     buffer = np.empty_like(x)
     functions = (np.exp, np.sin, np.cos, *((np.sin, np.cos) if sine else ()))
-
-    def work() -> None:
+    for _ in range(LOOPS * POINTS // SAMPLES):
         for function in functions:
-            function(-x, out=buffer)
-
-    return seconds(work, 201) / SAMPLES
+            function(x, out=buffer)
 
 
 def main() -> None:
     """Print each ratio."""
     batch, grid = random_case(LOOPS, sine=False), np.linspace(0, 1e-3, POINTS)
-    few = range(20)
+    turning = random_case(LOOPS, sine=True)
     single = Case(batch.loop.map(lambda value: value[0]), batch.source)
 
-    for words, case in (("dc", batch), ("sine", random_case(LOOPS, sine=True))):
-        sample = seconds(lambda case=case: states(case, grid)) / LOOPS / POINTS
-        ratio = sample / elementary(words == "sine")
-        print(f"v_C and i under {words}, {LOOPS} loops, per sample: {ratio:.1f} x exp, sin and cos")
+    for words, case in (("dc", batch), ("sine", turning)):
+        taken = 1 / ratio(lambda: elementary(case is turning), lambda: states(case, grid))  # noqa: B023
+        print(f"v_C and i under {words}, {LOOPS} loops, per sample: {taken:.1f} x exp, sin and cos")
 
-    by_integrator = seconds(lambda: [integrate(batch, k, grid) for k in few], 3) / len(few)
-    by_simulation = seconds(lambda: [simulate(batch, k, grid) for k in few], 3) / len(few)
-    for words, ours in (
-        ("v_C and i, one loop", seconds(lambda: states(single, grid), 101)),
-        (f"v_C and i, {LOOPS} loops", seconds(lambda: states(batch, grid)) / LOOPS),
-        ("all waveforms, one loop", seconds(lambda: single.waveforms(grid), 101)),
-        (f"all waveforms, {LOOPS} loops", seconds(lambda: batch.waveforms(grid), 3) / LOOPS),
-    ):
-        integrator, simulation = by_integrator / ours, by_simulation / ours
-        print(f"{words}, step: solve_ivp {integrator:.0f} x, lsim {simulation:.0f} x as long")
+    few = range(20)
 
-    def peaks() -> None:
+    def integrators(peak: bool = False) -> None:
+        for k in few:
+            integrate(batch, k, grid, peak)
+
+    def simulations() -> None:
+        for k in few:
+            simulate(batch, k, grid)
+
+    def twenty(work: Callable[[], Any]) -> Callable[[], None]:
+        def repeated() -> None:
+            for _ in few:
+                work()
+
+        return repeated
+
+    def step_peaks() -> None:
         Case(batch.loop, batch.source).peak("current")
 
-    ours_peak = seconds(peaks) / LOOPS
-    peak = seconds(lambda: [integrate(batch, k, grid, peak=True) for k in few], 3) / len(few)
-    integrator, simulation = peak / ours_peak, by_simulation / ours_peak
-    print(f"peak of a step, {LOOPS} loops: solve_ivp {integrator:.0f} x, lsim {simulation:.0f} x")
+    each, all_loops = 1.0, LOOPS / len(few)
+    for words, ours, share, peak in (
+        ("v_C and i of a step, one loop", twenty(lambda: states(single, grid)), each, False),
+        ("v_C and i of a step", lambda: states(batch, grid), all_loops, False),
+        ("every waveform of a step, one loop", twenty(lambda: single.waveforms(grid)), each, False),
+        ("every waveform of a step", lambda: batch.waveforms(grid), all_loops, False),
+        ("peak of a step", step_peaks, all_loops, True),
+    ):
+        integrator = share * ratio(lambda: integrators(peak), ours, 3)  # noqa: B023
+        simulation = share * ratio(simulations, ours)
+        count = "" if share == each else f", {LOOPS} loops"
+        print(f"{words}{count}: solve_ivp {integrator:.0f} x, lsim {simulation:.0f} x as long")
 
     for words, angle in (("closing at 0", 0.0), ("worst angle", None)):
         found = random_case(2000, sine=True, seed=2)
         source = Source(found.source.amplitude, found.source.frequency, angle)  # type: ignore[arg-type]
         for element in ("current", "capacitor"):
-            taken = seconds(lambda: Case(found.loop, source).peak(element), 3)  # noqa: B023
-            rate = 2000 / taken
+            rate = 2000 / seconds(lambda: Case(found.loop, source).peak(element))  # noqa: B023
             print(f"proved peaks under a sine, {words}, {element}: {rate:.0f} loops per second")
 
 
