@@ -19,7 +19,7 @@ from rlc.console import (
     Sheet,
     Suffix,
     guarded,
-    note_effort,
+    note,
     read_sheet,
     show,
     terminal_width,
@@ -63,11 +63,11 @@ def check(
 
     Exits with 0 if all targets hold, 3 if one fails, 2 on bad input.
     """
-    from rlc.review import judge, review
+    from rlc.review import effort, judge, review
     from rlc.solver.quantities import REGISTER
 
     loaded = read_sheet(sheet, flags)
-    note_effort(loaded, loaded.inputs.targets, samples)
+    note(effort(loaded, loaded.inputs.targets, samples))
     found = review(loaded, REGISTER, judge(loaded, loaded.inputs.targets, samples, seed))
     pieces = [*_loop(found), *_steady(found), *_switch_on(found), *_spread(found)]
     pictures = ("frequency-response", "switch-on", "state-plane", "spread")
@@ -166,11 +166,11 @@ def spread(
 
     Exits with 0 if all targets that were looked at hold, 3 if one fails, 2 on bad input.
     """
-    from rlc.review import asked_targets, judge, names_in, review
+    from rlc.review import asked_targets, effort, judge, names_in, review
 
     loaded = read_sheet(sheet, flags)
     targets = asked_targets(loaded, quantity or ())
-    note_effort(loaded, targets, samples)
+    note(effort(loaded, targets, samples))
     judged = judge(loaded, targets, samples, seed)
     found = review(loaded, names_in("loop"), judged)
     pieces = [*_loop(found), *_spread(found)]

@@ -23,11 +23,8 @@ if TYPE_CHECKING:
 
     from rlc.front.inputs import Loaded
     from rlc.review import Review
-    from rlc.solver.targets import Target
 
 BAD_INPUT = 2
-# Units times points of the source: more take longer than half a minute or so.
-_LONG = 5_000_000
 
 Sheet = Annotated[
     Path | None, typer.Argument(help="The sheet of parts (TOML); not needed with flags.")
@@ -117,23 +114,15 @@ def read_sheet(sheet: Path | None, flags: dict[str, str]) -> Loaded:
     from rlc.front.load import load
 
     loaded = load(sheet, flags)
-    for note in loaded.notes:
-        typer.echo(f"Note: {note}", err=True)
+    for text in loaded.notes:
+        note(text)
     return loaded
 
 
-def note_effort(loaded: Loaded, targets: Iterable[Target], samples: int) -> None:
-    """Say on stderr that a spread will take a while, and what sets how long."""
-    lines = loaded.inputs.case.lines
-    if lines is None or all(target.entry.group == "loop" for target in targets):
-        return
-    points = lines.start.size
-    if any(part.high > part.low for part in loaded.inputs.parts) and points * samples > _LONG:
-        typer.echo(
-            f"Note: the spread takes a while: {samples} units, each followed through {points} points"
-            " of the source; --samples sets how many units",
-            err=True,
-        )
+def note(text: str) -> None:
+    """Say something on stderr, if there is anything to say."""
+    if text:
+        typer.echo(f"Note: {text}", err=True)
 
 
 def show(

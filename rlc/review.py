@@ -36,6 +36,9 @@ USUAL = (
     "peak_capacitor_voltage",
 )
 
+# Points of the source times units: more take longer than a quick answer.
+_LONG = 5_000_000
+
 
 @dataclass(frozen=True)
 class Review:
@@ -224,6 +227,35 @@ def judge(
 
     batch = spread(loaded.inputs.case, loaded.inputs.parts, samples, seed)
     return batch, tuple(batch.outcome(target) for target in targets)
+
+
+def effort(loaded: Loaded, targets: Iterable[Target], samples: int) -> str:
+    """What to say before a spread that takes long.
+
+    Parameters
+    ----------
+    loaded : Loaded
+        The sheet.
+    targets : iterable of Target
+        What is to be judged.
+    samples : int
+        Random units that are to be drawn.
+
+    Returns
+    -------
+    str
+        Empty where it does not take long.
+    """
+    lines = loaded.inputs.case.lines
+    if lines is None or all(target.entry.group == "loop" for target in targets):
+        return ""
+    points = lines.start.size
+    if not any(part.high > part.low for part in loaded.inputs.parts) or points * samples <= _LONG:
+        return ""
+    return (
+        f"the spread takes a while: {samples} units, each followed through {points} points of the"
+        " source; --samples sets how many units"
+    )
 
 
 def review(

@@ -17,10 +17,10 @@ from rlc.solver.results import steady_orders
 
 _ENDS = {
     "dc": "",
-    "ramp": ", at the ramp's level",
-    "pulse": ", after the pulses",
+    "ramp": ", at its level",
+    "pulse": ", after its last pulse",
     "surge": ", after the surge",
-    "recorded": ", the last value held",
+    "recorded": ", last value held",
 }
 
 
@@ -60,8 +60,8 @@ def elements(case: Case) -> Table:
 
 def _final(case: Case) -> Table:
     steady, level = case.steady, float(case.source.amplitude)
-    table = new_table(f"Final state{_ENDS[case.source.kind]}", "of", "value")
-    table.add_row("source", show(level, "voltage"))
+    table = new_table("Final state", "of", "value")
+    table.add_row(f"source{_ENDS[case.source.kind]}", show(level, "voltage"))
     for element in ELEMENTS:
         table.add_row(element, show(level * float(np.real(steady.across(element))), "voltage"))
     current = level * float(np.real(steady.current))
@@ -71,8 +71,11 @@ def _final(case: Case) -> Table:
 
 
 def _train(case: Case) -> Table:
-    table = new_table("Steady train of pulses, over one of its last periods", "of", "value")
-    for words, name in (("current, rms", "current"), ("heat in the resistor", "resistor_power")):
+    table = new_table("Steady train of pulses", "of", "value")
+    for words, name in (
+        ("current, rms over a period", "current"),
+        ("heat in the resistor, mean", "resistor_power"),
+    ):
         table.add_row(words, show(float(REGISTER[name](case)), REGISTER[name].kind))
     return table
 

@@ -76,9 +76,9 @@ def closings(found: Mapping[str, Closings], case: Case) -> Table:
     -------
     Table
     """
-    where = "any angle" if case.source.window == ANY_ANGLE else closing(case.source)
+    where = "at any angle" if case.source.window == ANY_ANGLE else closing(case.source)
     table = new_table(
-        f"Peaks over closings, {where}, all equally likely",
+        f"Peaks over closings {where.removesuffix(' from the rising zero')}",
         "of", "1 % point", "median", "99 % point", "worst", "at angle",
     )  # fmt: skip
     for element, points in found.items():

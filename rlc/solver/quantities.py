@@ -223,7 +223,8 @@ _ROWS: tuple[Quantity, ...] = (
         "i_max f_r", _FREE, lambda c, at, across: c.peak("current").value * results.ringing(c),
     ),
     Quantity(
-        "beat_frequency", "f_b", "frequency", "switch-on", "none if overdamped or dc",
+        "beat_frequency", "f_b", "frequency", "switch-on",
+        "none if overdamped, or the source has no frequency",
         "Distance of source and ringing frequency, at which their sum swells and fades.",
         "|f - f_r|", _FREE, lambda c, at, across: results.beat(c),
     ),
@@ -258,7 +259,7 @@ _ROWS: tuple[Quantity, ...] = (
     Quantity(
         "let_through", "I^2 t", "let_through", "switch-on",
         "to the stated time; else over all time, of a source with a frequency over its first"
-        " period; worst angle: its own",
+        " period, of a steady train over one; worst angle: its own",
         "Integral of the squared current, what a fuse or contact must pass.",
         "integral of i^2 dt; C V^2/(2 R) for a step from rest without a load", _STEP,
         lambda c, at, across: results.until(c, at), "time",

@@ -28,25 +28,24 @@ def test_final_state_of_a_negative_dc_with_a_load() -> None:
 
 
 @pytest.mark.parametrize(
-    ("source", "title", "volts"),
+    ("source", "words", "volts"),
     [
-        (shaped(shapes.ramp(3.0, 1.0)), "Final state, at the ramp's level", ["3 V", "1 V", "2 V"]),
+        (shaped(shapes.ramp(3.0, 1.0)), "source, at its level", ["3 V", "1 V", "2 V"]),
         (
             shaped(shapes.recorded([0.0, 1.0, 2.0], [9.0, -4.0, 3.0])),
-            "Final state, the last value held", ["3 V", "1 V", "2 V"],
+            "source, last value held", ["3 V", "1 V", "2 V"],
         ),
-        (shaped(shapes.pulse(3.0, 1.0)), "Final state, after the pulses", ["0 V"] * 3),
-        (shaped(shapes.surge(3.0, 1.0, 50.0)), "Final state, after the surge", ["0 V"] * 3),
+        (shaped(shapes.pulse(3.0, 1.0)), "source, after its last pulse", ["0 V"] * 3),
+        (shaped(shapes.surge(3.0, 1.0, 50.0)), "source, after the surge", ["0 V"] * 3),
     ],
 )  # fmt: skip
 def test_a_course_in_time_ends_on_its_last_value(
-    source: Source, title: str, volts: list[str]
+    source: Source, words: str, volts: list[str]
 ) -> None:
     """Source, resistor, capacitor: the last value over 1 ohm and a load of 2 ohm."""
     table = states.elements(unit(1.0, source, load_resistance=2.0))
-    assert str(table.title) == title
     found = {row[0]: row[1] for row in rows(table)}
-    assert [found[name] for name in ("source", "resistor", "capacitor")] == volts
+    assert [found[name] for name in (words, "resistor", "capacitor")] == volts
 
 
 @pytest.mark.parametrize("amplitude", [3.0, -3.0])
@@ -94,7 +93,7 @@ def test_a_train_shows_what_is_known_of_a_period() -> None:
     source = shaped(shapes.pulse(10.0, 1e-4, period=2e-4, count=None))
     # Moves by 5 V times 0.1 ms over 10 ms, a part in 100: squared, the rms by 1e-5.
     assert rows(states.elements(Case(loop, source))) == [
-        ["current, rms", "500 mA"], ["heat in the resistor", "2.5 W"],
+        ["current, rms over a period", "500 mA"], ["heat in the resistor, mean", "2.5 W"],
     ]  # fmt: skip
 
 
