@@ -291,7 +291,7 @@ class Case:
             np.broadcast_to(part, self.shape)[..., np.newaxis]
             for part in (self.capacitor_voltage, self.initial_current)
         )
-        return follow(equation_of(self.loop.column()), self.lines, voltage, current)
+        return follow(self.equation.column(), self.lines, voltage, current)
 
     def closing_angle_for(self, element: str) -> Array:
         """The closing angle: as given, or the worst one for this element.

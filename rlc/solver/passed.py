@@ -10,7 +10,7 @@ from numpy.typing import NDArray
 
 from rlc.solver.case import Case
 from rlc.solver.driven import driven_from_rest
-from rlc.solver.equation import Equation, angular, equation_of, kernels, phase
+from rlc.solver.equation import Equation, angular, kernels, phase
 from rlc.solver.shapes import Piecewise, Surge
 from rlc.solver.source import ANY_ANGLE, Window
 from rlc.solver.transient import TIME_CONSTANTS, settled
@@ -118,7 +118,7 @@ def let_through(case: Case, until: Any) -> Array:
     turns = until * np.maximum(eq.quickest, angular(frequency)[0])
     doublings = max(0, int(np.ceil(np.log2(np.max(turns, initial=1.0)))))
     span = until / 2.0**doublings
-    columns = equation_of(case.loop.column())
+    columns = case.equation.column()
     # Not at module level: the nodes cost more time than a whole steady state.
     nodes, weights = np.polynomial.legendre.leggauss(_NODES)
     times = span[..., np.newaxis] * (nodes + 1) / 2

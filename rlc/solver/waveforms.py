@@ -9,7 +9,7 @@ import numpy as np
 from numpy.typing import NDArray
 
 from rlc.solver.driven import driven_states
-from rlc.solver.equation import angular, equation_of, free_response, kernels, phase
+from rlc.solver.equation import angular, free_response, kernels, phase
 from rlc.solver.shapes import Surge
 from rlc.solver.surging import surge_from_rest
 
@@ -75,7 +75,7 @@ def states(case: Case, time: Array, closing_angle: Any) -> tuple[Array, Array, A
     source, shape = case.source, case.source.shape
     if case.lines is not None:
         return case.lines.at(time), *case.course.at(time)
-    eq = equation_of(case.loop.column())
+    eq = case.equation.column()
     start = _column(case.capacitor_voltage), _column(case.initial_current)
     if isinstance(shape, Surge):
         voltage, current = surge_from_rest(eq, shape, time)
