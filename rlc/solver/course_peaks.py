@@ -13,9 +13,9 @@ from rlc.solver.lines import balance, final_lag
 from rlc.solver.loop import Loop, Weights
 from rlc.solver.motion import Motion, take
 from rlc.solver.peaks import Peak, Signal, constant_source_peak
+from rlc.solver.rows import Rows
 from rlc.solver.search import PROVED_GAP, Best, known_before, search
 from rlc.solver.shapes import Piecewise
-from rlc.solver.turning import Rows
 
 if TYPE_CHECKING:
     from rlc.solver.case import Case

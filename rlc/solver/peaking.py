@@ -12,10 +12,10 @@ from rlc.solver.course_peaks import course_peaks
 from rlc.solver.equation import Equation, angular, equation_of, kernels
 from rlc.solver.motion import Index, Motion, Term, take
 from rlc.solver.peaks import Peak, Signal, constant_source_peak
+from rlc.solver.rows import Rows
 from rlc.solver.search import Best, known_before, search
 from rlc.solver.shapes import Surge
 from rlc.solver.source import ANY_ANGLE, Window
-from rlc.solver.turning import Rows
 
 if TYPE_CHECKING:
     from rlc.solver.case import Case

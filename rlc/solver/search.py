@@ -22,7 +22,7 @@ from numpy.typing import NDArray
 
 from rlc.solver.equation import Equation, kernels
 from rlc.solver.motion import Array, Index, Moved, take
-from rlc.solver.turning import Rows, framed, framed_bounds, together
+from rlc.solver.rows import Rows, framed, framed_bounds, together
 
 #: Relative gap between the value found and the proved upper bound.
 PROVED_GAP = 1e-9
