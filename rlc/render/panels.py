@@ -26,7 +26,7 @@ _TEXT_WIDTH = 555.0
 _HANDLE_WIDTH = 42.0
 # Two columns: widths [inch], of their legends [point], and heights of their panels [inch].
 _COLUMN_WIDTHS = (6.9, 4.6)
-_COLUMN_LEGENDS = (420.0, 255.0)
+_COLUMN_LEGENDS = (425.0, 268.0)
 _COLUMN_HEIGHTS = ((1.15, 2.0, 2.0), (3.3, 1.9))
 
 

@@ -3,7 +3,7 @@
 from __future__ import annotations
 
 from collections.abc import Sequence
-from typing import TYPE_CHECKING
+from typing import TYPE_CHECKING, NamedTuple
 
 import numpy as np
 from numpy.typing import NDArray
@@ -28,6 +28,7 @@ from rlc.solver.case import Case
 from rlc.solver.passed import let_through, let_through_time, whole_let_through
 from rlc.solver.quantities import HALF
 from rlc.solver.targets import Target
+from rlc.solver.transient import settled
 
 if TYPE_CHECKING:
     from matplotlib.axes import Axes
@@ -37,7 +38,17 @@ Array = NDArray[np.float64]
 _FUSE = "fuse.melting_let_through"
 # What has passed can be read further below a limit than a swing's height.
 _LIMIT_REACH = 3.0
-_POINTS, _EARLY_POINTS = 200, 100
+_POINTS, _EARLY_POINTS, _LONG_POINTS = 200, 100, 4000
+# Knots of a record that is gone through once.
+_LONG_RECORD = 50_000
+
+
+class _Known(NamedTuple):
+    """The whole let-through [A^2 s], when half of it has passed [s], and how well that is known."""
+
+    whole: float
+    half: float
+    about: str = ""
 
 
 def draw_let_through(panel: Axes, case: Case, span: Span, targets: Sequence[Target]) -> str:
@@ -59,18 +70,23 @@ def draw_let_through(panel: Axes, case: Case, span: Span, targets: Sequence[Targ
     str
         Of which closing it is; empty if there is only one.
     """
-    whole = item(whole_let_through(case))
-    half = np.nan if case.repeats else item(let_through_time(case, HALF))
-    end = span.end
-    if case.source.alternating and half > end:
+    end, known = span.end, _solved(case)
+    if case.source.alternating and known is not None and known.half > end:
         end = 1 / item(case.source.frequency)
     early = np.geomspace(1e-3 * end, end, _EARLY_POINTS)
-    time = np.unique(np.concatenate([np.linspace(span.begin, end, _POINTS), early]))
-    time = time[time >= span.begin]
+    time = np.union1d(np.linspace(span.begin, end, _POINTS), early)
+    if known is None:
+        # one passage through a long record gives all
+        time = np.union1d(time, np.linspace(0.0, item(settled(case)), _LONG_POINTS))
     passed = let_through(case, time)
+    if known is None:
+        half = float(np.interp(HALF * passed[-1], passed, time))
+        known = _Known(float(passed[-1]), half, "about ")
+    drawn = (time >= span.begin) & (time <= end)
+    time, passed = time[drawn], passed[drawn]
     panel.plot(time, passed, **NOMINAL)
-    top = float(passed[-1])
-    top = _limits(panel, targets, end, max(top, _whole(panel, case, whole, half, (top, end))))
+    top = _whole(panel, case, known, (float(passed[-1]), end))
+    top = _limits(panel, targets, end, top)
     panel.set_xlim(span.begin, end)
     panel.set_ylim(0.0, 1.08 * top or 1.0)
     name_axis(panel.xaxis, "time from closing", "time")
@@ -80,12 +96,22 @@ def draw_let_through(panel: Axes, case: Case, span: Span, targets: Sequence[Targ
     return "most of all closings" if open_angle(case) or open_polarity(case) else ""
 
 
-def _whole(panel: Axes, case: Case, whole: float, half: float, drawn: tuple[float, float]) -> float:
+def _solved(case: Case) -> _Known | None:
+    """What the solver has, but for a long record, each passage through which takes seconds."""
+    if case.source.kind == "recorded" and case.lines is not None:
+        ends = item(case.equation.damping) > 0 and not np.any(case.loop.load_conductance)
+        if case.lines.start.size > _LONG_RECORD and ends:
+            return None
+    half = np.nan if case.repeats else item(let_through_time(case, HALF))
+    return _Known(item(whole_let_through(case)), half)
+
+
+def _whole(panel: Axes, case: Case, known: _Known, drawn: tuple[float, float]) -> float:
     """Draw the whole let-through, and when half of it has passed; the highest of all.
 
     What is drawn beside it ends on a let-through [A^2 s] and at a time [s].
     """
-    top, end = drawn
+    (whole, half, about), (top, end) = known, drawn
     size = show(whole, "let_through") if np.isfinite(whole) else ""
     if case.repeats:
         note(panel, f"{size} in each period of the steady train")
@@ -96,8 +122,8 @@ def _whole(panel: Axes, case: Case, whole: float, half: float, drawn: tuple[floa
         top = max(top, whole)
     if not np.isfinite(half):
         return top
-    of = f"half of {size}" + (", the first period's," if case.source.alternating else "")
-    label = f"{of} by {show(half, 'time')}"
+    of = f"half of {size}" + (" of a period" if case.source.alternating else "")
+    label = f"{of} by {about}{show(half, 'time', 3 if about else 4)}"
     if half <= end:
         panel.plot([half], [whole * HALF], label=label, **MARK)
     else:
@@ -123,8 +149,8 @@ def _limits(panel: Axes, targets: Sequence[Target], end: float, top: float) -> f
             else:
                 until = min(target.at, end)
                 panel.plot(
-                    [0.0, until], [limit, limit], marker="v" if upper else "^", markersize=5,
-                    markevery=[1], label=label, **LIMIT,
+                    [0.0, 0.97 * until, until], [limit] * 3, marker="v" if upper else "^",
+                    markersize=5, markevery=[1], label=label, **LIMIT,
                 )  # fmt: skip
                 top = max(top, limit)
     return top

@@ -147,13 +147,13 @@ def frequency_response(
             if first:
                 _bandwidth_limits(panel, target, marks, values["current"])
                 _not_drawn(panel, target, rows, marks.source)
+        if row.kind == "current":
+            _harmonic_marks(panel, case)
         low, high = panel.get_ylim()
         panel.set_ylim(
             *((-_PHASE_REACH, _PHASE_REACH) if row.kind == "angle" else (low, 1.2 * high))
         )
         if marks.source is not None:
-            if row.kind == "current":
-                _harmonic_marks(panel, case)
             _source_mark(panel, row, marks.source, float(at_source[row.curves[0].name].item()))
         name_axis(panel.yaxis, row.words, row.kind, row.unit)
         legend_above(panel, row.heading or _resonance(marks), _LETTERS if panel.texts else 0.0)

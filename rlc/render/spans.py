@@ -188,8 +188,9 @@ def _times(case: Case, begin: float, end: float, quick: float) -> Array:
         return np.union1d(time, after)
     knots = case.lines.start
     inside = (knots >= begin) & (knots <= end)
+    jumps = np.append(False, case.lines.level[1:] != case.lines.end[:-1])
     # a jump of the source takes no time: one point just before it, one on it
-    before = np.nextafter(knots[inside], 0.0)
+    before = np.nextafter(knots[inside & jumps], 0.0)
     if np.count_nonzero(inside) <= _FEW_KNOTS:
         time = np.union1d(time, (knots[inside, np.newaxis] + after).ravel())
     return np.unique(np.concatenate([time, knots[inside], before]))

@@ -38,6 +38,7 @@ from rlc.render.traces import (
 from rlc.solver.case import Case
 from rlc.solver.shapes import Piecewise, Surge
 from rlc.solver.targets import Target
+from rlc.solver.waveforms import Waveforms
 
 if TYPE_CHECKING:
     from matplotlib.axes import Axes
@@ -92,10 +93,15 @@ def switch_on(
     figure, ((source, *signals), (plane, passing)) = two_columns(title, cautions)
     closed = {trace: case.closed_for(trace.element) for trace in (CURRENT, VOLTAGE)}
     bands = band_of_closings(case, span.time) if closings_label(case) else {}
-    _draw_source(source, case, closed, span, bands.get("source"))
+    waves = {CURRENT: closed[CURRENT].waveforms(span.time)}
+    same = closed[CURRENT] is closed[VOLTAGE]
+    waves[VOLTAGE] = waves[CURRENT] if same else closed[VOLTAGE].waveforms(span.time)
+    _draw_source(source, case, waves, span, bands.get("source"))
     for panel, trace in zip(signals, closed, strict=True):
-        one = closed[trace]
-        extent = _draw_signal(panel, one, trace, span, batch)
+        one, values = closed[trace], signal(waves[trace], trace.element)
+        extent = _plot(panel, span.time, values, NOMINAL, "nominal" if batch else "")
+        if batch is not None:
+            extent += _draw_loops(panel, one, trace, span, batch)
         if bands:
             extent += _draw_band(panel, case, span, bands[trace.element])
         draw_steady(panel, one, trace, span, extent)
@@ -108,7 +114,9 @@ def switch_on(
         words = (closing_words(case, one, trace), batch_words(batch) if batch else "")
         legend_above(panel, "; ".join(word for word in words if word))
     _name_time(signals, span)
-    draw_plane(plane, closed[CURRENT], span_of(case, READABLE_CYCLES))
+    # a late peak makes the picture so long that turns cannot be told apart
+    turns = span if case.source.shape is not None else span_of(case, READABLE_CYCLES)
+    draw_plane(plane, closed[CURRENT], turns)
     legend_above(plane, "state plane" + (", closed as for the current" if bands else ""))
     most = draw_let_through(passing, case, span, targets)
     nominal = "running let-through" + (" of the nominal loop" if batch else "")
@@ -129,32 +137,41 @@ def _name_time(panels: Sequence[Axes], span: Span) -> None:
 
 
 def _draw_source(
-    panel: Axes, case: Case, closed: dict[Trace, Case], span: Span, band: Band | None
+    panel: Axes, case: Case, waves: dict[Trace, Waveforms], span: Span, band: Band | None
 ) -> None:
     """The source as it is at each panel's closing."""
-    end = _own_end(case)
-    short = 0 < end < _SHORT * (span.end - span.begin)
-    time = np.linspace(0.0, 2 * end, _STRETCHES) if short else span.time
-    if short and case.lines is not None:
-        knots = case.lines.start
-        time = np.unique(np.concatenate([time, knots, np.nextafter(knots, 0.0)]))
-    current, voltage = (signal(closed[trace].waveforms(time), "source") for trace in closed)
-    same = bool(np.array_equal(current, voltage))
-    label = "" if same else "closed as for the current"
-    extent = _plot(panel, time, current, label, NOMINAL)
-    if not same:
-        extent += _plot(panel, time, voltage, "closed as for the capacitor voltage", OTHER)
+    end, shape = _own_end(case), case.source.shape
+    if shape is not None and 0 < end < _SHORT * (span.end - span.begin):
+        time = np.linspace(0.0, 2 * end, _STRETCHES)
+        if case.lines is not None:
+            knots = case.lines.start
+            time = np.unique(np.concatenate([time, knots, np.nextafter(knots, 0.0)]))
+        extent = _plot(panel, time, shape.at(time), NOMINAL)
+    else:
+        time = span.time
+        extent = _source_curves(panel, time, waves)
+        panel.tick_params(labelbottom=False)
     if band is not None and case.source.alternating:
         extent += _draw_band(panel, case, span, band)
-    set_range(panel, min(0.0, *extent), max(0.0, *extent))
+    set_range(panel, min(extent), max(extent))
     draw_extra_low(panel, case)
-    panel.set_xlim(0.0 if short else span.begin, time[-1])
+    panel.set_xlim(time[0], time[-1])
     name_axis(panel.yaxis, "source", "voltage")
     name_axis(panel.xaxis, "the source alone, time from closing", "time")
-    if not short:
+    if time is span.time:
         panel.set_xlabel("")
-        panel.tick_params(labelbottom=False)
     legend_above(panel)
+
+
+def _source_curves(panel: Axes, time: Array, waves: dict[Trace, Waveforms]) -> list[float]:
+    """One curve, or two where the closings differ; what they reach."""
+    current, voltage = (waves[trace].source for trace in (CURRENT, VOLTAGE))
+    if np.array_equal(current, voltage):
+        return _plot(panel, time, current, NOMINAL)
+    return [
+        *_plot(panel, time, current, NOMINAL, "closed as for the current"),
+        *_plot(panel, time, voltage, OTHER, "closed as for the capacitor voltage"),
+    ]
 
 
 def _own_end(case: Case) -> float:
@@ -165,27 +182,24 @@ def _own_end(case: Case) -> float:
     return shape.settled if isinstance(shape, Piecewise) and not case.repeats else 0.0
 
 
-def _draw_signal(
-    panel: Axes, closed: Case, trace: Trace, span: Span, batch: Case | None
+def _draw_loops(panel: Axes, closed: Case, trace: Trace, span: Span, batch: Case) -> list[float]:
+    """The band of a batch; what it reaches."""
+    time = span.time
+    cycles = max(span.ringing, span.turning) * (span.end - span.begin)
+    points = max(_BAND_POINTS, int(_BAND_POINTS_PER_CYCLE * cycles))
+    thin = np.unique(np.r_[0 : time.size : max(1, time.size // points), time.size - 1])
+    low, high = band_of_loops(batch, trace.element, time[thin], closed)
+    panel.fill_between(time[thin], low, high, label=band_label(batch), **SPREAD)
+    return [float(np.min(low)), float(np.max(high))]
+
+
+def _plot(
+    panel: Axes, time: Array, values: Array, look: dict[str, Any], label: str = ""
 ) -> list[float]:
-    """The nominal curve and the band of a batch; what they reach."""
-    time, label = span.time, "nominal" if batch is not None else ""
-    values = signal(closed.waveforms(time), trace.element)
-    extent = [0.0, *_plot(panel, time, values, label, NOMINAL)]
-    if batch is not None:
-        cycles = max(span.ringing, span.turning) * (span.end - span.begin)
-        points = max(_BAND_POINTS, int(_BAND_POINTS_PER_CYCLE * cycles))
-        thin = np.unique(np.r_[0 : time.size : max(1, time.size // points), time.size - 1])
-        low, high = band_of_loops(batch, trace.element, time[thin], closed)
-        panel.fill_between(time[thin], low, high, label=band_label(batch), **SPREAD)
-        extent += [float(np.min(low)), float(np.max(high))]
-    return extent
-
-
-def _plot(panel: Axes, time: Array, values: Array, label: str, look: dict[str, Any]) -> list[float]:
+    """A curve; what it reaches, zero among it."""
     kept = thinned(_STRETCHES, values)
     panel.plot(time[kept], values[kept], label=label, **look)
-    return [float(np.min(values)), float(np.max(values))]
+    return [0.0, float(np.min(values)), float(np.max(values))]
 
 
 def _draw_band(panel: Axes, case: Case, span: Span, band: Band) -> list[float]:
