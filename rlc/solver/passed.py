@@ -251,9 +251,22 @@ def whole_let_through(case: Case) -> Array:
     if case.source.alternating:
         return let_through(case, 1.0 / case.source.frequency)
     if case.repeats:
-        end = case.course_end
-        return let_through(case, end) - let_through(case, end - case.repeats)
+        return _last_period(case)
     return total_let_through(case)
+
+
+def _last_period(case: Case) -> Array:
+    """Of a train that has become steady: one more pulse, from the states before the last one.
+
+    Loops of a batch have become steady by the end of the batch, not each at an end of its own.
+    """
+    closed = case.closed_for("current")
+    shape = closed.source.shape
+    assert isinstance(shape, Piecewise)
+    begin = np.array([closed.course_end - closed.repeats])
+    _, voltage, current = (part[..., 0] for part in states(closed, begin, 0.0))
+    once = replace(closed.source, shape=shape.repeated(1))
+    return let_through(Case(closed.loop, once, voltage, current), closed.repeats)
 
 
 def _current_row(eq: Equation, frequency: Array, time: Array) -> Array:

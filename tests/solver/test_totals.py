@@ -148,6 +148,16 @@ def test_a_train_of_pulses_has_the_rms_of_its_last_periods():
     assert float(REGISTER["resistor_power"](case)) == pytest.approx(2.5, rel=2e-4)
 
 
+def test_each_loop_of_a_batch_has_the_rms_that_it_has_alone():
+    """Time constants from 1 to 100 ms: each loop alone is steady after another number of pulses."""
+    source = shaped(shapes.pulse(10.0, 1e-3, period=2e-3, count=None))
+    values = np.array([1e-4, 1e-3, 1e-2])
+    batch = Case(make_loop(resistance=10.0, inductance=1e-3, capacitance=values), source)
+    alone = [REGISTER["current"](batch.one((index,))) for index in range(values.size)]
+    # Each train is steady to 1e-12, and the quadrature sums some hundred panels.
+    np.testing.assert_allclose(REGISTER["current"](batch), alone, rtol=1e-11)
+
+
 def test_a_train_of_pulses_has_no_phasor():
     case = train()
     for name in ("current_amplitude", "capacitor_voltage", "real_power", "power_factor"):
