@@ -10,7 +10,7 @@ import numpy as np
 from rich.table import Table
 
 from rlc.front.marking import show
-from rlc.render.known import PEAKS, SIGNALS, largest_among, peak_of
+from rlc.render.known import AS_STEADY, PEAKS, SIGNALS, largest_among, peak_of
 from rlc.render.layout import new_table
 from rlc.render.sources import closing
 from rlc.solver.case import Case
@@ -157,7 +157,7 @@ def extrema(found: Extrema, case: Case) -> Table:
 
 
 def beyond(found: Extrema, case: Case) -> str:
-    """Where the largest values are that are not among the first turning points; may be empty.
+    """Where the largest values are that are not among these turning points; may be empty.
 
     Parameters
     ----------
@@ -169,7 +169,8 @@ def beyond(found: Extrema, case: Case) -> str:
     Returns
     -------
     str
-        A sentence for each of current and capacitor voltage that needs one.
+        A sentence for each of current and capacitor voltage that needs one, and for each that
+        another closing makes larger.
     """
     closed, flags = case.closed_for("current"), largest_among(found, case)
     told = []
@@ -192,4 +193,8 @@ def beyond(found: Extrema, case: Case) -> str:
         else:
             how = f"is no turning point: it comes at {show(time, 'time')}"
         told.append(f"{head} {how}.")
+    for signal, (_, words, kind) in SIGNALS.items():
+        worst = float(case.peak(signal).value)
+        if worst > float(closed.peak(signal).value) * (1 + AS_STEADY):
+            told.append(f"At its own worst closing the {words} reaches {show(worst, kind)}.")
     return " ".join(told)

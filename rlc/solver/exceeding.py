@@ -72,6 +72,9 @@ def exceeded(case: Case, element: str, limit: float) -> Exceeded:
     steps = steps_until(closed, end)
     nodes = np.union1d(steps, turning_points(closed, element, steps))
     above = _excess(closed, element, nodes, limit) > 0
+    if case.repeats:
+        # what the last period of the train does is done by all that follow
+        lasting |= bool(above[nodes > case.course_end - case.repeats].any())
     if not above.any():
         return Exceeded(float(peak.time), np.inf if lasting else np.nan)
     change = np.flatnonzero(above[1:] != above[:-1])

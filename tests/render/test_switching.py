@@ -113,6 +113,17 @@ def test_a_peak_beyond_the_first_extrema_is_told(time: float, told: str) -> None
     assert said == f"The largest capacitor voltage, 5 V, {told}"
 
 
+def test_what_another_closing_makes_larger_is_told() -> None:
+    """R = 0.2 at a tenth of resonance: current and capacitor voltage have their own angles."""
+    case = unit(0.2, sine(10.0, 0.1 * RESONANCE, None))
+    said = switching.beyond(first_extrema(case), case)
+    worst = f"{float(case.peak('capacitor').value):.4g} V"
+    assert f"At its own worst closing the capacitor voltage reaches {worst}." in said
+    assert "the current reaches" not in said
+    given = unit(0.2, sine(10.0, 0.1 * RESONANCE, 1.0))
+    assert "worst" not in switching.beyond(first_extrema(given), given)
+
+
 def test_a_train_has_the_extrema_of_its_first_pulses() -> None:
     """Each pulse of 1 s every 4 s turns the current; the largest of all comes with a later one."""
     source = shaped(shapes.pulse(1.0, 1.0, period=4.0, count=None))
@@ -182,6 +193,22 @@ def test_a_single_passing_has_a_duration() -> None:
     assert row.first == pytest.approx(first, rel=1e-9)
     assert row.lasts == pytest.approx(last - first, rel=1e-9)
     assert "worst" not in str(switching.limits([row], case).title)
+
+
+def test_a_train_passes_a_limit_again_and_again_or_in_its_first_pulses() -> None:
+    """10 V over 10 ohm onto nothing: 1 A at first, a little above 0.5 A in the steady train."""
+    source = shaped(shapes.pulse(10.0, 1e-3, period=2e-3, count=None))
+    case = Case(make_loop(resistance=10.0, inductance=1e-9, capacitance=1e-3), source)
+    targets = (Target("peak_current", maximum=0.4), Target("peak_current", maximum=0.8))
+    often, early, _ = limits_in_time(case, targets)
+    assert math.isinf(often.lasts)
+    # tau is 10 ms, d = exp(-0.1) in a pulse and in a pause: the second pulse begins at 1 - d + d^2
+    # = 0.914 A, the third at 0.843 A, which falls to 0.8 A on the way; the fourth at 0.78 A.
+    d = math.exp(-0.1)
+    third = 1 - (1 - (1 - d + d * d) * d) * d
+    lasts = 2e-3 + 10e-3 * math.log(third / 0.8)
+    # The current rises within some L/R = 0.1 ns, three times.
+    assert early.lasts == pytest.approx(lasts, abs=1e-8)
 
 
 def test_extra_low_voltage_goes_with_the_source() -> None:
