@@ -128,8 +128,27 @@ def test_the_two_setup_lines_stand_alone() -> None:
 
 
 def test_links_in_the_readme_lead_somewhere() -> None:
+    headings = {
+        "#" + line.lstrip("# ").lower().replace(" ", "-")
+        for line in README.splitlines()
+        if line.startswith("#")
+    }
     for target in re.findall(r"\]\(([^)]+)\)", README):
-        assert (ROOT / target).exists(), target
+        assert target in headings or (ROOT / target).exists(), target
+
+
+def test_the_source_and_the_record_are_read_as_shown(tmp_path: Path) -> None:
+    (table,) = re.findall(r"```toml\n(.*?)```", README, flags=re.DOTALL)
+    (record,) = re.findall(r"```csv\n(.*?)```", README, flags=re.DOTALL)
+    parts = (ROOT / "examples" / "fog_signal.toml").read_text(encoding="utf-8")
+    parts = parts[: parts.index("[source]")]
+    (tmp_path / "record.csv").write_text(record, encoding="utf-8")
+    recorded = '[source]\nkind = "recorded"\nfile = "record.csv"\n'
+    for source in (table, recorded):
+        path = tmp_path / "sheet.toml"
+        path.write_text(parts + source, encoding="utf-8")
+        result = CliRunner().invoke(app, ["switch-on", str(path)])
+        assert result.exit_code == 0, result.stderr
 
 
 def test_the_project_stays_as_the_tests_found_it(tmp_path: Path) -> None:

@@ -314,7 +314,7 @@ def test_each_slip_has_its_sentence(tmp_path: Path, source: str, said: list[str]
         ),
         (
             SURGE.replace("50 us", "1 us"),
-            "11: source.half_value_time = '1 us': over front_time must be from",
+            "11: source.half_value_time = '1 us': must be 3.47 to",
         ),
         (
             HARMONICS.replace("230 V", "9e49 V") + FIFTH,
