@@ -226,13 +226,15 @@ def _turned(turning: Any, window: Window) -> Band:
     return size * low, size * high
 
 
-def thinned(count: int, *curves: Array) -> NDArray[np.intp]:
+def thinned(across: Array, count: int, *curves: Array) -> NDArray[np.intp]:
     """Points that draw curves as all of them would: lowest and highest of each stretch.
 
     Parameters
     ----------
+    across : Array
+        Shape (n,), rising.
     count : int
-        Stretches, each a fraction of a pixel wide.
+        Even stretches of it, each a fraction of a pixel wide.
     *curves : Array
         Shape (n,) each.
 
@@ -241,15 +243,13 @@ def thinned(count: int, *curves: Array) -> NDArray[np.intp]:
     Array of int
         Rising, for each curve at most two points of each stretch; all if there are few.
     """
-    size = curves[0].size
+    size = across.size
     if size <= 4 * count:
         return np.arange(size)
-    edges = np.linspace(0, size, count + 1).astype(int)
-    kept = [edges[:-1], np.array([size - 1])]
-    width = int(np.max(np.diff(edges)))
-    # stretches overlap where they are not of equal length
-    index = np.minimum(edges[:-1, np.newaxis] + np.arange(width), size - 1)
+    stretch = np.searchsorted(np.linspace(across[0], across[-1], count), across)
+    kept = [np.array([0, size - 1])]
     for curve in curves:
-        cut = curve[index]
-        kept += [edges[:-1] + np.argmin(cut, axis=1), edges[:-1] + np.argmax(cut, axis=1)]
-    return np.unique(np.minimum(np.concatenate(kept), size - 1))
+        order = np.lexsort((curve, stretch))
+        first = np.flatnonzero(np.diff(stretch[order], prepend=-1))
+        kept += [order[first], order[np.append(first[1:], size) - 1]]
+    return np.unique(np.concatenate(kept))

@@ -26,7 +26,10 @@ _TEXT_WIDTH = 555.0
 _HANDLE_WIDTH = 42.0
 # Two columns: widths [inch], of their legends [point], and heights of their panels [inch].
 _COLUMN_WIDTHS = (6.9, 4.6)
-_COLUMN_LEGENDS = (425.0, 268.0)
+_COLUMN_LEGENDS = (428.0, 265.0)
+# Where panels stand before the layout is solved for; a legend wider than its panel is then would
+# make the panel narrower.
+_AT_FIRST = {"left": 0.1, "right": 0.99}
 _COLUMN_HEIGHTS = ((1.15, 2.0, 2.0), (3.3, 1.9))
 
 
@@ -67,7 +70,7 @@ def two_columns(
     figure = Figure(layout="constrained", dpi=_RESOLUTION)
     figure.subfigures(1, 2, width_ratios=_COLUMN_WIDTHS)
     left, right = (
-        list(part.subplots(len(heights), 1, height_ratios=heights))
+        list(part.subplots(len(heights), 1, height_ratios=heights, gridspec_kw=_AT_FIRST))
         for part, heights in zip(figure.subfigs, _COLUMN_HEIGHTS, strict=True)
     )
     text_width = _TEXT_WIDTH * sum(_COLUMN_WIDTHS) / _WIDTH

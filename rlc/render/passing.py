@@ -74,7 +74,8 @@ def draw_let_through(panel: Axes, case: Case, span: Span, targets: Sequence[Targ
     if case.source.alternating and known is not None and known.half > end:
         end = 1 / item(case.source.frequency)
     early = np.geomspace(1e-3 * end, end, _EARLY_POINTS)
-    time = np.union1d(np.linspace(span.begin, end, _POINTS), early)
+    near = span.time[:: max(1, span.time.size // _POINTS)]
+    time = np.unique(np.concatenate([np.linspace(span.begin, end, _POINTS), early, near]))
     if known is None:
         # one passage through a long record gives all
         time = np.union1d(time, np.linspace(0.0, item(settled(case)), _LONG_POINTS))

@@ -11,7 +11,7 @@ from numpy.typing import NDArray
 from rlc.render.bands import thinned
 from rlc.render.figures import MARK, NOMINAL, STEADY, arrows, item, name_axis, note
 from rlc.render.panels import fit_height, legend_above, panels
-from rlc.render.spans import READABLE_CYCLES, Span, span_of
+from rlc.render.spans import READABLE_CYCLES, Span, ringing_of, span_of, times_between
 from rlc.render.traces import CURRENT, VOLTAGE, bounded, closing_words, steady_wave
 from rlc.solver.case import Case
 
@@ -59,7 +59,8 @@ def state_plane(case: Case, cautions: Sequence[str] = (), title: str = "") -> Fi
 def draw_plane(panel: Axes, closed: Case, span: Span) -> None:
     """Draw the path of a loop with one closing, where it starts and where it ends."""
     waves = closed.waveforms(span.time)
-    kept = thinned(_STRETCHES, waves.capacitor_voltage, waves.current)
+    every = np.arange(float(span.time.size))
+    kept = thinned(every, _STRETCHES, waves.capacitor_voltage, waves.current)
     across, up = waves.capacitor_voltage[kept], waves.current[kept]
     label = "from closing on" if span.begin == 0 else "over the time shown"
     panel.plot(across, up, label=label, **{**NOMINAL, "linewidth": 1.0})
@@ -80,8 +81,8 @@ def _limit_set(panel: Axes, closed: Case) -> None:
     if closed.source.alternating or closed.repeats:
         period = closed.repeats or 1 / item(closed.source.frequency)
         turn = np.linspace(0.0, period, 361 * len(closed.source.every_order))
-        if closed.lines is not None:
-            turn = np.union1d(turn, closed.lines.start[closed.lines.start < period])
+        if closed.repeats:
+            turn = times_between(closed, 0.0, period, ringing_of(closed))
         across, up = (steady_wave(closed, trace, turn) for trace in (VOLTAGE, CURRENT))
         label = "steady state, one period of the source"
         panel.plot(across, up, label=label, **{**STEADY, "linewidth": 2.4, "zorder": 4})

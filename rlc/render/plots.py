@@ -94,7 +94,8 @@ def histogram(
     if kind == "angle":
         # what rounding leaves of one angle is no distribution
         values = np.round(values, ANGLE_DECIMALS)
-    edges = _bin_edges(values[drawn], nominal)
+    stated = [abs(limit) for limit, _ in limits(target) if limit]
+    edges = _bin_edges(values[drawn], nominal, max(stated, default=1.0))
     inside = np.histogram(values[drawn & kept], edges)[0]
     outside = np.histogram(values[drawn & ~kept], edges)[0]
     left, width = edges[:-1] / unit, np.diff(edges) / unit
@@ -148,13 +149,16 @@ def _axis_words(target: Target) -> str:
     return quantity_name(target) + asked_at(target) + (f", {convention}" if matters else "")
 
 
-def _bin_edges(values: Array, nominal: float) -> Array:
-    """Even bins over the samples; about one value if they are all the same."""
+def _bin_edges(values: Array, nominal: float, size: float) -> Array:
+    """Even bins over the samples; about one value if they are all the same.
+
+    Zeros alone have no size: that of what they are held against is given.
+    """
     if not values.size:
         values = np.array([nominal if np.isfinite(nominal) else 0.0])
     low, high = float(values.min()), float(values.max())
     if high - low <= _RESOLVED * max(abs(low), abs(high)):
-        half = 0.01 * abs(low) or 1.0
+        half = 0.01 * abs(low) or size
         return np.linspace(low - half, low + half, 2)
     wished = np.histogram_bin_edges(values, "sturges").size - 1 + np.sqrt(values.size) / 2
     bins = int(np.clip(wished, _FEWEST_BINS, _MOST_BINS))

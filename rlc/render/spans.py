@@ -31,6 +31,8 @@ _FEWEST_PERIODS, _MOST_PULSES = 3.0, 40
 # After each of so many knots the times are close together.
 _FEW_KNOTS = 160
 _ROUNDING = 1e-9
+# Room after a late peak, as a share of the picture, and a decay's length after its peak.
+_ROOM, _DECAY = 0.05, 5.0
 # A record at rest: within this share of its range.
 _STILL = 0.03
 
@@ -84,8 +86,7 @@ def span_of(case: Case, most_cycles: float) -> Span:
     """
     eq = case.equation
     rate = item(eq.slowest)
-    underdamped = bool(np.all(eq.underdamped))
-    ringing = item(REGISTER["ringing_frequency"](case)) if underdamped else 0.0
+    ringing = ringing_of(case)
     course, period = _course(case)
     turning = item(case.source.frequency) or (1 / period if period else 0.0)
     constant = 1.0 / rate if rate > 0 else np.inf
@@ -105,11 +106,16 @@ def span_of(case: Case, most_cycles: float) -> Span:
     peaks = np.array([item(case.peak(name).time) for name in elements])
     peaks = peaks[np.isfinite(peaks)]
     latest = float(np.max(peaks, initial=0.0))
-    if 0.9 * end < latest < 0.9 * longest:
-        end = min(1.15 * latest if course else 2.0 * latest, longest)
-    begin = min(begin, 0.9 * float(np.min(peaks, initial=np.inf)))
+    if course:
+        end = max(end, min(latest + _ROOM * (end - begin), longest))
+    elif 0.9 * end < latest < 0.9 * longest:
+        end = min(2.0 * latest, longest)
+    if case.source.kind == "surge" and not ringing:
+        # nothing but a slow decay follows
+        end = min(end, max(_DECAY * latest, 2 * course))
+    begin = min(begin, float(np.min(peaks, initial=np.inf)))
     end = min(end, case.course_end)
-    time = np.union1d(_times(case, begin, end, max(ringing, turning)), peaks)
+    time = np.union1d(times_between(case, begin, end, quick), peaks)
     time = time[(time >= begin) & (time <= end)]
     if end - course < lasting * (1 - _ROUNDING) and not cut:
         dies = f"its time constant is {show(constant, 'time')}" if rate > 0 else "it never dies"
@@ -124,6 +130,12 @@ def span_of(case: Case, most_cycles: float) -> Span:
 def _settled(case: Case) -> float:
     assert isinstance(case.source.shape, Piecewise)
     return case.source.shape.settled
+
+
+def ringing_of(case: Case) -> float:
+    """Frequency at which the loop rings; zero if it does not [Hz]."""
+    underdamped = bool(np.all(case.equation.underdamped))
+    return item(REGISTER["ringing_frequency"](case)) if underdamped else 0.0
 
 
 def _course(case: Case) -> tuple[float, float]:
@@ -164,8 +176,23 @@ def _eventful(case: Case, end: float, tail: float) -> tuple[float, float, str]:
     return begin, end, "; ".join(cut)
 
 
-def _times(case: Case, begin: float, end: float, quick: float) -> Array:
-    """Times to draw at: even, and closer where something fast goes on."""
+def times_between(case: Case, begin: float, end: float, quick: float) -> Array:
+    """Times to draw at: even, and closer where something fast goes on.
+
+    Parameters
+    ----------
+    case : Case
+        One loop.
+    begin, end : float
+        From closing [s].
+    quick : float
+        The quicker one of ringing and source [Hz].
+
+    Returns
+    -------
+    Array
+        Rising [s].
+    """
     eq, source, length = case.equation, case.source, end - begin
     points = int(np.clip(_POINTS_PER_CYCLE * quick * length, _LEAST_POINTS, _MOST_POINTS))
     if source.orders:
@@ -185,7 +212,8 @@ def _times(case: Case, begin: float, end: float, quick: float) -> Array:
             offsets.append(np.linspace(0.0, min(end, 2.0 / item(eq.root[0])), _EARLY_POINTS))
     after = np.unique(np.concatenate(offsets))
     if case.lines is None:
-        return np.union1d(time, after)
+        time = np.union1d(time, after)
+        return time[(time >= begin) & (time <= end)]
     knots = case.lines.start
     inside = (knots >= begin) & (knots <= end)
     jumps = np.append(False, case.lines.level[1:] != case.lines.end[:-1])
@@ -193,4 +221,5 @@ def _times(case: Case, begin: float, end: float, quick: float) -> Array:
     before = np.nextafter(knots[inside & jumps], 0.0)
     if np.count_nonzero(inside) <= _FEW_KNOTS:
         time = np.union1d(time, (knots[inside, np.newaxis] + after).ravel())
-    return np.unique(np.concatenate([time, knots[inside], before]))
+    time = np.unique(np.concatenate([time, knots[inside], before]))
+    return time[(time >= begin) & (time <= end)]

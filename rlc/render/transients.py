@@ -197,7 +197,7 @@ def _plot(
     panel: Axes, time: Array, values: Array, look: dict[str, Any], label: str = ""
 ) -> list[float]:
     """A curve; what it reaches, zero among it."""
-    kept = thinned(_STRETCHES, values)
+    kept = thinned(time, _STRETCHES, values)
     panel.plot(time[kept], values[kept], label=label, **look)
     return [0.0, float(np.min(values)), float(np.max(values))]
 
@@ -205,7 +205,7 @@ def _plot(
 def _draw_band(panel: Axes, case: Case, span: Span, band: Band) -> list[float]:
     """What all closings that are possible may lead to."""
     low, high = band
-    kept = thinned(_STRETCHES, low, high)
+    kept = thinned(span.time, _STRETCHES, low, high)
     panel.fill_between(
         span.time[kept], low[kept], high[kept], label=closings_label(case), **CLOSINGS
     )

@@ -26,7 +26,8 @@ from pictures import (
 from rlc.render import plots
 from rlc.solver.case import Case
 from rlc.solver.loop import make_loop
-from rlc.solver.source import constant, sine
+from rlc.solver.shapes import pulse, ramp, recorded, surge
+from rlc.solver.source import ANY_ANGLE, Order, constant, shaped, sine
 from rlc.solver.targets import Target
 
 CASES = {
@@ -41,6 +42,12 @@ CASES = {
     "loaded": ({**AUDIO, "load_resistance": 400.0, "series_resistance": 0.1}, constant(48.0)),
     "short ringing, slow source": ({**MAINS, "resistance": 1.0}, sine(325.0, 5.0, None)),
     "nothing happens": (AUDIO, constant(0.0)),
+    "harmonics at any angle": (MAINS, sine(325.0, 50.0, ANY_ANGLE, orders=[Order(5, 0.06)])),
+    "ramp": (INRUSH, shaped(ramp(24.0, 1e-4))),
+    "pulse": (INRUSH, shaped(pulse(24.0, 1e-4))),
+    "steady train": (AUDIO, shaped(pulse(24.0, 1e-4, 0.0, 0.0, 5e-4, None))),
+    "surge": (MAINS, shaped(surge(6e3, 1.2e-6, 50e-6))),
+    "recorded": (OVERDAMPED, shaped(recorded([0.0, 1e-3, 2e-3, 5e-3], [0.0, 9.0, -3.0, 1.0]))),
     "picofarads": (
         {"resistance": 1.0, "inductance": 1e-9, "capacitance": 1e-12},
         sine(1e-3, 5e9, 0.0),
