@@ -26,7 +26,7 @@ _TEXT_WIDTH = 555.0
 _HANDLE_WIDTH = 42.0
 # Two columns: widths [inch], of their legends [point], and heights of their panels [inch].
 _COLUMN_WIDTHS = (6.9, 4.6)
-_COLUMN_LEGENDS = (428.0, 265.0)
+_COLUMN_LEGENDS = (412.0, 258.0)
 # Where panels stand before the layout is solved for; a legend wider than its panel is then would
 # make the panel narrower.
 _AT_FIRST = {"left": 0.1, "right": 0.99}

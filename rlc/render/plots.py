@@ -6,6 +6,8 @@ Each function returns a figure and draws nothing on any screen; `save` writes it
 from __future__ import annotations
 
 import os
+import struct
+import zlib
 from collections.abc import Sequence
 from pathlib import Path
 from typing import TYPE_CHECKING, Any
@@ -45,7 +47,7 @@ Array = NDArray[np.float64]
 
 #: What `save` can write, by suffix, and the metadata that would differ from run to run.
 _FORMATS: dict[str, Any] = {
-    ".png": {"Software": None},
+    ".png": {},
     ".svg": {"Date": None, "Creator": None},
     ".pdf": {"CreationDate": None, "Creator": None, "Producer": None},
 }
@@ -202,13 +204,43 @@ def save(figure: Figure, path: str | os.PathLike[str]) -> None:
 
 
 def _write_pixels(figure: Figure, path: Path) -> None:
-    """Write a PNG of 16 levels per colour: a third of the size, and no difference to see."""
+    """Write a PNG with a palette: a quarter of the size, and no difference to see."""
     from matplotlib.backends.backend_agg import FigureCanvasAgg
-    from matplotlib.image import imsave
 
     canvas = FigureCanvasAgg(figure)
     canvas.draw()  # type: ignore[no-untyped-call]
     pixels = np.asarray(canvas.buffer_rgba())[..., :3]  # type: ignore[no-untyped-call]
-    pixels = np.rint(pixels / 17.0).astype(np.uint8) * np.uint8(17)
-    imsave(path, pixels, format="png", dpi=figure.dpi, metadata=_FORMATS[".png"],
-           pil_kwargs={"optimize": True})  # fmt: skip
+    # 16 levels per colour, and of these colours the most frequent
+    shade = np.rint(pixels / 17.0).astype(np.intp) @ np.array([256, 16, 1])
+    counts = np.bincount(shade.ravel(), minlength=4096)
+    every = np.arange(4096)[:, np.newaxis] // [256, 16, 1] % 16
+    kept = np.sort(np.argsort(-counts, kind="stable")[:256])
+    used = np.flatnonzero(counts)
+    apart = np.sum((every[used][:, np.newaxis] - every[kept]) ** 2, axis=-1)
+    nearest = np.zeros(4096, dtype=np.uint8)
+    nearest[used] = np.argmin(apart, axis=-1)
+    path.write_bytes(_indexed_png(nearest[shade], (every[kept] * 17).astype(np.uint8), figure.dpi))
+
+
+def _indexed_png(index: NDArray[np.uint8], palette: NDArray[np.uint8], dpi: float) -> bytes:
+    """The bytes of a PNG whose pixels are places in a palette.
+
+    References
+    ----------
+    .. [1] ISO/IEC 15948, Portable Network Graphics: chunks and their order (from memory).
+    """
+    height, width = index.shape
+    unfiltered = np.zeros((height, 1 + width), dtype=np.uint8)
+    unfiltered[:, 1:] = index
+    per_metre = round(dpi / 0.0254)
+    chunks = (
+        (b"IHDR", struct.pack(">IIBBBBB", width, height, 8, 3, 0, 0, 0)),
+        (b"PLTE", palette.tobytes()),
+        (b"pHYs", struct.pack(">IIB", per_metre, per_metre, 1)),
+        (b"IDAT", zlib.compress(unfiltered.tobytes(), 9)),
+        (b"IEND", b""),
+    )
+    return b"\x89PNG\r\n\x1a\n" + b"".join(
+        struct.pack(">I", len(data)) + kind + data + struct.pack(">I", zlib.crc32(kind + data))
+        for kind, data in chunks
+    )

@@ -5,8 +5,10 @@ from __future__ import annotations
 import subprocess
 import sys
 
+import numpy as np
 import pytest
-from pictures import CAUTIONS, INRUSH, TARGETS, audio
+from matplotlib.image import imread
+from pictures import CAUTIONS, INRUSH, TARGETS, audio, drawn
 
 from rlc.errors import InputError
 from rlc.render import plots
@@ -25,6 +27,17 @@ def test_same_figure_gives_the_same_bytes(tmp_path, suffix):
     start = {".png": b"\x89PNG", ".svg": b"<?xml", ".pdf": b"%PDF"}[suffix.lower()]
     assert first.startswith(start)
     assert sorted(tmp_path.iterdir()) == sorted(paths)
+
+
+def test_png_has_the_pixels_of_the_figure(tmp_path):
+    """Another reader of PNG gives them back, to half of the 16 levels' distance."""
+    figure = drawn(plots.state_plane(audio()))
+    pixels = np.asarray(figure.canvas.buffer_rgba())[..., :3]
+    plots.save(figure, tmp_path / "picture.png")
+    read = imread(tmp_path / "picture.png")[..., :3] * 255
+    assert read.shape == pixels.shape
+    assert np.max(np.abs(read - pixels)) <= 17 / 2 + 1e-4
+    assert len(np.unique(read.reshape(-1, 3), axis=0)) > 16
 
 
 def test_png_is_small(tmp_path):
