@@ -8,13 +8,13 @@ known through the second, one that a short pulse has hardly moved only through t
 from __future__ import annotations
 
 from dataclasses import dataclass
-from typing import NamedTuple
+from typing import Any, NamedTuple
 
 import numpy as np
 from numpy.typing import NDArray
 
-from rlc.solver.equation import Array, Equation, kernels
-from rlc.solver.lines import Lines, States, balance, lines
+from rlc.solver.equation import Array, Equation, free_response, kernels
+from rlc.solver.lines import States, balance, lines
 from rlc.solver.shapes import Piecewise
 
 # So many knots are carried one after another, all blocks at once; a power of two keeps the
@@ -34,6 +34,9 @@ class _Step(NamedTuple):
     d: Array
     to_states: States
     to_distance: States
+
+
+Index = NDArray[np.intp]
 
 
 @dataclass(frozen=True, eq=False)
@@ -71,6 +74,17 @@ class Course:
         )
         return voltage, current
 
+    @property
+    def known(self) -> States:
+        """The states at each knot, the better known way."""
+        voltage, current = (
+            np.where(near, rest * self.shape.level + apart, state)
+            for near, rest, apart, state in zip(
+                self.near_balance, balance(self.eq), self.distance, self.states, strict=True
+            )
+        )
+        return voltage, current
+
     def at(self, time: Array) -> tuple[Array, Array]:
         """Capacitor voltage and current at given times.
 
@@ -84,30 +98,52 @@ class Course:
         capacitor_voltage, current : Array
             Shape of the batch, then (n,) [V], [A].
         """
-        shape, eq = self.shape, self.eq
-        index = np.searchsorted(shape.start, time, side="right") - 1
-        since, lost = _difference(time, shape.start[index])
-        level, slope = shape.level[index], shape.slope[index]
+        index = np.searchsorted(self.shape.start, time, side="right") - 1
+        since, lost = _difference(time, self.shape.start[index])
+        voltage, current = self._along(self.eq, index, since, (Ellipsis, index))
+        if lost.any():
+            # what rounding took from the time: 1e-16 of it is 1e-11 of a turn after 1e4 periods
+            a, b, c, d = self.eq.matrix
+            source = self.shape.level[index] + self.shape.slope[index] * since
+            voltage, current = (
+                voltage + lost * (a * voltage + b * current),
+                current + lost * (c * voltage + d * current + self.eq.source_rate * source),
+            )
+        return voltage, current
+
+    def along(self, loop: Index, line: Index, since: Array) -> tuple[Array, Array]:
+        """Capacitor voltage and current of some loops on some lines.
+
+        Parameters
+        ----------
+        loop, line : Array of int
+            Shape (n,) each, places in the batch, which has one axis, and among the lines [1].
+        since : Array
+            Shape (n,), from the line's start on [s].
+
+        Returns
+        -------
+        capacitor_voltage, current : Array
+            Shape (n,) [V], [A].
+        """
+        eq = self.eq.map(lambda part: part[loop, 0])
+        return self._along(eq, line, since, (loop, line))
+
+    def _along(self, eq: Equation, index: Index, since: Array, place: Any) -> States:
+        level, slope = self.shape.level[index], self.shape.slope[index]
         line = lines(eq, since)
-        moved = _propagated(line, eq, *(part[..., index] for part in self.states))
-        left = _propagated(line, eq, *(part[..., index] for part in self.distance))
+        moved = free_response(eq, line.kernel, *(part[place] for part in self.states))
+        left = free_response(eq, line.kernel, *(part[place] for part in self.distance))
         source = level + slope * since
         rest = balance(eq)
         voltage, current = (
             np.where(
-                self.near_balance[k][..., index],
+                self.near_balance[k][place],
                 rest[k] * source + slope * line.lag[k] + left[k],
                 moved[k] + level * line.step[k] + slope * line.ramp[k],
             )
             for k in (0, 1)
         )
-        if lost.any():
-            # what rounding took from the time: 1e-16 of it is 1e-11 of a turn after 1e4 periods
-            a, b, c, d = eq.matrix
-            voltage, current = (
-                voltage + lost * (a * voltage + b * current),
-                current + lost * (c * voltage + d * current + eq.source_rate * source),
-            )
         return voltage, current
 
 
@@ -156,15 +192,6 @@ def _difference(a: Array, b: Array) -> tuple[Array, Array]:
     high = a - b
     part = high - a
     return high, (a - (high - part)) - (b + part)
-
-
-def _propagated(line: Lines, eq: Equation, voltage: Array, current: Array) -> States:
-    _, b, c, _ = eq.matrix
-    kernel = line.kernel
-    return (
-        voltage * kernel.capacitor + b * current * kernel.s,
-        current * kernel.current + c * voltage * kernel.s,
-    )
 
 
 def _steps(eq: Equation, shape: Piecewise) -> _Step:

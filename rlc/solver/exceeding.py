@@ -10,11 +10,10 @@ from numpy.typing import NDArray
 from rlc.solver.case import Case
 from rlc.solver.peaking import steady_peak
 from rlc.solver.transient import last_time_outside, settled, transient
-from rlc.solver.turning_points import steps_until, turning_points
+from rlc.solver.turning_points import narrowed, steps_until, turning_points
 
 Array = NDArray[np.float64]
 
-_HALVINGS = 60
 # A lasting source is looked at for so many of its periods beyond the transient.
 _PERIODS = 2.0
 # What stays within the limit but for rounding does not exceed it.
@@ -57,51 +56,60 @@ def exceeded(case: Case, element: str, limit: float) -> Exceeded:
     -------
     Exceeded
     """
-    peak = case.peak(element)
-    if not float(peak.value) > limit * (1 + _ROUNDING):
-        return Exceeded(np.nan, 0.0)
-    closed = case.closed_for(element)
-    lasting = float(steady_peak(closed, element)) > limit * (1 + _ROUNDING)
-    lasting |= bool(case.repeats) and not np.isfinite(peak.time)
-    end = _last(closed, element, limit)
+    first, lasts = exceeded_of(case, element, limit)
+    return Exceeded(float(first), float(lasts))
+
+
+class _Known(NamedTuple):
+    """What is known of a loop before its crossings are looked for."""
+
+    peak_time: float
+    lasting: bool
+    last: float
+
+
+def _crossings(case: Case, element: str, limit: float, known: _Known) -> Exceeded:
+    """Of one loop that does exceed the limit, with one closing angle and polarity."""
+    lasting, end = known.lasting, known.last
     if not np.isfinite(end):
         # Without losses: up to the peak, or a few beats of source and ringing.
-        lasting, end = True, _without_losses(closed, float(peak.time))
-    if lasting and np.isfinite(peak.time):
-        end = float(peak.time)
-    steps = steps_until(closed, end)
-    nodes = np.union1d(steps, turning_points(closed, element, steps))
-    above = _excess(closed, element, nodes, limit) > 0
+        lasting, end = True, _without_losses(case, known.peak_time)
+    if lasting and np.isfinite(known.peak_time):
+        end = known.peak_time
+    steps = steps_until(case, end)
+    nodes = np.union1d(steps, turning_points(case, element, steps))
+
+    def above(time: Array) -> Any:
+        waves = case.waveforms(time)
+        values = waves.current if element == "current" else waves.capacitor_voltage
+        return np.abs(values) > limit
+
+    there = above(nodes)
     if case.repeats:
         # what the last period of the train does is done by all that follow
-        lasting |= bool(above[nodes > case.course_end - case.repeats].any())
-    if not above.any():
-        return Exceeded(float(peak.time), np.inf if lasting else np.nan)
-    change = np.flatnonzero(above[1:] != above[:-1])
-    low, high, rising = nodes[change], nodes[change + 1], above[change + 1]
-    for _ in range(_HALVINGS):
-        middle = (low + high) / 2
-        beyond = (_excess(closed, element, middle, limit) > 0) == rising
-        low, high = np.where(beyond, low, middle), np.where(beyond, middle, high)
-    first = 0.0 if above[0] else float(high[0])
-    bounds = np.concatenate([[0.0] if above[0] else [], high, [end] if above[-1] else []])
-    lasts = float(np.sum(bounds[1::2] - bounds[::2]))
-    return Exceeded(first, np.inf if lasting else lasts)
+        lasting |= bool(there[nodes > case.course_end - case.repeats].any())
+    if not there.any():
+        return Exceeded(known.peak_time, np.inf if lasting else np.nan)
+    change = np.flatnonzero(there[1:] != there[:-1])
+    _, crossed = narrowed(nodes[change], nodes[change + 1], above, there[change])
+    before = np.zeros(int(there[0]))
+    edges = np.concatenate([before, crossed, np.full(int(there[-1]), end)])
+    lasts = float(np.sum(edges[1::2] - edges[::2]))
+    return Exceeded(float(edges[0]), np.inf if lasting else lasts)
 
 
-def _last(case: Case, element: str, limit: float) -> float:
-    """A time after which the limit is not exceeded for the first time, nor ever again if free
+def _last(case: Case, element: str, limit: Array) -> Array:
+    """Times after which the limit is not exceeded for the first time, nor ever again if free
     motion alone exceeds it [s]."""
-    if float(case.equation.damping) == 0:
-        return np.inf
     value, slope, _, since = transient(case, element)
-    period = _PERIODS / float(case.source.frequency) if case.source.alternating else 0.0
-    room = limit - float(steady_peak(case, element))
-    if room > 0 and np.isfinite(float(value)):
-        last = last_time_outside(case.equation, value, slope, np.asarray(room))
-        # rounding of the last crossing must not cut it off
-        return (since + float(last)) * (1 + _ROUNDING) + period
-    return float(settled(case)) + period
+    period = _PERIODS / case.source.frequency if case.source.alternating else 0.0
+    room = limit - steady_peak(case, element)
+    alone = (room > 0) & np.isfinite(value)
+    with np.errstate(all="ignore"):
+        outside = last_time_outside(case.equation, value, slope, np.where(alone, room, 1.0))
+    # rounding of the last crossing must not cut it off
+    last = np.where(alone, (since + outside) * (1 + _ROUNDING), settled(case)) + period
+    return np.where(case.equation.damping == 0, np.inf, last)
 
 
 def _without_losses(case: Case, peak: float) -> float:
@@ -110,12 +118,6 @@ def _without_losses(case: Case, peak: float) -> float:
         periods.append(1.0 / float(case.source.frequency))
     last = 0.0 if case.lines is None else float(case.lines.start[-1])
     return last + max(100 * max(periods), peak if np.isfinite(peak) else 0.0)
-
-
-def _excess(case: Case, element: str, time: Array, limit: float) -> Array:
-    waves = case.waveforms(time)
-    values = waves.current if element == "current" else waves.capacitor_voltage
-    return np.abs(values) - limit
 
 
 def exceeded_of(case: Case, element: str, limit: Any) -> tuple[Array, Array]:
@@ -137,9 +139,15 @@ def exceeded_of(case: Case, element: str, limit: Any) -> tuple[Array, Array]:
     """
     shape = np.broadcast_shapes(case.shape, np.shape(limit))
     limits = np.broadcast_to(limit, shape)
-    found = [
-        exceeded(case.one(index) if case.shape else case, element, float(limits[index]))
-        for index in np.ndindex(shape)
-    ]
-    first, lasts = zip(*found, strict=True)
-    return np.reshape(first, shape), np.reshape(lasts, shape)
+    peak, closed = case.peak(element), case.closed_for(element)
+    value, peak_time = np.broadcast_to(peak.value, shape), np.broadcast_to(peak.time, shape)
+    lasting = np.broadcast_to(steady_peak(closed, element) > limits * (1 + _ROUNDING), shape)
+    lasting = lasting | (bool(case.repeats) & ~np.isfinite(peak_time))
+    last = np.broadcast_to(_last(closed, element, limits), shape)
+    first, lasts = np.full(shape, np.nan), np.zeros(shape)
+    for index in zip(*np.nonzero(np.atleast_1d(value > limits * (1 + _ROUNDING))), strict=True):
+        place = index if shape else ()
+        one = closed.one(place[len(shape) - len(case.shape) :]) if case.shape else closed
+        known = _Known(float(peak_time[place]), bool(lasting[place]), float(last[place]))
+        first[place], lasts[place] = _crossings(one, element, float(limits[place]), known)
+    return first, lasts

@@ -11,7 +11,6 @@ plus free motion of the loop. A real row is the real part of it.
 from __future__ import annotations
 
 from collections.abc import Sequence
-from dataclasses import fields
 from typing import Any, NamedTuple
 
 import numpy as np
@@ -25,30 +24,6 @@ Complex = NDArray[np.complex128]
 Index = NDArray[np.intp]
 
 _EXPONENT_LIMIT = 300.0
-
-
-def take(eq: Equation, which: Index) -> Equation:
-    """The equations of some rows.
-
-    Parameters
-    ----------
-    eq : Equation
-        Shape (n,).
-    which : Array of int
-        Places of the rows, from zero [1].
-
-    Returns
-    -------
-    Equation
-        With the shape of `which`.
-    """
-
-    def pick(value: object) -> object:
-        if isinstance(value, tuple):
-            return tuple(pick(item) for item in value)
-        return np.asarray(value)[which]
-
-    return Equation(**{f.name: pick(getattr(eq, f.name)) for f in fields(Equation)})  # type: ignore[arg-type]
 
 
 class Term(NamedTuple):

@@ -3,19 +3,22 @@
 from __future__ import annotations
 
 from dataclasses import replace
+from operator import itemgetter
 from typing import TYPE_CHECKING, Any, NamedTuple
 
 import numpy as np
 from numpy.typing import NDArray
 
 from rlc.solver.course_peaks import course_peaks
-from rlc.solver.equation import Equation, angular, equation_of, kernels
-from rlc.solver.motion import Index, Motion, Term, take
+from rlc.solver.equation import Equation, angular, equation_of, free_response, kernels
+from rlc.solver.loop import Weights
+from rlc.solver.motion import Index, Motion, Term
 from rlc.solver.peaks import Peak, Signal, constant_source_peak
 from rlc.solver.rows import Rows
 from rlc.solver.search import Best, known_before, search
 from rlc.solver.shapes import Surge
 from rlc.solver.source import ANY_ANGLE, Window
+from rlc.solver.surging import surge_from_rest
 
 if TYPE_CHECKING:
     from rlc.solver.case import Case
@@ -23,9 +26,10 @@ if TYPE_CHECKING:
 Array = NDArray[np.float64]
 
 _QUARTER_TURN = np.pi / 2
-# Nearer to a root of the loop a rate of the surge is moved by so much: the two exponentials'
-# amplitudes would be known to less than the gap that the answer then states.
-_APART, _APART_GAP = 1e-7, 1e-6
+# Nearer to a root of the loop a rate of the surge is moved by so much in the search: partial
+# fractions would not know its exponential. The gap that is then stated is ten times as much.
+_APART, _MOVED, _MOVED_GAP = 1e-6, 1e-3, 1e-2
+_ROUNDING = 8 * np.finfo(np.float64).eps
 
 
 def find_peaks(case: Case, elements: tuple[str, ...]) -> dict[str, Peak]:
@@ -188,7 +192,7 @@ class _Waves(NamedTuple):
         which = np.flatnonzero(np.isfinite(total))
         if len(sizes) == 1 or not which.size:
             return total
-        eq, still = take(self.eq, which), Signal(0.0, 0.0, 0.0)
+        eq, still = self.eq.map(itemgetter(which)), Signal(0.0, 0.0, 0.0)
         steady = Motion(eq, still, self._terms(which, 1.0), real=True)
         best = known_before(np.zeros(total.size))
         slowest, fastest = self.omega[which], max(self.numbers) * self.omega[which]
@@ -205,7 +209,7 @@ class _Waves(NamedTuple):
         ]
 
     def _rows(self, which: Index, duration: Array, top: Array, held: bool = True) -> Rows:
-        eq = take(self.eq, which)
+        eq = self.eq.map(itemgetter(which))
         fixed = Signal(*(np.real(np.broadcast_to(each, top.shape))[which] for each in self.fixed))
         parts: list[Motion] = []
         turns: tuple[int, ...] = ()
@@ -275,11 +279,10 @@ def _surge_peaks(case: Case, element: str) -> Peak:
     moved, terms = np.zeros(voltage.size, bool), []
     for size, rate in ((surge.scale, surge.slow), (-surge.scale, surge.fast)):
         pace = np.full(voltage.size, rate)
-        for root in (eq.slow, eq.fast):
-            near = ~eq.underdamped & (np.abs(pace - root) < _APART * root)
-            moved |= near
-            pace = np.where(near, root * (1 + _APART), pace)
-        below = eq.natural_squared[0] - pace * (eq.gamma - pace)
+        near = _below(eq, pace) < _APART * (eq.natural_squared[0] + pace * pace)
+        moved |= near
+        pace = np.where(near, pace * (1 + _MOVED), pace)
+        below = _below(eq, pace, signed=True)
         held_v = size * eq.matrix[1] * eq.source_rate / below
         held_i = size * (-pace - a) * eq.source_rate / below
         terms.append(Term(weight_v * held_v + weight_i * held_i + weight_s * size, -pace))
@@ -296,6 +299,35 @@ def _surge_peaks(case: Case, element: str) -> Peak:
     quickest = np.maximum(eq.natural, surge.fast)
     forever = np.full(every.size, np.inf)
     search(Rows(eq, (motion,), every, np.zeros(every.size), forever, quickest), best)
-    gap = np.where(moved, np.maximum(best.gap, _APART_GAP), best.gap)
-    value, time, gap = (part.reshape(batch) for part in (best.value, best.time, gap))
+    _as_reached(best, eq, surge, (flat(case.capacitor_voltage), flat(case.initial_current)), w)
+    rounding = _ROUNDING * (motion.amplitude + motion.energy) / best.value
+    best.gap = np.maximum(best.gap, np.where(moved, _MOVED_GAP, rounding))
+    value, time, gap = (part.reshape(batch) for part in (best.value, best.time, best.gap))
     return Peak(value, time, gap, np.full(batch, _QUARTER_TURN))
+
+
+def _below(eq: Equation, pace: Array, signed: bool = False) -> Array:
+    """p^2 + gamma p + omega_0^2 at p = -pace, from its roots: the sum would cancel near one."""
+    away = eq.damping - pace
+    product = np.where(
+        eq.underdamped,
+        away * away + eq.root[0] ** 2,
+        (eq.slow - pace) * (eq.fast - pace),
+    )
+    return product if signed else np.abs(product)
+
+
+def _as_reached(
+    best: Best, eq: Equation, surge: Surge, start: tuple[Array, Array], w: Weights
+) -> None:
+    """The values at the peaks' times from exact states, which partial fractions only near."""
+    reached = np.flatnonzero(np.isfinite(best.time) & (best.time > 0))
+    time, some = best.time[reached], eq.map(itemgetter(reached))
+    driven = surge_from_rest(some, surge, time)
+    free = free_response(some, kernels(some, time), *(part[reached] for part in start))
+    voltage, current = driven[0] + free[0], driven[1] + free[1]
+    weight_v, weight_i, weight_s = (
+        np.broadcast_to(part, w.current.shape).ravel()[reached] for part in w
+    )
+    source = surge.at(time)
+    best.value[reached] = np.abs(weight_v * voltage + weight_i * current + weight_s * source)

@@ -15,13 +15,14 @@ from __future__ import annotations
 
 from collections.abc import Sequence
 from dataclasses import dataclass
+from operator import itemgetter
 from typing import Any, NamedTuple
 
 import numpy as np
 from numpy.typing import NDArray
 
 from rlc.solver.equation import Equation, kernels
-from rlc.solver.motion import Array, Index, Moved, take
+from rlc.solver.motion import Array, Index, Moved
 from rlc.solver.rows import Rows, framed, framed_bounds, together
 
 #: Relative gap between the value found and the proved upper bound.
@@ -155,7 +156,7 @@ class _Search:
 
     def _first_cells(self, gap: float, which: Index) -> _Cells:
         """Intervals that double in length until nothing but the source is left."""
-        rows, eq = self.rows, take(self.eq, which)
+        rows, eq = self.rows, self.eq.map(itemgetter(which))
         unit, duration = 1.0 / rows.quickest[which], rows.duration[which]
         floor = gap * np.maximum(self.best.value[rows.group[which]], 1e-9 * self.energy[which])
         rate = eq.slowest
@@ -192,7 +193,9 @@ class _Search:
         return np.abs(together(self.rows.turns, seen, angle)[0])
 
     def _record(self, which: Index, time: Array, angle: Array) -> None:
-        size = self._size(which, time, angle, self._moved(which, time, take(self.eq, which)))
+        size = self._size(
+            which, time, angle, self._moved(which, time, self.eq.map(itemgetter(which)))
+        )
         self._keep(which, time, angle, size)
 
     def _keep(self, which: Index, time: Array, angle: Array, size: Array) -> None:
@@ -233,7 +236,7 @@ class _Search:
     def _bound(self, cells: _Cells) -> tuple[Array, Array, Array]:
         """Upper bounds, and what time and angle add to them; middles are recorded on the way."""
         which, at, half, angle, swing, _ = cells
-        eq = take(self.eq, which)
+        eq = self.eq.map(itemgetter(which))
         moved = self._moved(which, at, eq)
         bounds = [
             part.bounds(eq, which, at, half, each)
@@ -281,12 +284,12 @@ class _Search:
             loops, which, time, angle = loops[inside], which[inside], time[inside], angle[inside]
             if not which.size:
                 return
-            moved = self._moved(which, time, take(self.eq, which))
+            moved = self._moved(which, time, self.eq.map(itemgetter(which)))
             step, turned = self._newton(framed(self.rows, which, time, moved), which, angle)
             later = time + step
             good = np.isfinite(later) & (later > 0) & (later <= rows.duration[which])
             loops, which, later, turned = loops[good], which[good], later[good], turned[good]
-            moved = self._moved(which, later, take(self.eq, which))
+            moved = self._moved(which, later, self.eq.map(itemgetter(which)))
             size = self._size(which, later, turned, moved)
             # the value is flat to rounding around the top; the time still gains digits
             keep = size >= best.value[loops] * (1 - 1e-15)

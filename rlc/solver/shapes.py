@@ -4,6 +4,7 @@ from __future__ import annotations
 
 from collections.abc import Mapping
 from dataclasses import dataclass, field
+from functools import cached_property
 from typing import Any, ClassVar
 
 import numpy as np
@@ -86,7 +87,7 @@ class Piecewise:
         """Largest magnitude at any time [V]."""
         return float(max(np.max(np.abs(self.level)), np.max(np.abs(self.end))))
 
-    @property
+    @cached_property
     def slope(self) -> Array:
         """Of each line, shape (n,) [V/s]."""
         return np.append((self.end - self.level)[:-1] / np.diff(self.start), 0.0)

@@ -2,6 +2,9 @@
 
 from __future__ import annotations
 
+from collections.abc import Callable
+from typing import Any
+
 import numpy as np
 from numpy.typing import NDArray
 
@@ -70,16 +73,41 @@ def turning_points(case: Case, signal: str, times: Array, count: int | None = No
     """
     slope = _slope(case, signal, times)
     before = np.flatnonzero(np.sign(slope[:-1]) * np.sign(slope[1:]) < 0)[:count]
-    low, high, sign = times[before], times[before + 1], np.sign(slope[before])
+    sign = np.sign(slope[before])
+    low, high = narrowed(
+        times[before], times[before + 1], lambda at: np.sign(_slope(case, signal, at)), sign
+    )
+    return (low + high) / 2
+
+
+def narrowed(
+    low: Array, high: Array, state: Callable[[Array], Any], before: Array
+) -> tuple[Array, Array]:
+    """Close brackets of a first change to rounding, all at once.
+
+    Parameters
+    ----------
+    low, high : Array
+        Shape (n,), times before and after the change [s].
+    state : callable
+        What changes, from times of shape (m,) to values of shape (m,) [any unit].
+    before : Array
+        Shape (n,), its value at `low` [any unit].
+
+    Returns
+    -------
+    low, high : Array
+        The last time found before the change, and the first one after [s].
+    """
     parts = np.linspace(0.0, 1.0, _SECTIONS + 1)[:, np.newaxis]
     for _ in range(_SECTIONINGS):
         cuts = low + (high - low) * parts
-        same = np.sign(_slope(case, signal, cuts.ravel()).reshape(cuts.shape)) == sign
-        # The last cut before the sign has changed for the first time.
+        same = state(cuts.ravel()).reshape(cuts.shape) == before
+        # The last cut before the change.
         last = np.maximum(np.argmin(same[1:], axis=0), 0)
         low = np.take_along_axis(cuts, last[np.newaxis], axis=0)[0]
         high = np.take_along_axis(cuts, last[np.newaxis] + 1, axis=0)[0]
-    return (low + high) / 2
+    return low, high
 
 
 def _slope(case: Case, signal: str, times: Array) -> Array:
