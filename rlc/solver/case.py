@@ -10,7 +10,7 @@ import numpy as np
 from numpy.typing import NDArray
 
 from rlc.errors import InputError
-from rlc.solver.course import Course, follow
+from rlc.solver.course import Course, LastKnot, at_last_knot, follow
 from rlc.solver.equation import Equation, angular, equation_of
 from rlc.solver.loop import Loop
 from rlc.solver.peaking import find_peaks
@@ -81,6 +81,16 @@ class Case:
     def at_rest(self) -> bool:
         """Whether every loop closes without charge and current."""
         return not (np.any(self.capacitor_voltage) or np.any(self.initial_current))
+
+    @property
+    def polarity_open(self) -> bool:
+        """Whether the capacitor's voltage may be of either sign, and is not zero."""
+        return self.either_polarity and bool(np.any(self.capacitor_voltage))
+
+    def polarities(self) -> tuple[Case, Case]:
+        """The two cases of which the worse one counts: with the voltage as given, and reversed."""
+        one = replace(self, either_polarity=False)
+        return one, replace(one, capacitor_voltage=-self.capacitor_voltage)
 
     @cached_property
     def equation(self) -> Equation:
@@ -287,11 +297,21 @@ class Case:
     def course(self) -> Course:
         """The loop carried through the source's straight lines."""
         assert self.lines is not None
+        return follow(self.equation.column(), self.lines, *self._starts)
+
+    @cached_property
+    def last_knot(self) -> LastKnot:
+        """Where the last line of the source finds the loop."""
+        assert self.lines is not None
+        return at_last_knot(self.equation.column(), self.lines, *self._starts)
+
+    @property
+    def _starts(self) -> tuple[Array, Array]:
         voltage, current = (
             np.broadcast_to(part, self.shape)[..., np.newaxis]
             for part in (self.capacitor_voltage, self.initial_current)
         )
-        return follow(self.equation.column(), self.lines, voltage, current)
+        return voltage, current
 
     def closing_angle_for(self, element: str) -> Array:
         """The closing angle: as given, or the worst one for this element.
@@ -313,7 +333,7 @@ class Case:
         source = self.source
         if source.closing_angle is not None:
             return source.closing_angle
-        if source.window not in (None, ANY_ANGLE):
+        if not (source.window or ANY_ANGLE).whole_turn:
             return self.peak(element).angle
         odd = all(order.number % 2 for order in source.orders)
         turn = np.pi if self.at_rest and odd else 2 * np.pi
@@ -362,7 +382,7 @@ class Case:
             With one closing angle and one capacitor voltage for each loop.
         """
         source, voltage = self.source, self.capacitor_voltage
-        if self.either_polarity and np.any(voltage):
+        if self.polarity_open:
             voltage = voltage * self.peak(element).polarity
         elif not (source.alternating and source.worst_angle):
             return self
@@ -392,11 +412,11 @@ class Case:
             If a time is below zero or not a number, or no closing angle is known.
         """
         time = np.asarray(time, dtype=np.float64)
-        if not np.all(time >= 0):
-            raise InputError("time", float(np.min(time)), "must be zero or more")
+        if not np.all((time >= 0) & np.isfinite(time)):
+            raise InputError("time", float(np.min(time)), "must be zero or more, and finite")
         angle = self.source.closing_angle if closing_angle is None else closing_angle
         if angle is None and self.source.alternating:
             raise InputError("closing_angle", "worst", "waveforms need one closing angle")
-        if self.either_polarity and np.any(self.capacitor_voltage):
+        if self.polarity_open:
             raise InputError("capacitor_voltage", None, "waveforms need one polarity")
         return waveforms(self, time, angle)

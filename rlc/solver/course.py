@@ -8,6 +8,7 @@ known through the second, one that a short pulse has hardly moved only through t
 from __future__ import annotations
 
 from dataclasses import dataclass
+from operator import itemgetter
 from typing import Any, NamedTuple
 
 import numpy as np
@@ -20,6 +21,8 @@ from rlc.solver.shapes import Piecewise
 # So many knots are carried one after another, all blocks at once; a power of two keeps the
 # blocks of an even record at exact multiples of its step.
 _BLOCK = 256
+# Knots of all loops together that are kept at one time.
+_KNOTS_AT_ONCE = 500_000
 
 
 States2x2 = tuple[Array, Array, Array, Array]
@@ -185,6 +188,48 @@ def follow(eq: Equation, shape: Piecewise, voltage: Array, current: Array) -> Co
         np.abs(states[0]), axis=-1
     )
     return Course(eq, shape, states, distance, (near & lower, near))
+
+
+class LastKnot(NamedTuple):
+    """Loops at the last knot of their source; each array has the batch's shape.
+
+    Attributes
+    ----------
+    states, free : (Array, Array)
+        Capacitor voltage and current, and what keeps them from balance [V], [A].
+    """
+
+    states: States
+    free: States
+
+
+def at_last_knot(eq: Equation, shape: Piecewise, voltage: Array, current: Array) -> LastKnot:
+    """Carry loops through a course, some at a time, and keep where they come to.
+
+    Parameters
+    ----------
+    eq, shape, voltage, current
+        As for :func:`follow`.
+
+    Returns
+    -------
+    LastKnot
+    """
+    batch = np.broadcast_shapes(eq.damping.shape, voltage.shape, current.shape)
+    size = int(np.prod(batch))
+
+    def flat(value: Any) -> Array:
+        return np.broadcast_to(value, batch).reshape(size, 1)
+
+    rows, starts = eq.map(flat), (flat(voltage), flat(current))
+    some = max(1, _KNOTS_AT_ONCE // shape.start.size)
+    ends = []
+    for first in range(0, size, some):
+        piece = slice(first, first + some)
+        course = follow(rows.map(itemgetter(piece)), shape, *(part[piece] for part in starts))
+        ends.append([part[:, -1] for part in (*course.known, *course.free)])
+    found = [np.concatenate(part).reshape(batch[:-1]) for part in zip(*ends, strict=True)]
+    return LastKnot((found[0], found[1]), (found[2], found[3]))
 
 
 def _difference(a: Array, b: Array) -> tuple[Array, Array]:

@@ -7,10 +7,11 @@ from typing import Any, NamedTuple
 import numpy as np
 from numpy.typing import NDArray
 
+from rlc.errors import InputError
 from rlc.solver.case import Case
 from rlc.solver.peaking import steady_peak
 from rlc.solver.transient import last_time_outside, settled, transient
-from rlc.solver.turning_points import narrowed, steps_until, turning_points
+from rlc.solver.turning_points import longest_stepped, narrowed, steps_until, turning_points
 
 Array = NDArray[np.float64]
 
@@ -55,6 +56,11 @@ def exceeded(case: Case, element: str, limit: float) -> Exceeded:
     Returns
     -------
     Exceeded
+
+    Raises
+    ------
+    InputError
+        If there is no such element, or the limit is not above zero.
     """
     first, lasts = exceeded_of(case, element, limit)
     return Exceeded(float(first), float(lasts))
@@ -76,6 +82,9 @@ def _crossings(case: Case, element: str, limit: float, known: _Known) -> Exceede
         lasting, end = True, _without_losses(case, known.peak_time)
     if lasting and np.isfinite(known.peak_time):
         end = known.peak_time
+    if end <= 0:
+        return Exceeded(0.0, np.inf if lasting else 0.0)
+    whole, end = end, min(end, longest_stepped(case))
     steps = steps_until(case, end)
     nodes = np.union1d(steps, turning_points(case, element, steps))
 
@@ -94,7 +103,7 @@ def _crossings(case: Case, element: str, limit: float, known: _Known) -> Exceede
     _, crossed = narrowed(nodes[change], nodes[change + 1], above, there[change])
     before = np.zeros(int(there[0]))
     edges = np.concatenate([before, crossed, np.full(int(there[-1]), end)])
-    lasts = float(np.sum(edges[1::2] - edges[::2]))
+    lasts = float(np.sum(edges[1::2] - edges[::2])) if end == whole else np.nan
     return Exceeded(float(edges[0]), np.inf if lasting else lasts)
 
 
@@ -136,7 +145,16 @@ def exceeded_of(case: Case, element: str, limit: Any) -> tuple[Array, Array]:
     -------
     first, lasts : Array
         With the batch's shape [s], [s].
+
+    Raises
+    ------
+    InputError
+        If there is no such element, or a limit is not above zero.
     """
+    if element not in ("current", "capacitor"):
+        raise InputError("element", element, "is neither current nor capacitor")
+    if not np.all((np.asarray(limit) > 0) & np.isfinite(limit)):
+        raise InputError("limit", limit, "must be more than zero, and finite")
     shape = np.broadcast_shapes(case.shape, np.shape(limit))
     limits = np.broadcast_to(limit, shape)
     peak, closed = case.peak(element), case.closed_for(element)

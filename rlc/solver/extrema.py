@@ -17,6 +17,9 @@ Array = NDArray[np.float64]
 
 SIGNALS = ("current", "capacitor")
 
+# What a signal that stands still seems to move by, over its largest value.
+_ROUNDING = 1e-10
+
 
 @dataclass(frozen=True)
 class Extrema:
@@ -62,7 +65,7 @@ def first_extrema(case: Case, count: int = 8) -> Extrema:
     steps = steps_until(closed, _end(closed, count))
     times, kinds = [np.zeros(0)], [np.zeros(0, dtype=int)]
     for index, signal in enumerate(SIGNALS):
-        found = turning_points(closed, signal, steps, count)
+        found = _that_turn(closed, signal, turning_points(closed, signal, steps), steps[-1])[:count]
         times.append(found)
         kinds.append(np.full(found.size, index))
     time, kind = np.concatenate(times), np.concatenate(kinds)
@@ -71,6 +74,29 @@ def first_extrema(case: Case, count: int = 8) -> Extrema:
     waves = closed.waveforms(time)
     of = tuple(SIGNALS[index] for index in kind[order])
     return Extrema(angle, time, waves.current, waves.capacitor_voltage, of)
+
+
+def _that_turn(case: Case, signal: str, time: Array, end: float) -> Array:
+    """Those turning points between which the signal moves by more than its rounding.
+
+    Where it stands still in between, the last of them counts.
+    """
+    waves = case.waveforms(np.concatenate([[0.0], time, [end]]))
+    values = waves.current if signal == "current" else waves.capacitor_voltage
+    still = _ROUNDING * float(np.max(np.abs(values)))
+    turned: list[int] = []
+    way, extreme, place = 0.0, float(values[0]), -1
+    for index, value in enumerate(values[1:]):
+        ahead = float(value) - extreme
+        if way == 0.0 and abs(ahead) > still:
+            way = float(np.sign(ahead))
+        if way * ahead >= -still:
+            extreme, place = float(value), index
+        else:
+            turned.append(place)
+            way, extreme, place = -way, float(value), index
+    kept: Array = time[[index for index in turned if index >= 0]]
+    return kept
 
 
 def _end(case: Case, count: int) -> float:

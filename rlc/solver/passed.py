@@ -8,12 +8,13 @@ from typing import Any
 import numpy as np
 from numpy.typing import NDArray
 
+from rlc.errors import InputError
 from rlc.solver.case import Case
 from rlc.solver.driven import driven_from_rest
 from rlc.solver.equation import Equation, angular, kernels, phase
-from rlc.solver.shapes import Piecewise, Surge
+from rlc.solver.shapes import TIME_CONSTANTS, Piecewise, Surge
 from rlc.solver.source import ANY_ANGLE, Window
-from rlc.solver.transient import TIME_CONSTANTS, settled
+from rlc.solver.transient import settled
 from rlc.solver.waveforms import states
 
 Array = NDArray[np.float64]
@@ -22,7 +23,7 @@ _NODES = 16
 _ANGLES, _NEWTON_STEPS = 256, 4
 # Half a cycle of the fastest motion to a panel of the integral; so many panels at a time.
 _PANELS_AT_ONCE = 4096
-_BISECTIONS = 60
+_ITERATIONS = 60
 _SECTIONS, _SECTIONINGS = 256, 7
 
 
@@ -49,36 +50,28 @@ def total_let_through(case: Case) -> Array:
     Energy balance of a series loop: any text on them, for instance OpenStax, University Physics
     vol. 2, section 14.6.
     """
-    if _either(case):
-        return np.maximum(*(total_let_through(each) for each in _both(case)))
+    if case.polarity_open:
+        return np.maximum(*(total_let_through(each) for each in case.polarities()))
     loop, shape = case.loop, case.source.shape
     voltage, current = case.capacitor_voltage, case.initial_current
     before = np.zeros(case.shape)
-    end = shape.settled if isinstance(shape, Piecewise) else 0.0
-    if isinstance(shape, Surge):
-        end = TIME_CONSTANTS / shape.slow
+    end = shape.gone if shape is not None else 0.0
     if 0 < end < np.inf:
         before = let_through(case, end)
-        _, voltage, current = (part[..., 0] for part in states(case, np.array([end]), 0.0))
+        if case.lines is not None:
+            voltage, current = case.last_knot.states
+        else:
+            _, voltage, current = (part[..., 0] for part in states(case, np.array([end]), 0.0))
     distance = voltage - case.source.amplitude
     stored = loop.capacitance * distance**2 + loop.total_inductance * current**2
     with np.errstate(divide="ignore", invalid="ignore"):
         total = before + stored / (2 * loop.total_resistance)
     still = (loop.load_conductance == 0) | (case.source.amplitude == 0)
     ends = still & (not case.source.alternating) & (not case.repeats)
-    if shape is not None and np.any(ends & (loop.load_conductance > 0)):
+    if np.any(ends & (loop.load_conductance > 0)):
+        # the load takes its part of the energy
         return let_through(case, end + TIME_CONSTANTS / case.equation.slowest)
     return np.where(stored + before == 0, 0.0, np.where(ends, total, np.inf))
-
-
-def _either(case: Case) -> bool:
-    return case.either_polarity and bool(np.any(case.capacitor_voltage))
-
-
-def _both(case: Case) -> tuple[Case, Case]:
-    """The two polarities of the capacitor's voltage at closing."""
-    one = replace(case, either_polarity=False)
-    return one, replace(one, capacitor_voltage=-case.capacitor_voltage)
 
 
 def let_through(case: Case, until: Any) -> Array:
@@ -102,14 +95,21 @@ def let_through(case: Case, until: Any) -> Array:
     Array
         With the shape of batch and `until` together, zero or more [A^2 s].
 
+    Raises
+    ------
+    InputError
+        If a time is below zero or not finite.
+
     References
     ----------
     .. [1] C. F. Van Loan, "Computing integrals involving the matrix exponential", IEEE
        Transactions on Automatic Control 23 (1978) 395-404 (from memory).
     """
-    if _either(case):
-        return np.maximum(*(let_through(each, until) for each in _both(case)))
     until = np.asarray(until, dtype=np.float64)
+    if not np.all((until >= 0) & np.isfinite(until)):
+        raise InputError("until", until.tolist(), "must be zero or more, and finite")
+    if case.polarity_open:
+        return np.maximum(*(let_through(each, until) for each in case.polarities()))
     shape = np.broadcast_shapes(case.shape, until.shape)
     if case.source.kind not in ("dc", "sine"):
         return _by_quadrature(case.closed_for("current"), np.broadcast_to(until, shape))
@@ -174,6 +174,19 @@ def _highest_wave(waves: tuple[Array, ...], window: Window) -> Any:
 
 def _by_quadrature(case: Case, until: Array) -> Array:
     """Loop by loop; all moments of one loop at once."""
+    if case.repeats:
+        # beyond the end of the train whole periods of the steady one, and a part of it
+        more = np.maximum(until - case.course_end, 0.0)
+        periods = np.floor(more / case.repeats)
+        start = np.broadcast_to(case.course_end - case.repeats, until.shape)
+        part = start + (more - periods * case.repeats)
+        later = _integrated(case, part) - _integrated(case, start)
+        whole = np.where(periods > 0, periods * _last_period(case), 0.0)
+        return _integrated(case, np.minimum(until, case.course_end)) + whole + later
+    return _integrated(case, until)
+
+
+def _integrated(case: Case, until: Array) -> Array:
     if not case.shape:
         return running_let_through(case, until.ravel()).reshape(until.shape)
     return np.array(
@@ -207,20 +220,35 @@ def let_through_time(case: Case, fraction: Any) -> Array:
     with np.errstate(invalid="ignore"):
         known = np.isfinite(wanted) & (wanted > 0) & (np.asarray(fraction) <= 1)
     known &= np.isfinite(end) & (not case.repeats)
-    low, high = np.zeros(wanted.shape), np.where(known, end, 0.0)
     if case.source.kind in ("dc", "sine"):
-        for _ in range(_BISECTIONS):
-            middle = (low + high) / 2
-            below = let_through(case, middle) < wanted
-            low, high = np.where(below, middle, low), np.where(below, high, middle)
-        return np.where(known, high, np.nan)
+        return np.where(known, _bracketed(case, wanted, np.where(known, end, 0.0)), np.nan)
     closed, found = case.closed_for("current"), np.full(wanted.shape, np.nan)
     for index in np.ndindex(wanted.shape):
         if not known[index]:
             continue
         one = closed.one(index) if closed.shape else closed
-        found[index] = _section(one, float(wanted[index]), float(high[index]))
+        found[index] = _section(one, float(wanted[index]), float(end[index]))
     return found
+
+
+def _bracketed(case: Case, wanted: Array, end: Array) -> Array:
+    """When the running let-through comes to a value, by false position (Illinois) within a
+    bracket, all loops at once."""
+    low, high = np.zeros(wanted.shape), end
+    below, above = -wanted, let_through(case, end) - wanted
+    for _ in range(_ITERATIONS):
+        with np.errstate(all="ignore"):
+            cut = (low * above - high * below) / (above - below)
+        cut = np.where((cut > low) & (cut < high), cut, (low + high) / 2)
+        value = let_through(case, cut) - wanted
+        left = value < 0
+        # an end that stays is given half its weight
+        above = np.where(left, above / 2, value)
+        below = np.where(left, value, below / 2)
+        low, high = np.where(left, cut, low), np.where(left, high, cut)
+        if np.all((high - low <= 4e-16 * high) | (np.abs(value) <= 1e-14 * np.abs(wanted))):
+            break
+    return np.where(np.abs(below) < np.abs(above), low, high)
 
 
 def _section(case: Case, wanted: float, high: float) -> float:
@@ -335,7 +363,7 @@ def _edges(case: Case, end: float) -> Array:
                         for o in case.source.every_order)])  # fmt: skip
     last = knots[-1]
     if isinstance(shape, Surge):
-        quick, last = max(quick, shape.fast), TIME_CONSTANTS / shape.slow
+        quick, last = max(quick, shape.fast), shape.gone
     with np.errstate(divide="ignore"):
         tail = float(last + TIME_CONSTANTS / eq.slowest)
     until = end if case.source.alternating else min(end, tail)

@@ -2,7 +2,6 @@
 
 from __future__ import annotations
 
-from dataclasses import replace
 from operator import itemgetter
 from typing import TYPE_CHECKING, Any, NamedTuple
 
@@ -48,12 +47,10 @@ def find_peaks(case: Case, elements: tuple[str, ...]) -> dict[str, Peak]:
         Each with the batch's shape.
     """
     source = case.source
-    whole_turn = source.worst_angle and not source.orders and source.window in (None, ANY_ANGLE)
-    if case.either_polarity and np.any(case.capacitor_voltage) and not whole_turn:
-        # at the worst of all angles the other polarity is the other half of the turn
-        one = replace(case, either_polarity=False)
-        other = replace(one, capacitor_voltage=-case.capacitor_voltage)
-        first, second = find_peaks(one, elements), find_peaks(other, elements)
+    # from rest but for the charge the other polarity is the other half of the turn
+    alike = source.worst_angle and not source.orders and not np.any(case.initial_current)
+    if case.polarity_open and not (alike and (source.window or ANY_ANGLE).whole_turn):
+        first, second = (find_peaks(each, elements) for each in case.polarities())
         return {name: _worse(first[name], second[name]) for name in elements}
     if source.shape is not None:
         if isinstance(source.shape, Surge):
@@ -87,7 +84,7 @@ def steady_peak(case: Case, element: str) -> Array:
         return np.full(case.shape, np.nan)
     if not case.source.orders:
         return np.broadcast_to(np.abs(case.signals(element)[0].steady), case.shape)
-    return _waves(case, (element,)).steady_top().reshape(case.shape)
+    return _waves(case, (element,)).steady_top()[0].reshape(case.shape)
 
 
 def _worse(one: Peak, other: Peak) -> Peak:
@@ -154,8 +151,9 @@ class _Waves(NamedTuple):
 
     def highest(self) -> Best:
         """Search the rows that decay; those that never do have a largest value of their own."""
-        top = self.steady_top()
+        top, gap = self.steady_top()
         best = known_before(top)
+        best.gap = np.where(np.isfinite(top), gap, 0.0)
         undamped = self.eq.damping == 0
         lossless, lossy = np.flatnonzero(undamped), np.flatnonzero(~undamped)
         if lossless.size:
@@ -165,9 +163,11 @@ class _Waves(NamedTuple):
             period = 2 * np.pi / self.eq.natural[bounded]
             search(self._rows(bounded, period, top, held=False), free)
             best.value[bounded] += free.value[bounded]
-            best.angle[bounded], best.gap[bounded] = free.angle[bounded], free.gap[bounded]
+            best.angle[bounded] = free.angle[bounded]
+            best.gap[bounded] = np.maximum(best.gap, free.gap)[bounded]
         if lossy.size:
-            search(self._rows(lossy, np.full(lossy.size, np.inf), top), best)
+            forever = np.full(lossy.size, np.inf)
+            search(self._rows(lossy, forever, top * (1 + gap)), best)
         if self.angle is not None:
             best.angle = self.angle
         elif not self._turned:
@@ -183,15 +183,15 @@ class _Waves(NamedTuple):
 
     @property
     def _whole_turn(self) -> bool:
-        return self.window.high - self.window.low >= ANY_ANGLE.high
+        return self.window.whole_turn
 
-    def steady_top(self) -> Array:
-        """Largest magnitude of the steady state, the same at any closing angle."""
+    def steady_top(self) -> tuple[Array, Array]:
+        """Largest magnitude of the steady state, the same at any closing angle, and its gap."""
         sizes = [np.abs(each.steady) for each in self.waves]
         total: Array = np.sum(sizes, axis=0)
         which = np.flatnonzero(np.isfinite(total))
         if len(sizes) == 1 or not which.size:
-            return total
+            return total, np.zeros(total.shape)
         eq, still = self.eq.map(itemgetter(which)), Signal(0.0, 0.0, 0.0)
         steady = Motion(eq, still, self._terms(which, 1.0), real=True)
         best = known_before(np.zeros(total.size))
@@ -199,7 +199,7 @@ class _Waves(NamedTuple):
         period = 2 * np.pi / slowest
         search(Rows(eq, (steady,), which, 0.0 * period, period, fastest), best)
         total[which] = best.value[which]
-        return total
+        return total, best.gap
 
     def _terms(self, which: Index, turn: Any) -> list[Term]:
         """The steady waves as real parts, each turned by its share of the closing angle."""
@@ -298,9 +298,11 @@ def _surge_peaks(case: Case, element: str) -> Peak:
     every = np.arange(voltage.size)
     quickest = np.maximum(eq.natural, surge.fast)
     forever = np.full(every.size, np.inf)
-    search(Rows(eq, (motion,), every, np.zeros(every.size), forever, quickest), best)
-    _as_reached(best, eq, surge, (flat(case.capacitor_voltage), flat(case.initial_current)), w)
-    rounding = _ROUNDING * (motion.amplitude + motion.energy) / best.value
+    start = flat(case.capacitor_voltage), flat(case.initial_current)
+    with np.errstate(divide="ignore", invalid="ignore"):
+        search(Rows(eq, (motion,), every, np.zeros(every.size), forever, quickest), best)
+        _as_reached(best, eq, surge, start, w)
+        rounding = _ROUNDING * (motion.amplitude + motion.energy) / best.value
     best.gap = np.maximum(best.gap, np.where(moved, _MOVED_GAP, rounding))
     value, time, gap = (part.reshape(batch) for part in (best.value, best.time, best.gap))
     return Peak(value, time, gap, np.full(batch, _QUARTER_TURN))

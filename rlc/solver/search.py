@@ -158,7 +158,8 @@ class _Search:
         """Intervals that double in length until nothing but the source is left."""
         rows, eq = self.rows, self.eq.map(itemgetter(which))
         unit, duration = 1.0 / rows.quickest[which], rows.duration[which]
-        floor = gap * np.maximum(self.best.value[rows.group[which]], 1e-9 * self.energy[which])
+        # what is left out may add to what is proved of the rest
+        floor = gap / 4 * np.maximum(self.best.value[rows.group[which]], 1e-9 * self.energy[which])
         rate = eq.slowest
         lasting = any(part.lasting for part in rows.parts)
         whole = np.isfinite(duration) & ((eq.damping == 0) | lasting)

@@ -20,6 +20,9 @@ MOST_KNOTS = 4_000_000
 #: Pulses that a train may have; the loop's states are carried through each of them.
 MOST_PULSES = 100_000
 
+#: After so many time constants nothing is left of a decay but rounding: 4e-18.
+TIME_CONSTANTS = 40.0
+
 # IEC 60060-1: the front is 1/0.6 of the time from 30 % to 90 % of the peak.
 _LOW, _HIGH, _HALF = 0.3, 0.9, 0.5
 
@@ -74,6 +77,8 @@ class Piecewise:
             raise InputError("start", self.start.size, f"has from 1 to {MOST_KNOTS} knots")
         if self.start[0] != 0 or not np.all(np.diff(self.start) > 0):
             raise InputError("start", None, "must rise from zero")
+        if self.period is not None and not self.start[-1] < self.period <= BEYOND:
+            raise InputError("period", self.period, "must be more than the time to the last knot")
         if self.end[-1] != self.level[-1]:
             raise InputError("end", float(self.end[-1]), "the last line must be level")
 
@@ -97,6 +102,11 @@ class Piecewise:
         """When it has come to its final voltage; infinite if it is repeated [s]."""
         return float(self.start[-1]) if self.period is None else np.inf
 
+    @property
+    def gone(self) -> float:
+        """When nothing of its course is left but the final voltage [s]."""
+        return self.settled
+
     def repeated(self, count: int) -> Piecewise:
         """The lines one after another.
 
@@ -110,7 +120,8 @@ class Piecewise:
         Piecewise
             Without a period of its own.
         """
-        assert self.period is not None
+        if self.period is None:
+            raise InputError("period", None, "is missing: there is nothing to repeat")
         start = np.add.outer(np.arange(count) * self.period, self.start).ravel()
         level, end = np.tile(self.level, count), np.tile(self.end, count)
         return Piecewise(self.kind, start, level, end, given=self.given)
@@ -158,6 +169,18 @@ class Surge:
     slow: float
     fast: float
     given: Mapping[str, float | None] = field(default_factory=dict, compare=False)
+
+    def __post_init__(self) -> None:
+        if not abs(self.scale) <= BEYOND:
+            raise InputError("voltage", self.scale, "must be finite, and of some circuit's size")
+        if not 1 / BEYOND <= self.slow < self.fast <= BEYOND:
+            rule = "must be two rates above zero, the slow one first"
+            raise InputError("slow, fast", (self.slow, self.fast), rule)
+
+    @property
+    def gone(self) -> float:
+        """When nothing of it is left but rounding [s]."""
+        return TIME_CONSTANTS / self.slow
 
     @property
     def largest(self) -> float:
@@ -247,6 +270,10 @@ def pulse(
     for name, each in (("rise_time", rise_time), ("fall_time", fall_time)):
         if not each >= 0:
             raise InputError(name, each, "must be zero or more")
+    times = {"width": width, "rise_time": rise_time, "fall_time": fall_time, "period": period}
+    for name, time in times.items():
+        if time and not 1 / BEYOND <= time <= BEYOND:
+            raise InputError(name, time, "must be finite, and of some circuit's size")
     flat = width - (rise_time + fall_time) / 2
     # rounding may leave a triangle with a top of no length
     flat = 0.0 if abs(flat) <= 1e-12 * width else flat
@@ -256,8 +283,8 @@ def pulse(
     lasts = rise_time + flat + fall_time
     if (period is None) != (count == 1):
         raise InputError("period", period, "goes with a count of more than one pulse")
-    if count is not None and not 1 <= count <= MOST_PULSES:
-        raise InputError("count", count, f"must be from 1 to {MOST_PULSES}")
+    if count is not None and not (count == int(count) and 1 <= count <= MOST_PULSES):
+        raise InputError("count", count, f"must be a whole number from 1 to {MOST_PULSES}")
     if period is not None and period <= lasts * (1 + 1e-12):
         raise InputError("period", period, f"must be more than the pulse lasts, {lasts:g} s")
     lines = [

@@ -16,6 +16,7 @@ from rlc.solver.shapes import Piecewise, Surge
 Array = NDArray[np.float64]
 
 _QUARTER_TURN = np.pi / 2
+_ZOOMS = 4
 
 #: The highest order of a harmonic; far above it a supply's voltage is no longer given so.
 MOST_ORDER = 1000
@@ -50,6 +51,11 @@ class Window(NamedTuple):
 
     low: float
     high: float
+
+    @property
+    def whole_turn(self) -> bool:
+        """Whether every angle is possible."""
+        return self.high - self.low >= 2 * np.pi
 
 
 #: A switch that closes at any moment.
@@ -107,15 +113,28 @@ class Source:
             raise InputError("frequency", float(np.min(self.frequency)), "must be zero or more")
         if self.window is not None and not 0 < self.window.high - self.window.low <= 2 * np.pi:
             raise InputError("window", tuple(self.window), "must be above zero and at most a turn")
+        self._refuse_contradictions()
         seen: set[int] = set()
         for order in self.orders:
-            if not 2 <= order.number <= MOST_ORDER:
-                raise InputError("order", order.number, f"must be from 2 to {MOST_ORDER}")
+            if not (order.number == int(order.number) and 2 <= order.number <= MOST_ORDER):
+                rule = f"must be a whole number from 2 to {MOST_ORDER}"
+                raise InputError("order", order.number, rule)
             if order.number in seen:
                 raise InputError("order", order.number, "is given twice")
             if not (0 <= order.share <= BEYOND and np.isfinite(order.phase)):
                 raise InputError("share", order.share, "must be zero or more and finite")
             seen.add(order.number)
+
+    def _refuse_contradictions(self) -> None:
+        if self.shape is not None:
+            if np.any(self.frequency > 0) or self.orders or self.worst_angle:
+                raise InputError("shape", self.shape.kind, "has no frequency, order or angle")
+            if np.any(self.amplitude != self.shape.final):
+                raise InputError("amplitude", self.amplitude.tolist(), "is not the shape's last")
+        elif self.orders and not np.all(self.frequency > 0):
+            raise InputError("orders", None, "need a frequency above zero")
+        if self.window is not None and not self.worst_angle:
+            raise InputError("window", tuple(self.window), "does not go with a closing angle")
 
     @property
     def kind(self) -> str:
@@ -159,7 +178,13 @@ class Source:
             return np.asarray(self.shape.largest)
         if not self.orders:
             return np.abs(np.asarray(self.amplitude))
-        turn = np.linspace(0.0, 2 * np.pi, 64 * max(order.number for order in self.orders))
+        number = 64 * max(order.number for order in self.orders)
+        turn = np.linspace(0.0, 2 * np.pi, number)
+        for _ in range(_ZOOMS):
+            # ever finer around the best point so far
+            best = turn[np.argmax(np.abs(self.per_fundamental(turn)))]
+            apart = turn[1] - turn[0]
+            turn = np.linspace(best - apart, best + apart, 65)
         return np.abs(self.amplitude) * float(np.max(np.abs(self.per_fundamental(turn))))
 
     def per_fundamental(self, angle: Array) -> Array:

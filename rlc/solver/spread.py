@@ -20,6 +20,8 @@ Array = NDArray[np.float64]
 
 CONFIDENCE = 0.95
 MOST_SAMPLES = 1_000_000
+# Orders of a train of pulses that are looked at: the amplitude of later ones is below 1 %.
+_TRAIN_ORDERS = 40
 
 
 class Yield(NamedTuple):
@@ -265,22 +267,29 @@ def _resonances(case: Case, parts: dict[str, Part]) -> Iterator[dict[str, float]
 
     A resonance inside the tolerances is worse than any corner, and corners miss it.
     """
-    if not case.source.alternating:
-        return
 
     def ends(field: str) -> tuple[float, ...]:
         part = parts.get(field)
         return (part.low, part.high) if part else (float(getattr(case.loop, field)),)
 
     extra = float(case.loop.source_inductance)
-    for order in case.source.every_order:
-        squared = (2 * np.pi * order.number * float(case.source.frequency)) ** 2
+    for frequency in _driving_frequencies(case):
+        squared = (2 * np.pi * frequency) ** 2
         for resistance, inductance in product(ends("resistance"), ends("inductance")):
             capacitance = 1 / (squared * (inductance + extra))
             yield from _between(parts, resistance, inductance, capacitance)
         for resistance, capacitance in product(ends("resistance"), ends("capacitance")):
             inductance = 1 / (squared * capacitance) - extra
             yield from _between(parts, resistance, inductance, capacitance)
+
+
+def _driving_frequencies(case: Case) -> list[float]:
+    """Of a source that goes on: its own and its harmonics; a train of pulses holds all orders."""
+    source, shape = case.source, case.source.shape
+    if source.alternating:
+        return [order.number * float(source.frequency) for order in source.every_order]
+    period = shape.given.get("period") if shape is not None else None
+    return [] if not period else [number / period for number in range(1, _TRAIN_ORDERS + 1)]
 
 
 def _between(

@@ -13,13 +13,11 @@ from rlc.solver.lines import balance
 from rlc.solver.peaking import steady_peak
 from rlc.solver.peaks import first_extremum
 from rlc.solver.search import PROVED_GAP
-from rlc.solver.shapes import Piecewise, Surge
+from rlc.solver.shapes import TIME_CONSTANTS, Piecewise
 
 Array = NDArray[np.float64]
 
 _ITERATIONS = 100
-# After so many time constants nothing is left of free motion but rounding: 4e-18.
-TIME_CONSTANTS = 40.0
 
 
 class Transient(NamedTuple):
@@ -66,7 +64,7 @@ def transient(case: Case, element: str = "capacitor") -> Transient:
     if isinstance(shape, Piecewise) and not case.repeats:
         w = closed.loop.weights(element)
         a, b, c, d = closed.equation.matrix
-        voltage, current = (part[..., -1] for part in closed.course.free)
+        voltage, current = closed.last_knot.free
         value = w.capacitor_voltage * voltage + w.current * current
         slope = w.capacitor_voltage * (a * voltage + b * current)
         slope = slope + w.current * (c * voltage + d * current)
@@ -103,10 +101,7 @@ def settled(case: Case) -> Array:
     """
     if case.repeats:
         return np.full(case.shape, case.course_end)
-    shape = case.source.shape
-    end = shape.settled if isinstance(shape, Piecewise) else 0.0
-    if isinstance(shape, Surge):
-        end = TIME_CONSTANTS / shape.slow
+    end = case.source.shape.gone if case.source.shape is not None else 0.0
     with np.errstate(divide="ignore"):
         return end + TIME_CONSTANTS / case.equation.slowest
 

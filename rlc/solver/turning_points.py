@@ -13,8 +13,32 @@ from rlc.solver.shapes import Surge
 
 Array = NDArray[np.float64]
 
-_STEPS_PER_CYCLE, _FEWEST_STEPS, _MOST_STEPS = 64, 1024, 400_000
+_STEPS_PER_CYCLE, _FEWEST_STEPS, _MOST_STEPS = 64, 1024, 200_000
 _SECTIONS, _SECTIONINGS = 32, 9
+
+
+def longest_stepped(case: Case) -> float:
+    """Up to when even steps are a 64th of the shortest period.
+
+    Parameters
+    ----------
+    case : Case
+        One loop, shape ().
+
+    Returns
+    -------
+    float
+        Since closing; infinite if nothing swings [s].
+    """
+    highest = _highest_frequency(case)
+    return _MOST_STEPS / (highest * _STEPS_PER_CYCLE) if highest else np.inf
+
+
+def _highest_frequency(case: Case) -> float:
+    """Of ringing and source [Hz]."""
+    source, eq = case.source, case.equation
+    driven = max(order.number for order in source.every_order) * float(source.frequency)
+    return max(driven, float(np.where(eq.underdamped, eq.root[0], 0.0)) / (2 * np.pi))
 
 
 def steps_until(case: Case, end: float) -> Array:
@@ -25,21 +49,19 @@ def steps_until(case: Case, end: float) -> Array:
     case : Case
         One loop, shape ().
     end : float
-        The last time [s].
+        The last time, up to :func:`longest_stepped`; beyond that steps are longer [s].
 
     Returns
     -------
     Array
         A 64th of the shortest period, ringing, source or surge, and finer after closing and
-        the source's knots; at most 400 000 even steps [s].
+        the source's knots [s].
     """
-    source, eq = case.source, case.equation
-    highest = max(order.number for order in source.every_order) * float(source.frequency)
-    ringing = float(np.where(eq.underdamped, eq.root[0], 0.0)) / (2 * np.pi)
-    quick = float(eq.quickest)
-    if isinstance(source.shape, Surge):
-        quick = max(quick, source.shape.fast)
-    steps = int(np.clip(end * max(ringing, highest) * _STEPS_PER_CYCLE, _FEWEST_STEPS, _MOST_STEPS))
+    shape, quick = case.source.shape, float(case.equation.quickest)
+    if isinstance(shape, Surge):
+        quick = max(quick, shape.fast)
+    cycles = end * _highest_frequency(case)
+    steps = int(np.clip(np.ceil(cycles * _STEPS_PER_CYCLE), _FEWEST_STEPS, _MOST_STEPS))
     # An overdamped current turns within its fast time constant, long before the slow one.
     start = min(1e-9 * end, 1e-3 / quick)
     fine = np.geomspace(start, end, _FEWEST_STEPS)

@@ -73,6 +73,11 @@ def states(case: Case, time: Array, closing_angle: Any) -> tuple[Array, Array, A
         Shape of the batch, then (n,); the capacitor's behind its series resistance [V], [V], [A].
     """
     source, shape = case.source, case.source.shape
+    if case.repeats:
+        # beyond the end of the train its last, steady period again and again
+        beyond = np.mod(time - case.course_end, case.repeats)
+        late = case.course_end - case.repeats + beyond
+        time = np.where(time < case.course_end, time, late)
     if case.lines is not None:
         return case.lines.at(time), *case.course.at(time)
     eq = case.equation.column()
