@@ -330,7 +330,7 @@ class Findings:
         if math.isfinite(float(REGISTER["let_through"](self.case))):
             return None
         shape = self.case.source.shape
-        end = shape.settled if shape is not None else 0.0
+        end = shape.gone if shape is not None else 0.0
         return end + _LET_THROUGH_TIME_CONSTANTS * float(REGISTER["time_constant"](self.case))
 
     def let_through(self, until: float | None) -> Size:

@@ -14,7 +14,7 @@ from rlc.render.cautions import Caution
 from rlc.render.known import PEAKS, largest_among, peak_of
 from rlc.render.limits import Passing
 from rlc.render.states import by_order
-from rlc.solver import results
+from rlc.solver import totals
 from rlc.solver.case import Case
 from rlc.solver.closing import Closings
 from rlc.solver.extrema import Extrema
@@ -199,7 +199,7 @@ def elements(case: Case) -> dict[str, Any]:
         By element: amplitude, a peak value [V], and phase against the source [rad]; None for a
         train of pulses, which has none.
     """
-    level = float(results.level(case))
+    level = float(totals.level(case))
     phasors = {name: complex(case.steady.across(name)) for name in ELEMENTS}
     return {
         name: {

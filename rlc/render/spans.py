@@ -129,7 +129,7 @@ def span_of(case: Case, most_cycles: float) -> Span:
 
 def _settled(case: Case) -> float:
     assert isinstance(case.source.shape, Piecewise)
-    return case.source.shape.settled
+    return case.source.shape.gone
 
 
 def ringing_of(case: Case) -> float:
@@ -151,7 +151,7 @@ def _course(case: Case) -> tuple[float, float]:
             pulses = shape.start.size // lines
             if pulses > _MOST_PULSES and np.all(shape.end[lines:] == shape.end[:-lines]):
                 return 0.0, float(shape.start[lines])
-    return shape.settled, 0.0
+    return shape.gone, 0.0
 
 
 def _eventful(case: Case, end: float, tail: float) -> tuple[float, float, str]:

@@ -13,7 +13,7 @@ from rlc.render.tables import shown
 from rlc.solver.case import Case
 from rlc.solver.loop import ELEMENTS
 from rlc.solver.quantities import REGISTER
-from rlc.solver.results import steady_orders
+from rlc.solver.totals import steady_orders
 
 _ENDS = {
     "dc": "",

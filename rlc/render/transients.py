@@ -179,7 +179,7 @@ def _own_end(case: Case) -> float:
     shape = case.source.shape
     if isinstance(shape, Surge):
         return _TAIL / shape.slow
-    return shape.settled if isinstance(shape, Piecewise) and not case.repeats else 0.0
+    return shape.gone if isinstance(shape, Piecewise) and not case.repeats else 0.0
 
 
 def _draw_loops(panel: Axes, closed: Case, trace: Trace, span: Span, batch: Case) -> list[float]:

@@ -10,12 +10,13 @@ import numpy as np
 from numpy.typing import NDArray
 
 from rlc.errors import InputError
-from rlc.solver.course import Course, LastKnot, at_last_knot, follow
+from rlc.solver.carried import course_of, last_knot_of, lines_of, train_end
+from rlc.solver.course import Course, LastKnot
 from rlc.solver.equation import Equation, angular, equation_of
 from rlc.solver.loop import Loop
 from rlc.solver.peaking import find_peaks
 from rlc.solver.peaks import Peak, Signal, constant_source_extrema
-from rlc.solver.shapes import MOST_PULSES, Piecewise
+from rlc.solver.shapes import Piecewise
 from rlc.solver.source import ANY_ANGLE, Order, Source
 from rlc.solver.steady import SteadyState, steady_state
 from rlc.solver.waveforms import Waveforms, waveforms
@@ -25,8 +26,6 @@ Array = NDArray[np.float64]
 _PEAKED = ("current", "current_rate", "capacitor", "inductor", "dielectric")
 _FEW_LOOPS = 32
 _ANGLE = 1e-12
-# A train of pulses is steady when so many time constants have passed: 1e-12 is left.
-_STEADY = float(np.log(1e12))
 
 
 @dataclass(frozen=True, eq=False)
@@ -260,23 +259,8 @@ class Case:
 
     @cached_property
     def lines(self) -> Piecewise | None:
-        """The source's straight lines, a train that is to become steady repeated so often.
-
-        Raises
-        ------
-        InputError
-            If that takes more pulses than a course may have.
-        """
-        shape = self.source.shape
-        if not isinstance(shape, Piecewise) or shape.period is None:
-            return shape if isinstance(shape, Piecewise) else None
-        with np.errstate(divide="ignore"):
-            needed = np.max(_STEADY / (self.equation.slowest * shape.period))
-        if not needed < MOST_PULSES:
-            rule = f"needs more than {MOST_PULSES} pulses, for little is lost in each"
-            hint = "State a count of pulses"
-            raise InputError("count", "until steady", rule, hint)
-        return shape.repeated(int(np.ceil(needed)) + 1)
+        """The source's straight lines, a train that is to become steady repeated so often."""
+        return lines_of(self)
 
     @property
     def repeats(self) -> float:
@@ -287,31 +271,17 @@ class Case:
     @property
     def course_end(self) -> float:
         """When the last line of such a train ends; infinite for other sources [s]."""
-        if self.lines is None or not self.repeats:
-            return np.inf
-        shape = self.source.shape
-        assert isinstance(shape, Piecewise)
-        return self.lines.start.size // shape.start.size * self.repeats
+        return train_end(self)
 
     @cached_property
     def course(self) -> Course:
         """The loop carried through the source's straight lines."""
-        assert self.lines is not None
-        return follow(self.equation.column(), self.lines, *self._starts)
+        return course_of(self)
 
     @cached_property
     def last_knot(self) -> LastKnot:
         """Where the last line of the source finds the loop."""
-        assert self.lines is not None
-        return at_last_knot(self.equation.column(), self.lines, *self._starts)
-
-    @property
-    def _starts(self) -> tuple[Array, Array]:
-        voltage, current = (
-            np.broadcast_to(part, self.shape)[..., np.newaxis]
-            for part in (self.capacitor_voltage, self.initial_current)
-        )
-        return voltage, current
+        return last_knot_of(self)
 
     def closing_angle_for(self, element: str) -> Array:
         """The closing angle: as given, or the worst one for this element.

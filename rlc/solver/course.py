@@ -208,8 +208,12 @@ def at_last_knot(eq: Equation, shape: Piecewise, voltage: Array, current: Array)
 
     Parameters
     ----------
-    eq, shape, voltage, current
-        As for :func:`follow`.
+    eq : Equation
+        A batch of loops, with one more axis of length one at the end.
+    shape : Piecewise
+        The source, without repetition.
+    voltage, current : Array
+        States at closing; broadcast against the batch with its last axis [V], [A].
 
     Returns
     -------

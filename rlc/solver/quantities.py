@@ -12,7 +12,7 @@ from __future__ import annotations
 import numpy as np
 
 from rlc.errors import InputError
-from rlc.solver import results
+from rlc.solver import results, totals
 from rlc.solver.passed import let_through_time
 from rlc.solver.quantity import Quantity
 from rlc.solver.steady import capacitor_voltage_maximum, half_power_frequencies
@@ -99,88 +99,88 @@ _ROWS: tuple[Quantity, ...] = (
         "impedance", "|Z|", "resistance", "steady", "magnitude",
         "Magnitude of all that the source's inner voltage meets, its own impedance included.",
         "|R + j(omega L - 1/(omega C))| without a load", _AC,
-        lambda c, at, across: np.abs(results.steady_at(c, at).impedance), "frequency",
+        lambda c, at, across: np.abs(totals.steady_at(c, at).impedance), "frequency",
     ),
     Quantity(
         "impedance_phase", "arg Z", "angle", "steady", "inductive if positive",
         "Angle by which the source voltage leads the current.", "arg Z", _AC,
-        lambda c, at, across: np.angle(results.steady_at(c, at).impedance), "frequency",
+        lambda c, at, across: np.angle(totals.steady_at(c, at).impedance), "frequency",
     ),
     Quantity(
         "current", "I", "current", "steady", f"rms, {_ALL}", "Loop current.", "V/|Z|", _AC,
-        lambda c, at, across: results.current(c, at), "frequency",
+        lambda c, at, across: totals.current(c, at), "frequency",
     ),
     Quantity(
         "current_amplitude", "I_pk", "current", "steady", "peak, steady state, fundamental",
         "Amplitude of the loop current when the transient has died.", "V_pk/|Z|", _AC,
-        lambda c, at, across: np.abs(results.phasor_current(c, at)), "frequency",
+        lambda c, at, across: np.abs(totals.phasor_current(c, at)), "frequency",
     ),
     Quantity(
         "current_phase", "phi_i", "angle", "steady",
         "lags the source if negative; of the fundamental",
         "Phase of the current against the source.", "-arg Z", _AC,
-        lambda c, at, across: np.angle(results.steady_at(c, at).current), "frequency",
+        lambda c, at, across: np.angle(totals.steady_at(c, at).current), "frequency",
     ),
     Quantity(
         "resistor_voltage", "V_R", "voltage", "steady", f"rms, {_ALL}",
         "Voltage across the resistor.", "R I", _AC,
-        lambda c, at, across: results.current(c, at) * c.loop.resistance, "frequency",
+        lambda c, at, across: totals.current(c, at) * c.loop.resistance, "frequency",
     ),
     Quantity(
         "inductor_voltage", "V_L", "voltage", "steady",
         f"rms, winding resistance included; {_ALL}",
         "Voltage across the inductor's terminals.", "|R_w + j omega L| I", _AC,
-        lambda c, at, across: results.rms(c, at, lambda steady: steady.inductor), "frequency",
+        lambda c, at, across: totals.rms(c, at, lambda steady: steady.inductor), "frequency",
     ),
     Quantity(
         "capacitor_voltage", "V_C", "voltage", "steady",
         f"rms, series resistance included; {_ALL}",
         "Voltage across the capacitor's terminals.", "|r + 1/(j omega C)| I without a load", _AC,
-        lambda c, at, across: results.rms(c, at, lambda steady: steady.capacitor), "frequency",
+        lambda c, at, across: totals.rms(c, at, lambda steady: steady.capacitor), "frequency",
     ),
     Quantity(
         "capacitor_voltage_amplitude", "V_C,pk", "voltage", "steady",
         "peak, steady state, fundamental",
         "Amplitude of the capacitor's terminal voltage when the transient has died.",
         "sqrt(2) V_C for a sine", _AC,
-        lambda c, at, across: results.level(c) * np.abs(results.steady_at(c, at).capacitor),
+        lambda c, at, across: totals.level(c) * np.abs(totals.steady_at(c, at).capacitor),
         "frequency",
     ),
     Quantity(
         "resistor_power", "P_R", "power", "steady", f"mean, {_ALL}", "Heat in the resistor alone.",
-        "R I^2", _AC, lambda c, at, across: results.resistor_power(c, at), "frequency",
+        "R I^2", _AC, lambda c, at, across: totals.resistor_power(c, at), "frequency",
     ),
     Quantity(
         "real_power", "P", "power", "steady", f"mean, all losses of the loop; {_ALL}",
         "Power that the source delivers.", "V I cos(phi_i)", _AC,
-        lambda c, at, across: results.real_power(c, at), "frequency",
+        lambda c, at, across: totals.real_power(c, at), "frequency",
     ),
     Quantity(
         "reactive_power", "Q_r", "reactive_power", "steady",
         "inductive if positive; of the fundamental",
         "Reactive power that the source delivers.", "-V I sin(phi_i)", _AC,
-        lambda c, at, across: results.reactive_power(c, at), "frequency",
+        lambda c, at, across: totals.reactive_power(c, at), "frequency",
     ),
     Quantity(
         "apparent_power", "S", "apparent_power", "steady", f"rms times rms, {_ALL}",
         "Source voltage times current.", "V I", _AC,
-        lambda c, at, across: results.apparent_power(c, at), "frequency",
+        lambda c, at, across: totals.apparent_power(c, at), "frequency",
     ),
     Quantity(
         "power_factor", "cos phi", "number", "steady", f"unsigned, {_ALL}",
         "Real over apparent power.", "P/S", _AC,
-        lambda c, at, across: results.power_factor(c, at), "frequency",
+        lambda c, at, across: totals.power_factor(c, at), "frequency",
     ),
     Quantity(
         "voltage_magnification", "m", "number", "steady", "amplitude over amplitude",
         "Capacitor voltage over source voltage; near Q at resonance.", "|V_C/V|", _AC,
-        lambda c, at, across: np.abs(results.steady_at(c, at).capacitor), "frequency",
+        lambda c, at, across: np.abs(totals.steady_at(c, at).capacitor), "frequency",
     ),
     Quantity(
         "gain", "|H|", "number", "steady", "amplitude over amplitude",
         "Voltage across the named element (the capacitor if none is named) over the source's.",
         "|V_element/V|", _AC,
-        lambda c, at, across: np.abs(results.steady_at(c, at).across(across or "capacitor")),
+        lambda c, at, across: np.abs(totals.steady_at(c, at).across(across or "capacitor")),
         "frequency", True,
     ),
     Quantity(

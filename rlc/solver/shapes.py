@@ -66,10 +66,8 @@ class Piecewise:
     def __post_init__(self) -> None:
         for name in ("start", "level", "end"):
             value = np.asarray(getattr(self, name), dtype=np.float64)
-            if not np.all(np.isfinite(value)):
-                raise InputError(name, None, "must be finite")
-            if np.any(np.abs(value) > BEYOND):
-                raise InputError(name, None, f"is beyond any circuit, more than {BEYOND:g}")
+            if not np.all(np.abs(value) <= BEYOND):
+                raise InputError(name, None, "must be finite, and of some circuit's size")
             object.__setattr__(self, name, value)
         if not self.start.shape == self.level.shape == self.end.shape or self.start.ndim != 1:
             raise InputError("start, level, end", None, "must be three rows of one length")
@@ -98,14 +96,9 @@ class Piecewise:
         return np.append((self.end - self.level)[:-1] / np.diff(self.start), 0.0)
 
     @property
-    def settled(self) -> float:
+    def gone(self) -> float:
         """When it has come to its final voltage; infinite if it is repeated [s]."""
         return float(self.start[-1]) if self.period is None else np.inf
-
-    @property
-    def gone(self) -> float:
-        """When nothing of its course is left but the final voltage [s]."""
-        return self.settled
 
     def repeated(self, count: int) -> Piecewise:
         """The lines one after another.
@@ -119,6 +112,11 @@ class Piecewise:
         -------
         Piecewise
             Without a period of its own.
+
+        Raises
+        ------
+        InputError
+            If it has no period.
         """
         if self.period is None:
             raise InputError("period", None, "is missing: there is nothing to repeat")
@@ -159,11 +157,15 @@ class Surge:
         alpha and beta, 0 < alpha < beta [1/s].
     given : mapping of str to float
         What it was made from, by the names of :func:`surge` [s], [V].
+
+    Raises
+    ------
+    InputError
+        If a value is out of its range.
     """
 
     kind: ClassVar[str] = "surge"
     final: ClassVar[float] = 0.0
-    settled: ClassVar[float] = np.inf
 
     scale: float
     slow: float
@@ -267,11 +269,10 @@ def pulse(
     """
     if not width > 0:
         raise InputError("width", width, "must be more than zero")
-    for name, each in (("rise_time", rise_time), ("fall_time", fall_time)):
-        if not each >= 0:
-            raise InputError(name, each, "must be zero or more")
     times = {"width": width, "rise_time": rise_time, "fall_time": fall_time, "period": period}
     for name, time in times.items():
+        if time is not None and not time >= 0:
+            raise InputError(name, time, "must be zero or more")
         if time and not 1 / BEYOND <= time <= BEYOND:
             raise InputError(name, time, "must be finite, and of some circuit's size")
     flat = width - (rise_time + fall_time) / 2
@@ -294,10 +295,7 @@ def pulse(
     ]
     lengths, level, end = zip(*lines, strict=True)
     start = np.cumsum([0.0, *lengths])
-    given = {
-        "voltage": voltage, "width": width, "rise_time": rise_time, "fall_time": fall_time,
-        "period": period, "count": count,
-    }  # fmt: skip
+    given = times | {"voltage": voltage, "count": count}
     one = Piecewise("pulse", start, np.array([*level, 0.0]), np.array([*end, 0.0]), period, given)
     if count is None:
         return one
@@ -325,9 +323,8 @@ def recorded(time: Any, voltage: Any) -> Piecewise:
     """
     time, voltage = (np.asarray(each, dtype=np.float64) for each in (time, voltage))
     if time.shape != voltage.shape or time.ndim != 1 or time.size < 2:
-        raise InputError(
-            "time, voltage", None, "must be two rows of one length, two points or more"
-        )
+        rule = "must be two rows of one length, two points or more"
+        raise InputError("time, voltage", None, rule)
     if not (np.all(np.isfinite(time)) and np.all(np.isfinite(voltage))):
         raise InputError("time, voltage", None, "must be finite")
     steps = np.diff(time)

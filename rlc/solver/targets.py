@@ -156,7 +156,7 @@ class Fuse:
         source, until = case.source, None
         held = not source.alternating and bool(np.any(source.amplitude))
         if held and bool(np.any(case.loop.load_conductance > 0)):
-            end = 0.0 if source.shape is None else source.shape.settled
+            end = 0.0 if source.shape is None else source.shape.gone
             until = end + _PULSE_TIME_CONSTANTS * float(REGISTER["time_constant"](case))
         allowed = self.share * self.melting_let_through
         return Target("let_through", maximum=allowed, at=until, rating="fuse.melting_let_through")

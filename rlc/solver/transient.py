@@ -71,7 +71,7 @@ def transient(case: Case, element: str = "capacitor") -> Transient:
         rest_voltage, rest_current = balance(closed.equation)
         rest = w.capacitor_voltage * rest_voltage + w.current * rest_current + w.source
         size = source.largest * np.abs(rest)
-        return Transient(value, slope, size, shape.settled)
+        return Transient(value, slope, size, shape.gone)
     if shape is not None:
         unknown = np.full(case.shape, np.nan)
         return Transient(unknown, unknown, unknown)

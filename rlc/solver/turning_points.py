@@ -112,9 +112,9 @@ def narrowed(
     low, high : Array
         Shape (n,), times before and after the change [s].
     state : callable
-        What changes, from times of shape (m,) to values of shape (m,) [any unit].
+        What changes, a sign or whether something holds, from times of shape (m,) [s].
     before : Array
-        Shape (n,), its value at `low` [any unit].
+        Shape (n,), what it is at `low` [1].
 
     Returns
     -------

@@ -155,7 +155,7 @@ def test_largest_value_of_a_source_with_harmonics():
     ("make", "sentence"),
     [
         (lambda: Source(3.0, shape=shapes.ramp(1.0, 1.0)), "amplitude = 3.0: is not the shape's"),
-        (lambda: Source(1.0, 50.0, shape=shapes.ramp(1.0, 1.0)), "shape = 'ramp': has no frequency"),
+        (lambda: Source(1.0, 50.0, shape=shapes.ramp(1.0, 1.0)), "shape = 'ramp': has no"),
         (lambda: Source(1.0, orders=(Order(3, 0.1),)), "orders: need a frequency above zero"),
         (lambda: shapes.Surge(1.0, 2.0, 1.0), "slow, fast = (2.0, 1.0): must be two rates"),
         (lambda: shapes.Surge(np.inf, 1.0, 2.0), "voltage = inf: must be finite"),
