@@ -109,13 +109,13 @@ def limits(found: Iterable[Passing], case: Case) -> Table:
     worst = ", each at its worst closing" if open_closing or case.either_polarity else ""
     table = new_table(
         f"Limits in time, nominal parts{worst}",
-        "of", "limit", "first exceeded at", "in all", "what it is", sentence=True,
+        "of", "limit", "above from", "in all", "what it is", sentence=True,
     )  # fmt: skip
     for row in found:
         _, words, kind = SIGNALS[row.element]
         never = row.lasts == 0
         first = "never" if never else show(row.first, "time")
-        lasts = "again and again" if math.isinf(row.lasts) else show(row.lasts, "time")
+        lasts = "lasting" if math.isinf(row.lasts) else show(row.lasts, "time")
         if math.isnan(row.lasts):
             lasts = "not known"
         table.add_row(words, show(row.limit, kind), first, "-" if never else lasts, row.words)

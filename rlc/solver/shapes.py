@@ -19,7 +19,6 @@ Array = NDArray[np.float64]
 MOST_KNOTS = 4_000_000
 #: Pulses that a train may have; the loop's states are carried through each of them.
 MOST_PULSES = 100_000
-
 #: After so many time constants nothing is left of a decay but rounding: 4e-18.
 TIME_CONSTANTS = 40.0
 

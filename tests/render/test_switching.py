@@ -170,8 +170,8 @@ def test_limits_of_a_lossless_swing() -> None:
     at = math.acos(-0.2)  # 120 V: 1 - cos t = 1.2
     assert rows(switching.limits(found, case)) == [
         ["current", "200 A", "never", "-", "target"],
-        ["capacitor voltage", "150 V", "2.094 s", "again and again", "capacitor.rated_voltage"],
-        ["capacitor voltage", "120 V", f"{at:.4g} s", "again and again", "extra-low voltage, dc"],
+        ["capacitor voltage", "150 V", "2.094 s", "lasting", "capacitor.rated_voltage"],
+        ["capacitor voltage", "120 V", f"{at:.4g} s", "lasting", "extra-low voltage, dc"],
     ]
     numbers = machine.exceeded(found)
     assert numbers[0] == {
