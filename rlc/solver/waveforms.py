@@ -118,6 +118,14 @@ def waveforms(case: Case, time: Array, closing_angle: Any) -> Waveforms:
     -------
     Waveforms
         Shape of the batch, then (n,).
+
+    Notes
+    -----
+    Worst error of capacitor voltage and current against 50 digits, relative to the running peak,
+    for quality factors 1e-4 to 1e6, up to 1e4 natural periods and sources within four decades of
+    the loop: constant 1e-15, sine 1e-14 (at resonance without losses), harmonics 4e-13 without
+    losses and 2e-13 else, ramp 1e-15, pulses 2e-13 without losses and 5e-15 else, surge 1e-14,
+    recorded 5e-15. ``tests/benchmarks/accuracy.py`` prints it by regime.
     """
     source, state, current = states(case, time, closing_angle)
     source = source + 0.0 * current
