@@ -154,6 +154,9 @@ class _Waves(NamedTuple):
         top, gap = self.steady_top()
         best = known_before(top)
         best.gap = np.where(np.isfinite(top), gap, 0.0)
+        if not self._whole_turn:
+            # where a peak is only approached any possible angle will do
+            best.angle += (self.window.low + self.window.high) / 2
         undamped = self.eq.damping == 0
         lossless, lossy = np.flatnonzero(undamped), np.flatnonzero(~undamped)
         if lossless.size:
@@ -240,8 +243,7 @@ class _Waves(NamedTuple):
                 zero = np.zeros(which.size)
                 turns = (*self.numbers, 0)
                 limits = (self.window.low + zero, self.window.high + zero)
-                if held and self._whole_turn:
-                    frame = self.omega[which]
+                frame = self.omega[which] if held else None
         quickest = np.maximum(eq.natural, max(self.numbers) * self.omega[which] * held)
         start = np.zeros(which.size)
         held_top = top[which] if held else None

@@ -35,9 +35,9 @@ class Rows:
     window : (Array, Array), optional
         Shape (n,) each: limits of the closing angle, with `turns` [rad].
     frame : Array, optional
-        Shape (n,), the source's angular frequency if every closing angle is possible, with
-        `turns`. The source's angle at the time is then searched in place of that at closing:
-        along a line on which it is constant late moments differ by free motion alone [rad/s].
+        Shape (n,), the source's angular frequency, with `turns`. The source's angle at the time
+        is then searched in place of that at closing: along a line on which it is constant late
+        moments differ by free motion alone [rad/s].
     """
 
     eq: Equation

@@ -22,7 +22,7 @@ import numpy as np
 from numpy.typing import NDArray
 
 from rlc.solver.equation import Equation, kernels
-from rlc.solver.motion import Array, Index, Moved
+from rlc.solver.motion import Array, Bounds, Index, Moved
 from rlc.solver.rows import Rows, framed, framed_bounds, together
 
 #: Relative gap between the value found and the proved upper bound.
@@ -115,6 +115,7 @@ class _Search:
         zero = np.zeros(rows.group.size)
         low, high = rows.window or (zero, zero)
         self.angle, self.swing = (low + high) / 2, (high - low) / 2
+        self.frame = zero if rows.frame is None else rows.frame
         self.energy = np.sum([part.energy for part in rows.parts], axis=0)
         amplitude = np.sum([part.amplitude for part in rows.parts], axis=0)
         self.top = amplitude if rows.top is None else np.minimum(amplitude, rows.top)
@@ -180,7 +181,18 @@ class _Search:
             return _Cells(which[:0], *(unit[:0] for _ in range(5)))
         row, middle, half = (np.concatenate(part) for part in zip(*found, strict=True))
         bound = np.full(row.size, np.inf)
-        return _Cells(row, middle, half, self.angle[row], self.swing[row], bound)
+        # what closes within the window has turned on by then
+        seen = self.angle[row] + self.frame[row] * middle
+        swing = np.minimum(self.swing[row] + self.frame[row] * half, np.pi)
+        return _Cells(row, middle, half, seen, swing if self._turned else 0.0 * seen, bound)
+
+    def _closing(self, which: Index, time: Array, angle: Array) -> tuple[Array, Array]:
+        """Closing angle of an angle as it is searched, less the window's middle; and the same
+        cut to the window."""
+        away = angle - self.frame[which] * time - self.angle[which]
+        if self.rows.frame is not None:
+            away = np.mod(away + np.pi, 2 * np.pi) - np.pi
+        return away, np.clip(away, -self.swing[which], self.swing[which])
 
     def _moved(self, which: Index, time: Array, eq: Equation) -> Sequence[Moved]:
         kernel = kernels(eq, time)
@@ -194,9 +206,9 @@ class _Search:
         return np.abs(together(self.rows.turns, seen, angle)[0])
 
     def _record(self, which: Index, time: Array, angle: Array) -> None:
-        size = self._size(
-            which, time, angle, self._moved(which, time, self.eq.map(itemgetter(which)))
-        )
+        """Record values at given times and closing angles."""
+        moved = self._moved(which, time, self.eq.map(itemgetter(which)))
+        size = self._size(which, time, angle + self.frame[which] * time, moved)
         self._keep(which, time, angle, size)
 
     def _keep(self, which: Index, time: Array, angle: Array, size: Array) -> None:
@@ -209,8 +221,6 @@ class _Search:
             np.maximum.at(best.value, group, size)
             top = size >= best.value[group]
             group, which, time, angle = group[top], which[top], time[top], angle[top]
-            if rows.frame is not None:
-                angle = angle - rows.frame[which] * time
             best.time[group] = rows.start[which] + time
             best.angle[group], best.row[group] = angle, which
 
@@ -225,7 +235,7 @@ class _Search:
             np.where(side, 0.0, width)[:, np.newaxis] * steps
             for side, width in ((across, kept.half), (~across, kept.swing))
         )
-        return _Cells(
+        cut = _Cells(
             np.repeat(kept.which, 4),
             (kept.at[:, np.newaxis] + along).ravel(),
             np.repeat(np.where(across, kept.half, kept.half / 4), 4),
@@ -233,6 +243,11 @@ class _Search:
             np.repeat(np.where(across, kept.swing / 4, kept.swing), 4),
             np.repeat(top[keep], 4),
         )
+        if self.rows.frame is None:
+            return cut
+        away, within = self._closing(cut.which, cut.at, cut.angle)
+        reach = cut.swing + self.frame[cut.which] * cut.half
+        return cut.pick(np.abs(away - within) <= reach)
 
     def _bound(self, cells: _Cells) -> tuple[Array, Array, Array]:
         """Upper bounds, and what time and angle add to them; middles are recorded on the way."""
@@ -260,6 +275,15 @@ class _Search:
             in_time = half * (np.abs(slope) + half / 2 * bend)
             in_angle = swing * (np.abs(aslant) + swing / 2 * round_)
             taylor = size + in_time + in_angle + half * swing * mixed
+            away, within = self._closing(which, at, angle)
+            angle = self.angle[which] + within
+            if self.rows.frame is not None and np.any(self.swing < np.pi):
+                reach = swing + self.frame[which] * half
+                edges = np.clip([away - reach, away + reach], -self.swing[which], self.swing[which])
+                size, nearby = self._at_closing(moved, bounds, half, angle, edges - within)
+                # not where the interval meets the window from its other side as well
+                once = np.abs(away) + reach + self.swing[which] < 2 * np.pi
+                taylor = np.where(once, np.fmin(taylor, nearby), taylor)
         else:
             size = _sum(moved)
             # the parts' slopes cancel at the top of their sum, so their lines are taken together
@@ -272,6 +296,26 @@ class _Search:
         self._keep(which, at, angle, size)
         return np.fmin(anywhere, taylor), in_time, in_angle
 
+    def _at_closing(
+        self, moved: Sequence[Moved], bounds: Sequence[Bounds], half: Array, angle: Array, to: Array
+    ) -> tuple[Array, Array]:
+        """Value at a possible closing angle, and a bound up to both ends of those beside it.
+
+        At the edge of a window the largest value may lie on a slope: only the side counts that
+        is possible.
+        """
+        turns = self.rows.turns
+        value, slope, aslant, *_ = together(turns, moved, angle)
+        size, toward = np.abs(value), np.sign(value) * aslant * to
+        upward = np.maximum(size + np.max(toward, axis=0), np.max(-toward, axis=0) - size)
+        pairs = list(zip(turns, bounds, strict=True))
+        mixed = np.sum([k * each.slope for k, each in pairs], axis=0)
+        round_ = np.sum([k * k * each.value for k, each in pairs], axis=0)
+        bend = np.sum([each.bend for each in bounds], axis=0)
+        away = np.max(np.abs(to), axis=0)
+        curved = half * half / 2 * bend + half * away * mixed + away * away / 2 * round_
+        return size, upward + half * np.abs(slope) + curved
+
     def _polish(self) -> None:
         """Newton's method on the slopes, kept only where it raises the value."""
         best, rows = self.best, self.rows
@@ -279,45 +323,45 @@ class _Search:
             loops = np.flatnonzero((best.row >= 0) & np.isfinite(best.time))
             which = best.row[loops]
             time, angle = best.time[loops] - rows.start[which], best.angle[loops]
-            if rows.frame is not None:
-                angle = angle + rows.frame[which] * time
             inside = (time > 0) & (time < rows.duration[which])
             loops, which, time, angle = loops[inside], which[inside], time[inside], angle[inside]
             if not which.size:
                 return
             moved = self._moved(which, time, self.eq.map(itemgetter(which)))
-            step, turned = self._newton(framed(self.rows, which, time, moved), which, angle)
+            step, turned = self._newton(framed(rows, which, time, moved), which, time, angle)
             later = time + step
             good = np.isfinite(later) & (later > 0) & (later <= rows.duration[which])
             loops, which, later, turned = loops[good], which[good], later[good], turned[good]
             moved = self._moved(which, later, self.eq.map(itemgetter(which)))
-            size = self._size(which, later, turned, moved)
+            size = self._size(which, later, turned + self.frame[which] * later, moved)
             # the value is flat to rounding around the top; the time still gains digits
             keep = size >= best.value[loops] * (1 - 1e-15)
             loops = loops[keep]
             best.time[loops] = (rows.start[which] + later)[keep]
-            if rows.frame is not None:
-                turned = turned - rows.frame[which] * later
             best.angle[loops] = turned[keep]
             best.value[loops] = np.maximum(best.value[loops], size[keep])
 
-    def _newton(self, moved: Sequence[Moved], which: Index, angle: Array) -> tuple[Array, Array]:
+    def _newton(
+        self, moved: Sequence[Moved], which: Index, time: Array, angle: Array
+    ) -> tuple[Array, Array]:
         """The step in time, and the next closing angle; not a number away from a top."""
         with np.errstate(all="ignore"):
             if self._turned:
-                value, slope, aslant, bend, mixed, round_ = together(self.rows.turns, moved, angle)
-                sign = np.sign(value)
+                pace = self.frame[which]
+                value, slope, aslant, bend, mixed, round_ = together(
+                    self.rows.turns, moved, angle + pace * time
+                )
+                # at a fixed closing angle the angle as it is searched turns with the source
+                slope, mixed = slope + pace * aslant, mixed + pace * round_
+                bend = bend + pace * (mixed + (mixed - pace * round_))
+                away = angle - self.angle[which]
                 determinant = bend * round_ - mixed * mixed
-                low, high = self.angle - self.swing, self.angle + self.swing
-                if self.rows.frame is not None:
-                    low, high = low - np.inf, high + np.inf
-                free = (angle > low[which]) & (angle < high[which]) & (determinant > 0)
+                free = (np.abs(away) < self.swing[which]) & (determinant > 0)
                 both = (mixed * aslant - round_ * slope) / determinant
                 step = np.where(free, both, -slope / bend)
                 turned = np.where(free, (mixed * slope - bend * aslant) / determinant, 0.0)
-                top = sign * bend < 0
-                ahead = np.clip(angle + turned, low[which], high[which])
-                return np.where(top, step, np.nan), ahead
+                ahead = np.clip(away + turned, -self.swing[which], self.swing[which])
+                return np.where(np.sign(value) * bend < 0, step, np.nan), self.angle[which] + ahead
             slope, bend = np.zeros(which.size), np.zeros(which.size)
             for each in moved:
                 size = np.abs(each.value)
