@@ -121,13 +121,15 @@ def let_through(case: Case, until: Any) -> Array:
     columns = case.equation.column()
     # Not at module level: the nodes cost more time than a whole steady state.
     nodes, weights = np.polynomial.legendre.leggauss(_NODES)
-    times = span[..., np.newaxis] * (nodes + 1) / 2
-    row = _current_row(columns, frequency[..., np.newaxis], times)
+    parts = np.concatenate([(nodes + 1) / 2, 2.0 ** np.arange(doublings)])
+    times = span[..., np.newaxis] * parts
+    row, step = _moved(columns, frequency[..., np.newaxis], times)
+    row = row[..., :_NODES, :]
     gram = np.einsum("...ni,...nj,n->...ij", row, row, weights)
     gram = gram * span[..., np.newaxis, np.newaxis] / 2
-    for k in range(doublings):
-        step = _propagator(eq, frequency, span * 2.0**k)
-        gram = gram + np.swapaxes(step, -1, -2) @ gram @ step
+    for k in range(_NODES, _NODES + doublings):
+        ahead = step[..., k, :, :]
+        gram = gram + np.swapaxes(ahead, -1, -2) @ gram @ ahead
     amplitude = np.broadcast_to(case.source.amplitude, shape)
     rest = np.zeros(shape)
     states = np.stack(
@@ -297,26 +299,20 @@ def _last_period(case: Case) -> Array:
     return let_through(Case(closed.loop, once, voltage, current), closed.repeats)
 
 
-def _current_row(eq: Equation, frequency: Array, time: Array) -> Array:
+def _moved(eq: Equation, frequency: Array, time: Array) -> tuple[Array, Array]:
+    """Row of the current in z, and the propagator of z, at each time."""
     kernel = kernels(eq, time)
-    _, driven = driven_from_rest(eq, frequency, time)
-    parts = (eq.matrix[2] * kernel.s, kernel.current, driven.real, driven.imag)
-    return np.stack(np.broadcast_arrays(*parts), axis=-1)
-
-
-def _propagator(eq: Equation, frequency: Array, time: Array) -> Array:
-    kernel = kernels(eq, time)
-    voltage, _ = driven_from_rest(eq, frequency, time)
+    voltage, current = driven_from_rest(eq, frequency, time)
     cosine, sine = phase(angular(frequency), time)
     zero = np.zeros_like(kernel.s)
     rows = (
         (kernel.capacitor, eq.matrix[1] * kernel.s, voltage.real, voltage.imag),
+        (eq.matrix[2] * kernel.s, kernel.current, current.real, current.imag),
         (zero, zero, cosine, sine),
         (zero, zero, -sine, cosine),
     )
     stacked = [np.stack(np.broadcast_arrays(*row, zero)[:4], axis=-1) for row in rows]
-    stacked.insert(1, _current_row(eq, frequency, time))
-    return np.stack(stacked, axis=-2)
+    return stacked[1], np.stack(stacked, axis=-2)
 
 
 def running_let_through(case: Case, until: Array) -> Array:
