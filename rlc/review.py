@@ -38,6 +38,8 @@ USUAL = (
 
 # Points of the source times units: more take longer than a quick answer.
 _LONG = 5_000_000
+# Units from which on solving for the crossings of a limit takes more than seconds.
+_MANY = 500
 
 
 @dataclass(frozen=True)
@@ -246,11 +248,18 @@ def effort(loaded: Loaded, targets: Iterable[Target], samples: int) -> str:
     str
         Empty where it does not take long.
     """
-    lines = loaded.inputs.case.lines
+    if not any(part.high > part.low for part in loaded.inputs.parts):
+        return ""
+    targets, lines = tuple(targets), loaded.inputs.case.lines
+    if samples >= _MANY and any("_exceeding_" in target.quantity for target in targets):
+        return (
+            f"the spread takes a while: {samples} units, in each of which the crossings of a limit"
+            " are solved for; --samples sets how many units"
+        )
     if lines is None or all(target.entry.group == "loop" for target in targets):
         return ""
     points = lines.start.size
-    if not any(part.high > part.low for part in loaded.inputs.parts) or points * samples <= _LONG:
+    if points * samples <= _LONG:
         return ""
     return (
         f"the spread takes a while: {samples} units, each followed through {points} points of the"

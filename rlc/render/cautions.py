@@ -290,10 +290,20 @@ def _fuse(found: Findings) -> str:
     elif found.alternating:
         once = "one switch-on, in the first source period,"
     melting = show(fuse.melting_let_through, "let_through")
+    lasting = float(REGISTER["current"](found.case))
+    stays = ""
+    if math.isfinite(lasting) and lasting * lasting > 0:
+        stays = (
+            f" The {show(lasting, 'current')} rms that stays afterwards is not in it and heats the"
+            f" fuse all the time: held against the melting value alone it would add that every"
+            f" {show(fuse.melting_let_through / lasting**2, 'time')}. It is a matter of the fuse's"
+            " rated current."
+        )
     return (
         f"The fuse melts at {melting}; the let-through of {once} is {passed}. For"
         f" {fuse.operations} operations practice allows {show(fuse.share, 'ratio')} of what"
         f" melts it, {show(target.maximum, 'let_through')}: the maker's pulse curve governs."
+        f"{stays}"
     )
 
 

@@ -11,6 +11,11 @@ from rlc.solver.exceeding import exceeded
 from rlc.solver.targets import Target
 
 _PEAKS = {"peak_current": "current", "peak_capacitor_voltage": "capacitor"}
+_EXCEEDING = {
+    f"{words}_exceeding_{what}": element
+    for words, element in (("current", "current"), ("capacitor_voltage", "capacitor"))
+    for what in ("time", "duration")
+}
 
 
 class Passing(NamedTuple):
@@ -63,6 +68,8 @@ def _limits(case: Case, targets: Iterable[Target]) -> Iterator[tuple[str, float,
         if target.quantity in _PEAKS and (target.maximum or 0.0) > 0:
             assert target.maximum is not None
             yield _PEAKS[target.quantity], target.maximum, target.rating or "target"
+        elif target.quantity in _EXCEEDING and target.at is not None:
+            yield _EXCEEDING[target.quantity], target.at, "target on its time"
     if case.source.alternating:
         yield "capacitor", ELV_AC_PEAK, "extra-low voltage, 50 V ac rms as a peak"
     else:

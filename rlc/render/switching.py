@@ -106,7 +106,9 @@ def limits(found: Iterable[Passing], case: Case) -> Table:
     Table
     """
     open_closing = case.source.alternating and case.source.worst_angle
-    worst = ", each at its worst closing" if open_closing or case.either_polarity else ""
+    worst = ", each at its worst closing" if open_closing else ""
+    if case.polarity_open and not open_closing:
+        worst = ", each at its worse polarity"
     table = new_table(
         f"Limits in time, nominal parts{worst}",
         "of", "limit", "above from", "in all", "what it is", sentence=True,

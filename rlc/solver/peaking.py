@@ -177,6 +177,8 @@ class _Waves(NamedTuple):
             best.angle = self._worst_angles(best)
         elif self._whole_turn:
             best.angle = np.mod(best.angle, ANY_ANGLE.high)
+        else:
+            best.angle = np.clip(best.angle, self.window.low, self.window.high)
         return best
 
     @property

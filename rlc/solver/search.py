@@ -139,7 +139,10 @@ class _Search:
             seen += now.which.size
             children = self._cut(now, gap)
             cells = _Cells(*(np.concatenate(pair) for pair in zip(later, children, strict=True)))
+        if self._turned:
+            self._snap()
         self._polish()
+        self._snap()
 
     def _give_up(self, cells: _Cells) -> None:
         best, group = self.best, self.rows.group[cells.which]
@@ -340,6 +343,23 @@ class _Search:
             best.time[loops] = (rows.start[which] + later)[keep]
             best.angle[loops] = turned[keep]
             best.value[loops] = np.maximum(best.value[loops], size[keep])
+
+    def _snap(self) -> None:
+        """To the edges of the window, and to the row's start, where the value is no less there."""
+        best, rows = self.best, self.rows
+        loops = np.flatnonzero((best.row >= 0) & np.isfinite(best.time))
+        which = best.row[loops]
+        time, angle = best.time[loops] - rows.start[which], best.angle[loops]
+        tried = [(time, self.angle[which] + side * self.swing[which]) for side in (-1, 1)]
+        tried += [(0.0 * time, each) for each in (angle, *(edge for _, edge in tried))]
+        for at, closing in tried:
+            moved = self._moved(which, at, self.eq.map(itemgetter(which)))
+            size = self._size(which, at, closing + self.frame[which] * at, moved)
+            same = size >= best.value[loops] * (1 - 1e-14)
+            best.value[loops[same]] = np.maximum(size, best.value[loops])[same]
+            best.time[loops[same]] = (rows.start[which] + at)[same]
+            if self._turned:
+                best.angle[loops[same]] = closing[same]
 
     def _newton(
         self, moved: Sequence[Moved], which: Index, time: Array, angle: Array

@@ -17,14 +17,13 @@ Array = NDArray[np.float64]
 
 #: Knots that a course may have.
 MOST_KNOTS = 4_000_000
-#: Pulses that a train may have; the loop's states are carried through each of them.
+#: Pulses that a train may have.
 MOST_PULSES = 100_000
 #: After so many time constants nothing is left of a decay but rounding: 4e-18.
 TIME_CONSTANTS = 40.0
 
 # IEC 60060-1: the front is 1/0.6 of the time from 30 % to 90 % of the peak.
 _LOW, _HIGH, _HALF = 0.3, 0.9, 0.5
-
 # An edge that is a smaller share of its pulse is a jump: the sum of both rounds it away.
 _NO_TIME = 1e-15
 
@@ -373,7 +372,8 @@ def surge(voltage: float, front_time: float, half_value_time: float) -> Surge:
     least, most = ratio(-3.0), ratio(6.0)
     if not least < wanted < most:
         rule = f"must be {least:.3g} to {most:.3g} front times for two exponentials"
-        raise InputError("half_value_time", half_value_time, rule)
+        hint = "Are they swapped?" if wanted < 1 else "Give another course as a record"
+        raise InputError("half_value_time", half_value_time, rule, hint)
     decades = brentq(lambda x: np.log(ratio(x) / wanted), -3.0, 6.0, xtol=1e-13, rtol=1e-13)
     fast = 1.0 + 10.0**decades
     pace = _defining_times(1.0, fast)[0] / front_time

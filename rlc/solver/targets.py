@@ -15,6 +15,9 @@ from rlc.solver.quantity import Quantity
 
 Array = NDArray[np.float64]
 
+# Of a limit: what some operations round away.
+_ROUNDING = 1e-12
+
 
 @dataclass(frozen=True)
 class Target:
@@ -51,7 +54,11 @@ class Target:
     rating: str = ""
 
     def __post_init__(self) -> None:
-        lookup(self.quantity, "quantity")
+        entry = lookup(self.quantity, "quantity")
+        if self.at is None and entry.at in ("current", "voltage"):
+            unit = "A" if entry.at == "current" else "V"
+            rule = f"is missing: the {entry.at} that is exceeded"
+            raise InputError("at", None, rule, f'For example at = "20 {unit}"')
         if None not in (self.minimum, self.maximum) and self.minimum > self.maximum:  # type: ignore[operator]
             raise InputError("min", self.minimum, "is above max")
 
@@ -99,8 +106,9 @@ class Target:
             With the shape of `values`.
         """
         values = np.asarray(values, dtype=np.float64)
-        low = -np.inf if self.minimum is None else self.minimum
-        high = np.inf if self.maximum is None else self.maximum
+        # a value that is the limit but for rounding keeps it
+        low = -np.inf if self.minimum is None else self.minimum - _ROUNDING * abs(self.minimum)
+        high = np.inf if self.maximum is None else self.maximum + _ROUNDING * abs(self.maximum)
         within: NDArray[np.bool_] = (values >= low) & (values <= high)
         return within
 

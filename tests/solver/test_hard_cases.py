@@ -14,7 +14,7 @@ from rlc.solver.loop import make_loop
 from rlc.solver.parts import Part
 from rlc.solver.passed import let_through, total_let_through
 from rlc.solver.search import PROVED_GAP
-from rlc.solver.source import Order, Source, constant, shaped, sine
+from rlc.solver.source import Order, Source, Window, constant, shaped, sine
 from rlc.solver.spread import spread
 from rlc.solver.targets import Target
 
@@ -176,3 +176,25 @@ def test_times_are_finite(until):
         let_through(case, until)
     with pytest.raises(InputError, match="must be zero or more, and finite"):
         case.waveforms([until])
+
+
+def test_a_gain_of_one_keeps_the_limit_of_one():
+    """At dc without a load the capacitor has the whole voltage, but for rounding."""
+    loop = make_loop(resistance=2.2, inductance=1e-3, capacitance=47e-6, winding_resistance=0.4)
+    parts = (Part("resistance", 2.2, 2.0, 2.4), Part("capacitance", 47e-6, 40e-6, 55e-6))
+    found = spread(Case(loop, constant(24.0)), parts, 200, 1).outcome(Target("gain", maximum=1.0))
+    assert found.verdict == "holds"
+
+
+def test_a_target_on_exceeding_needs_its_limit():
+    with pytest.raises(InputError, match="is missing: the current that is exceeded"):
+        Target("current_exceeding_duration", maximum=1e-3)
+
+
+def test_a_peak_at_closing_is_there_and_not_a_femtosecond_later():
+    """The inductor takes the source's whole voltage at closing, largest at the window's edge."""
+    loop = make_loop(resistance=2.2, inductance=1e-3, capacitance=47e-6, winding_resistance=0.4)
+    source = sine(None, 50.0, Window(-np.pi / 12, np.pi / 12), rms=230.0)
+    peak = Case(loop, source).peak("inductor")
+    assert float(peak.time) == 0.0
+    assert float(peak.value) == pytest.approx(230 * np.sqrt(2) * np.sin(np.pi / 12), rel=1e-12)
