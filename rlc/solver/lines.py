@@ -17,6 +17,8 @@ import numpy as np
 from rlc.solver.equation import Array, Equation, Kernels, kernels
 
 _TERMS = 30
+# A term that is no more of the first one, nor the one before it, ends a series.
+_NEGLIGIBLE = 1e-19
 _FACTORIAL = np.cumprod(np.r_[1.0, np.arange(1.0, _TERMS + 4)])
 
 States = tuple[Array, Array]
@@ -139,6 +141,9 @@ def _put_series(out: Array, where: Any, eq: Equation, time: Array, order: int) -
     for k in range(1, _TERMS):
         previous, current = current, linear * current + quadratic * previous
         total = total + current / _FACTORIAL[order + k]
+        left = max(np.max(np.abs(current)), np.max(np.abs(previous)))
+        if left < _NEGLIGIBLE * _FACTORIAL[order + k] / _FACTORIAL[order]:
+            break
     out[where] = total * t**order
 
 
