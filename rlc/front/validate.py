@@ -191,10 +191,14 @@ def _unknown(at: KeyPath, data: Mapping[str, Any]) -> tuple[str, str]:
         if kinds:
             own = data["source"]["kind"]
             return f'belongs to a source of kind {_either(kinds)}, and this one is "{own}"', ""
-    for name, models in _TABLES.items():
-        elsewhere = len(at) > 1 and name != at[0]
-        if elsewhere and any(key in model.model_fields for model in models):
-            return f"is a key of [{name}], not of [{at[0]}]", f"Move it below [{name}]"
+    elsewhere = [
+        name
+        for name, models in _TABLES.items()
+        if len(at) > 1 and name != at[0] and any(key in model.model_fields for model in models)
+    ]
+    # a key of several tables, such as a part's value, is hardly meant for one of them
+    if len(elsewhere) == 1:
+        return f"is a key of [{elsewhere[0]}], not of [{at[0]}]", f"Move it below [{elsewhere[0]}]"
     near = get_close_matches(key, here, 1)
     return "is an unknown key", f'Did you mean "{near[0]}"?' if near else (
         f"Known here: {', '.join(here)}"
