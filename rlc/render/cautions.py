@@ -13,7 +13,14 @@ from dataclasses import dataclass
 
 from rlc.front.marking import show
 from rlc.render.closings import closing_angle, trapped_charge
-from rlc.render.driving import magnification, magnified, record, resonance, source_ends
+from rlc.render.driving import (
+    magnification,
+    magnified,
+    record,
+    resonance,
+    source_ends,
+    switch_on_heat,
+)
 from rlc.render.findings import ELV_AC_PEAK, ELV_DC, Findings, Size, exceeds
 from rlc.solver.case import Case
 from rlc.solver.quantities import REGISTER
@@ -356,6 +363,7 @@ _RULES: tuple[tuple[str, Callable[[Findings], str]], ...] = (
     ("saturation", _saturation),
     ("inrush", _inrush),
     ("fuse", _fuse),
+    ("switch-on-heat", switch_on_heat),
     ("closing-angle", closing_angle),
     ("trapped-charge", trapped_charge),
     ("source-ends", source_ends),

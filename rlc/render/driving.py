@@ -100,6 +100,23 @@ def source_ends(found: Findings) -> str:
     )
 
 
+def switch_on_heat(found: Findings) -> str:
+    """What continuous ratings do not cover: the heat of one switch-on in the resistor."""
+    ratings = found.ratings
+    stated = ratings.resistor_power is not None or ratings.inductor_current is not None
+    if not stated or found.alternating or found.case.repeats:
+        return ""
+    passed = found.let_through(found.let_through_end).nominal
+    heat = passed * float(found.loop.resistance)
+    if not (math.isfinite(heat) and heat > 0):
+        return ""
+    return (
+        "Continuous ratings are held against what stays in the end. The switch-on itself heats"
+        f" the resistor with {found.nominal}{show(heat, 'energy')}, and each repetition with as"
+        " much: the maker's pulse rating governs."
+    )
+
+
 def record(found: Findings) -> str:
     """What a measured source leaves out."""
     shape, told = found.case.source.shape, []

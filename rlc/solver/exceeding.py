@@ -9,6 +9,7 @@ from numpy.typing import NDArray
 
 from rlc.errors import InputError
 from rlc.solver.case import Case
+from rlc.solver.lines import balance
 from rlc.solver.peaking import steady_peak
 from rlc.solver.transient import last_time_outside, settled, transient
 from rlc.solver.turning_points import longest_stepped, narrowed, steps_until, turning_points
@@ -79,7 +80,11 @@ def _crossings(case: Case, element: str, limit: float, known: _Known) -> Exceede
     lasting, end = known.lasting, known.last
     if not np.isfinite(end):
         # Without losses: up to the peak, or a few beats of source and ringing.
-        lasting, end = True, _without_losses(case, known.peak_time)
+        end = _without_losses(case, known.peak_time)
+        lasting = case.source.alternating or _rings_beyond(case, element, limit)
+        if not lasting:
+            assert case.source.shape is not None
+            end = case.source.shape.gone
     if lasting and np.isfinite(known.peak_time):
         end = known.peak_time
     if end <= 0:
@@ -119,6 +124,20 @@ def _last(case: Case, element: str, limit: Array) -> Array:
     # rounding of the last crossing must not cut it off
     last = np.where(alone, (since + outside) * (1 + _ROUNDING), settled(case)) + period
     return np.where(case.equation.damping == 0, np.inf, last)
+
+
+def _rings_beyond(case: Case, element: str, limit: float) -> bool:
+    """Whether the ringing that a lossless loop keeps when its source stands still is above."""
+    shape = case.source.shape
+    waves = case.waveforms(np.array([0.0 if shape is None else shape.gone]))
+    value, slope = waves.current[0], waves.current_rate[0]
+    if element == "capacitor":
+        value, slope = waves.capacitor_voltage[0], waves.capacitor_voltage_rate[0]
+    w, rest = case.loop.weights(element), balance(case.equation)
+    share = w.capacitor_voltage * rest[0] + w.current * rest[1] + w.source
+    final = float(share * case.source.amplitude)
+    swing = np.hypot(value - final, slope / float(case.equation.natural))
+    return abs(final) + float(swing) > limit * (1 + _ROUNDING)
 
 
 def _without_losses(case: Case, peak: float) -> float:

@@ -350,8 +350,10 @@ class _Search:
         loops = np.flatnonzero((best.row >= 0) & np.isfinite(best.time))
         which = best.row[loops]
         time, angle = best.time[loops] - rows.start[which], best.angle[loops]
-        tried = [(time, self.angle[which] + side * self.swing[which]) for side in (-1, 1)]
-        tried += [(0.0 * time, each) for each in (angle, *(edge for _, edge in tried))]
+        sides = (-1, 1) if self._turned else ()
+        edges = [self.angle[which] + side * self.swing[which] for side in sides]
+        tried = [(time, edge) for edge in edges]
+        tried += [(np.zeros(time.size), each) for each in (angle, *edges)]
         for at, closing in tried:
             moved = self._moved(which, at, self.eq.map(itemgetter(which)))
             size = self._size(which, at, closing + self.frame[which] * at, moved)

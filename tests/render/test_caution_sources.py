@@ -204,3 +204,13 @@ def test_every_source_gets_cautions_in_plain_words(kind, resistance, load, charg
         assert not re.search(r"(?<![\w.])- V|: -[;,.]", text)
         if kind not in ("dc", "ramp"):
             assert not re.search(r"source, [^,]* dc\b", text)
+
+
+def test_continuous_ratings_do_not_cover_the_heat_of_the_switch_on():
+    """A resistor that charges a capacitor burns C V^2/2, whatever its size: 1 mF to 100 V, 5 J."""
+    case = Case(loop(3.0, 1e-3, 1e-3), constant(100.0))
+    text = told(case, Ratings(resistor_power=5.0))["switch-on-heat"]
+    assert "heats the resistor with 5 J" in text
+    assert "switch-on-heat" not in told(case, Ratings(capacitor_voltage=200.0))
+    lasting = Case(loop(3.0, 1e-3, 1e-3), sine(100.0, 50.0))
+    assert "switch-on-heat" not in told(lasting, Ratings(resistor_power=5.0))

@@ -198,3 +198,15 @@ def test_a_peak_at_closing_is_there_and_not_a_femtosecond_later():
     peak = Case(loop, source).peak("inductor")
     assert float(peak.time) == 0.0
     assert float(peak.value) == pytest.approx(230 * np.sqrt(2) * np.sin(np.pi / 12), rel=1e-12)
+
+
+def test_lossless_loop_that_a_pulse_leaves_at_rest_exceeds_only_during_it():
+    """v = 10 (1 - cos t) for one natural period: above 15 V from 120 to 240 degrees, then still."""
+    loop = make_loop(resistance=0.0, inductance=1.0, capacitance=1.0)
+    case = Case(loop, shaped(shapes.pulse(10.0, 2 * np.pi)))
+    first, lasts = exceeded(case, "capacitor", 15.0)
+    assert first == pytest.approx(2 * np.pi / 3, rel=1e-12)
+    assert lasts == pytest.approx(2 * np.pi / 3, rel=1e-12)
+    # half a period leaves it ringing by 20 V for ever
+    ringing = Case(loop, shaped(shapes.pulse(10.0, np.pi)))
+    assert exceeded(ringing, "capacitor", 15.0).lasts == np.inf
